@@ -1,0 +1,117 @@
+"""Design inputs: does each say what it is and where it comes from, is it used, is an angle in degrees by mistake?"""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Iterator
+
+from loadpath.findings import Finding, finding
+from loadpath.formula.names import canonical
+from loadpath.formula.statements import Choice, Definition
+from loadpath.formula.tree import Binary, Call, Name, Negative, Node, Number, span_of, walk
+from loadpath.functions import FUNCTIONS
+from loadpath.resolve import expressions
+from loadpath.text import Span
+from loadpath.trace.model import Step, Trace
+
+ANGLE_NAMES = frozenset(("alpha", "beta", "gamma", "theta", "phi", "psi", "omega", "angle", "slope"))
+"""Names that angles usually bear, in canonical text and small letters."""
+FULL_TURN = 2 * math.pi
+"""A plain number beyond this in magnitude is no angle that anybody would write in radians."""
+
+
+def input_findings(trace: Trace) -> Iterator[Finding]:
+    """`no-note`, `no-source`, `unused-input` and `angle-without-unit`."""
+    angles = _typed_as_angles(trace)
+    for step in trace:
+        statement = step.statement
+        if step.kind not in ("input", "choice") or not isinstance(statement, Definition | Choice):
+            continue
+        if step.entry.blocked_by == 0:
+            yield from _origin(trace, step, statement.name, statement.name_span)
+        if not step.used_by and statement.name not in trace.resolved.mentioned:
+            yield finding(
+                "unused-input", f"nothing uses the input `{statement.name}`", trace.sheet.source, statement.name_span,
+                help="delete it, or use it where it belongs; a value that is only told is written in the text",
+            )  # fmt: skip
+        if isinstance(statement, Definition) and (typed := _plain_number(statement.value)) is not None:
+            named = canonical(statement.name).split("_")[0].lower() in ANGLE_NAMES
+            if (named or statement.name in angles) and abs(_value(typed)) > FULL_TURN:
+                yield _angle(trace, typed)
+    for place in _numbers_in_calls(trace):
+        yield _angle(trace, place)
+
+
+def _origin(trace: Trace, step: Step, name: str, place: Span) -> Iterator[Finding]:
+    if not step.statement.notes:
+        yield finding(
+            "no-note", f"the input `{name}` does not say what it is and where it comes from",
+            trace.sheet.source, place, help="end the line with a note and its source: ` -- rated load [key]`",
+        )  # fmt: skip
+    elif not step.sources:
+        yield finding(
+            "no-source", f"the note of the input `{name}` cites no source and no assumption",
+            trace.sheet.source, place, help="cite one in the note, `[key]`, and say in the front matter what it is",
+        )  # fmt: skip
+
+
+# --- angles -----------------------------------------------------------------------------------------------------
+
+
+def _typed_as_angles(trace: Trace) -> frozenset[str]:
+    """Names that stand as the argument of a trigonometric function."""
+    return frozenset(leaf.name for leaf in _leaves_of_calls(trace) if isinstance(leaf, Name))
+
+
+def _numbers_in_calls(trace: Trace) -> Iterator[Number]:
+    """Typed plain numbers that stand as the argument of a trigonometric function and are too large for radians."""
+    for leaf in _leaves_of_calls(trace):
+        if isinstance(leaf, Number) and abs(_value(leaf)) > FULL_TURN:
+            yield leaf
+
+
+def _leaves_of_calls(trace: Trace) -> Iterator[Node]:
+    for step in trace:
+        for tree in expressions(step.statement):
+            for node in walk(tree):
+                if isinstance(node, Call) and node.function in FUNCTIONS and FUNCTIONS[node.function].angle:
+                    yield from _angles_in(node.arguments[0])
+
+
+def _angles_in(argument: Node) -> Iterator[Node]:
+    """What in an argument is itself an angle: its terms, and the other factor of a typed number.
+
+    A term with `pi`, or with two names in it, has been brought to radians, or counts something.
+    """
+    match argument:
+        case Number() | Name():
+            yield argument
+        case Negative(operand=operand):
+            yield from _angles_in(operand)
+        case Binary(operator="+" | "-", left=left, right=right):
+            yield from _angles_in(left)
+            yield from _angles_in(right)
+        case Binary(operator="*", left=Number(), right=Name() as name):
+            yield name
+        case Binary(operator="*" | "/", left=Name() as name, right=Number()):
+            yield name
+
+
+def _plain_number(value: Node) -> Number | None:
+    match value:
+        case Number():
+            return value
+        case Negative(operand=Number() as number):
+            return number
+    return None
+
+
+def _value(number: Number) -> float:
+    return float(number.text.replace("_", ""))
+
+
+def _angle(trace: Trace, typed: Number) -> Finding:
+    return finding(
+        "angle-without-unit", f"the angle {typed.text} has no unit and is taken as radians",
+        trace.sheet.source, span_of(typed), help=f"write `{typed.text} deg` for degrees, `{typed.text} rad` for radians",
+    )  # fmt: skip

@@ -1,0 +1,293 @@
+"""Step rows: one function for each kind of step."""
+
+from __future__ import annotations
+
+from collections import defaultdict
+from dataclasses import dataclass, field
+
+from loadpath.document.model import (
+    BranchRow,
+    CallLine,
+    Cited,
+    CriterionBox,
+    FaultyRow,
+    FunctionRow,
+    Head,
+    Inline,
+    InputRow,
+    JudgedRow,
+    Line,
+    Ref,
+    ResultRow,
+    StepBlock,
+)
+from loadpath.findings import Finding
+from loadpath.formula.canonical import text
+from loadpath.formula.names import plain_symbol
+from loadpath.formula.statements import (
+    Check,
+    Choice,
+    Criterion,
+    Definition,
+    FunctionDefinition,
+    Note,
+
+    Validity,
+)
+from loadpath.formula.tree import Binary, Call, Cases, Logic, Name, Node, Relation, Shown
+from loadpath.trace import Called, Step, Trace, Working, criterion_kind, criterion_name, texts
+from loadpath.trace.digits import ratio_text, typed_number
+from loadpath.trace.file import verdict_words
+from loadpath.trace.substitute import shown
+from loadpath.units import parse_unit
+from loadpath.units.printing import plain, unit_symbol
+
+
+@dataclass
+class StepWriter:
+    """Writes the rows of one trace."""
+
+    trace: Trace
+    findings: dict[int, list[Finding]] = field(default_factory=lambda: defaultdict(list))
+    """By index of the step in whose lines they stand."""
+
+    def __post_init__(self) -> None:
+        front = self.trace.sheet.front
+        self.kinds = {s.key: "source" for s in front.sources} | {a.key: "assumption" for a in front.assumptions}
+
+    def write(self, index: int) -> StepBlock:
+        """The row of one step."""
+        step = self.trace.steps[index]
+        head = self._head(step, tuple(self.findings[index]))
+        statement = step.statement
+        match statement:
+            case Criterion():
+                return self._criterion(step, statement, head)
+            case _ if step.kind == "faulty" and criterion_kind(step):
+                return self._faulty_criterion(step, head)
+            case _ if step.kind == "faulty":
+                return FaultyRow(head, getattr(statement, "text", ""))
+            case Definition() if step.kind == "input":
+                return self._input(step, statement, head)
+            case Choice():
+                return InputRow(head, statement.name, None, Shown(statement.word, "", True), statement.options)
+            case Definition():
+                return self._result(step, statement, head)
+            case FunctionDefinition():
+                return self._function(step, statement, head)
+            case Validity() | Check():
+                return self._judged(step, statement, head)
+        raise TypeError(type(statement).__name__)
+
+    # --- parts ---
+
+    def _head(self, step: Step, findings: tuple[Finding, ...]) -> Head:
+        by_id = self.trace.by_id
+        from_, to = [by_id[i] for i in step.uses], [by_id[i] for i in step.used_by]
+        return Head(
+            step.number, step.kind, self.inlines(step.statement.notes), tuple(ref(s) for s in from_),
+            tuple(ref(s) for s in to), findings, step.why,
+        )  # fmt: skip
+
+    def inlines(self, notes: tuple[Note, ...]) -> tuple[Inline, ...]:
+        """Notes as text and citations."""
+        parts: list[Inline] = []
+        for note in notes:
+            if parts and note.text:
+                parts.append("; ")
+            parts += self._note(note)
+        return tuple(p for p in parts if p != "")
+
+    def _note(self, note: Note) -> list[Inline]:
+        parts: list[Inline] = []
+        rest = note.text
+        for key, _ in note.citations:
+            before, _, rest = rest.partition("[")
+            inside, _, rest = rest.partition("]")
+            parts += [before, Cited(key or inside, self.kinds.get(key, ""))]
+        return [*parts, rest]
+
+    # --- inputs and results ---
+
+    def _input(self, step: Step, statement: Definition, head: Head) -> StepBlock:
+        value = texts.display(step)
+        if value is None:
+            return self._result(step, statement, head)
+        same = typed_number(statement.value, step.unit) == value.number
+        return InputRow(head, statement.name, None if same else statement.value, value)
+
+    def _result(self, step: Step, statement: Definition, head: Head) -> ResultRow:
+        working = step.working
+        name = Name(statement.name)
+        if working is None:
+            typed = statement.value if not isinstance(statement.value, Cases) else None
+            branches = self.branches(statement.value, None)
+            return ResultRow(head, name, (typed,) if typed else (), None, True, branches)
+        put = texts.step_substitution(self.trace, step)
+        sides = (working.tree, *((put.tree,) if put and not isinstance(put.tree, Shown) else ()))
+        return ResultRow(
+            head, name, sides if not working.taken else sides[1:] or sides, texts.display(step), put.closes if put else True,
+            self.branches(statement.value, working), self._lines(working), self.calls(working),
+        )  # fmt: skip
+
+    def branches(self, value: Node, working: Working | None) -> tuple[BranchRow, ...]:
+        """The branches of a `cases`, the taken one marked, its condition with numbers."""
+        if not isinstance(value, Cases):
+            return ()
+        taken = working.taken.index if working and working.taken else -1
+        numbers: tuple[Node, ...] = ()
+        if working is not None:
+            numbers = tuple(c.evaluated for c in texts.conditions(self.trace, working))
+        return tuple(
+            BranchRow(b.value, b.condition, i == taken, numbers if i == taken else ()) for i, b in enumerate(value.branches)
+        )
+
+    def _lines(self, working: Working) -> tuple[Line, ...]:
+        out = []
+        for aside in working.asides:
+            parts = (f"{aside.before} " if aside.before else "", aside.tree, f" {aside.after}" if aside.after else "")
+            out.append(Line(tuple(p for p in parts if p != "")))
+        return tuple(out)
+
+    def calls(self, working: Working) -> tuple[CallLine, ...]:
+        """Each call with its way, those inside it beneath it."""
+        out: list[CallLine] = []
+        for called in working.calls:
+            out.append(self._call(called))
+            out += self.calls(called.working)
+        return tuple(out)
+
+    def _call(self, called: Called) -> CallLine:
+        call = Call(called.call.function, tuple(shown(operand) for _, operand in called.arguments))
+        put = texts.call_substitution(self.trace, called)
+        sides = (called.working.tree, *((put.tree,) if put and not isinstance(put.tree, Shown) else ()))
+        lines = []
+        for compared in texts.conditions(self.trace, called.working):
+            lines.append(Line(("as ", compared.formula, ": ", compared.evaluated)))
+        return CallLine(call, sides, shown(called.value), put.closes if put else True, (*lines, *self._lines(called.working)))
+
+    def _function(self, step: Step, statement: FunctionDefinition, head: Head) -> FunctionRow:
+        name = Call(statement.name, tuple(Name(p.name) for p in statement.parameters))
+        units = [f"{plain_symbol(p.name)} in {_unit_words(p.unit.text)}" for p in statement.parameters if p.unit]
+        if statement.unit:
+            units.append(f"{plain_symbol(statement.name)} in {_unit_words(statement.unit.text)}")
+        body = None if isinstance(statement.body, Cases) else statement.body
+        return FunctionRow(head, name, body, self.branches(statement.body, None), ", ".join(units))
+
+    # --- judged steps ---
+
+    def _criterion(self, step: Step, statement: Criterion, head: Head) -> CriterionBox:
+        verdict = step.verdict
+        assert verdict is not None
+        ratio = ratio_text(verdict)
+        return CriterionBox(
+            head, statement.kind, statement.name, statement.relation, self._compared_lines(step), ratio, verdict.utilisation,
+            self._margin(step), verdict_words(step), is_listed(step), verdict.satisfied is not None, verdict.satisfied,
+            (*self._governing(step, statement), *(self._lines(step.working) if step.working else ())),
+            self.calls(step.working) if step.working else (),
+        )  # fmt: skip
+
+    def _faulty_criterion(self, step: Step, head: Head) -> CriterionBox:
+        kind = criterion_kind(step)
+        name = criterion_name(step) if criterion_name(step) != step.id else ""
+        return CriterionBox(
+            head, kind, name, None, (), "", None, None, verdict_words(step), True, False, None,  # type: ignore[arg-type]
+            typed=getattr(step.statement, "text", ""),
+        )  # fmt: skip
+
+    def _compared_lines(self, step: Step) -> tuple[Node, ...]:
+        """First with values in place of names, where a side is worked out; then each side as one number."""
+        compared = texts.compared(self.trace, step)
+        if not compared:
+            return ()
+        statement = step.statement
+        relation: Node = statement.relation  # type: ignore[attr-defined]
+        lines = []
+        if any(c.substituted is not None for c in compared):
+            lines.append(_rejoin(relation, [c.substituted or c.evaluated for c in compared]))
+        lines.append(_rejoin(relation, [_with_length(c) for c in compared]))
+        return tuple(lines)
+
+    def _governing(self, step: Step, statement: Criterion) -> tuple[Line, ...]:
+        """Which part of a chain or of an `or` governs."""
+        verdict, relation = step.verdict, statement.relation
+        if verdict is None or verdict.satisfied is None:
+            return ()
+        if isinstance(relation, Logic):
+            return (Line(("governed by ", relation.operands[verdict.part])),)
+        if isinstance(relation, Relation) and len(relation.signs) == 2:
+            i = verdict.part
+            return (Line(("governed by ", Relation(relation.operands[i : i + 2], (relation.signs[i],)))),)
+        return ()
+
+    def _margin(self, step: Step) -> Shown | None:
+        verdict = step.verdict
+        if verdict is None or verdict.margin is None or verdict.satisfied is None:
+            return None
+        units = step.entry.side_units
+        unit = units[min(verdict.part, len(units) - 1)] if units else step.unit
+        if unit.absolute:
+            unit = parse_unit("K" if unit.text == "degC" else "delta_degF")
+        return Shown(plain(verdict.margin / unit.size, step.digits), "in" if unit.text.startswith("ft-in") else unit.text)
+
+    def _judged(self, step: Step, statement: Validity | Check, head: Head) -> JudgedRow:
+        if isinstance(statement, Validity):
+            words = "for " + ", ".join(plain_symbol(name) for name, _ in statement.names)
+            good, bad = "within the range", f"outside the range of {words.removeprefix('for ')}"
+        else:
+            words = f"within {text(statement.tolerance)}"
+            good, bad = "holds", "does not hold"
+        holds = step.verdict.satisfied if step.verdict else None
+        verdict = {True: good, False: bad, None: f"not shown: {step.why}" if step.why else "not shown"}[holds]
+        calls = self.calls(step.working) if step.working else ()
+        return JudgedRow(head, statement.relation, self._compared_lines(step), words, verdict, holds, calls)
+
+
+# --- helpers ----------------------------------------------------------------------------------------------------
+
+
+def ref(step: Step) -> Ref:
+    """A link to a step, by name and number."""
+    if step.verdict is not None or not step.entry.name:
+        words = step.id if step.kind not in ("valid", "check") else step.kind
+        return Ref(step.number, words, is_name=False)
+    return Ref(step.number, step.entry.name)
+
+
+def is_listed(step: Step) -> bool:
+    """True for a criterion that stands in the front list: whatever is not plainly satisfied."""
+    verdict = step.verdict
+    return verdict is not None and (
+        verdict.satisfied is not True or verdict.one_sided or bool(verdict.conditional_on)
+    )
+
+
+def _rejoin(relation: Node, parts: list[Node]) -> Node:
+    """The shape of a typed relation with other relations in place of its own."""
+    waiting = iter(parts)
+
+    def put(node: Node) -> Node:
+        if isinstance(node, Logic):
+            return Logic(node.word, tuple(put(o) for o in node.operands))
+        return next(waiting)
+
+    return put(relation)
+
+
+def _with_length(compared: texts.Compared) -> Relation:
+    """`12.003 mm = L/499.9 <= 12 mm`: a demand against L/n printed as L/n too."""
+    evaluated = compared.evaluated
+    if compared.per_length is None:
+        return evaluated
+    index, length, number = compared.per_length
+    as_length = Binary("/", length, Shown(number, ""))
+    operands, signs = list(evaluated.operands), list(evaluated.signs)
+    operands.insert(index + 1, as_length)
+    signs.insert(index, "=")
+    return Relation(tuple(operands), tuple(signs))
+
+
+def _unit_words(unit: str) -> str:
+    return "plain number" if unit == "1" else unit_symbol(unit)
+
+

@@ -1,0 +1,1 @@
+"""Working the numbers: a resolved sheet in, its trace out."""

@@ -1,0 +1,130 @@
+"""What a reader must see of how a value came about: branches taken, calls worked, what governed."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator, Mapping
+from dataclasses import dataclass
+from typing import Any
+
+from loadpath.evaluate.numbers import Compiler, Values
+from loadpath.formula.statements import FunctionDefinition, Parameter
+from loadpath.formula.tree import As, Call, Cases, Name, Node, Number, Quantity, walk
+from loadpath.functions import FUNCTIONS
+from loadpath.resolve import Resolved, Type
+from loadpath.trace.digits import exact_digits, typed_number
+from loadpath.trace.model import Aside, Called, Operand, Taken, Working
+from loadpath.units import ONE, Unit, parse_unit
+
+MOST_CALLS = 40
+"""Calls shown beneath one step; a formula with more says so."""
+
+
+@dataclass
+class Observer:
+    """Goes over a tree that was worked and notes what the substitution alone doesn't show."""
+
+    resolved: Resolved
+    compiler: Compiler
+    values: Values
+
+    def working(self, tree: Node, given: Mapping[str, Operand] | None = None, types: dict[str, Type] | None = None) -> Working:
+        """How the value of a tree came about; `given` are the parameters of the enclosing function."""
+        scope = dict(given or {})
+        if not any(isinstance(n, Call | Cases | As) for n in walk(tree)):
+            return Working(tree, tuple(scope.items()))
+        parameters = {name: operand.si for name, operand in scope.items()}
+        taken = self._taken(tree, parameters) if isinstance(tree, Cases) else None
+        worked = taken.branch.value if taken else tree
+        seen = [worked, *([taken.branch.condition] if taken and taken.branch.condition is not None else [])]
+        calls = tuple(self._calls(seen, parameters, scope, types or {}))
+        return Working(worked, tuple(scope.items()), taken, calls, tuple(self._asides(worked, parameters)))
+
+    def _value(self, node: Node, parameters: Values) -> Any:
+        return self.compiler.compile_tree(node, frozenset(parameters))(self.values, parameters)
+
+    def _taken(self, cases: Cases, parameters: Values) -> Taken:
+        for index, branch in enumerate(cases.branches):
+            if branch.condition is None or self._value(branch.condition, parameters):
+                return Taken(cases, index)
+        raise AssertionError("a value was worked, so a branch was taken")
+
+    # --- calls of the sheet's own functions ---
+
+    def _calls(self, trees: list[Node], parameters: Values, scope: Mapping[str, Operand], types: dict[str, Type]) -> Iterator[Called]:
+        done: set[Call] = set()
+        for tree in trees:
+            for node in walk(tree):
+                if isinstance(node, Call) and node.function not in FUNCTIONS and node not in done and len(done) < MOST_CALLS:
+                    done.add(node)
+                    yield self._called(node, parameters, scope, types)
+
+    def _called(self, call: Call, parameters: Values, scope: Mapping[str, Operand], types: dict[str, Type]) -> Called:
+        definition = self.resolved.checker.function(call.function)
+        assert definition is not None
+        arguments: dict[str, Operand] = {}
+        inner_types: dict[str, Type] = {}
+        for parameter, argument in zip(definition.parameters, call.arguments, strict=True):
+            found = self.resolved.checker.type_of(argument, types)
+            inner_types[parameter.name] = found if parameter.unit is None else _type_of(parameter, found)
+            arguments[parameter.name] = self._argument(parameter, argument, found, parameters, scope)
+        working = self.working(definition.body, arguments, inner_types)
+        value = self._value(call, parameters)
+        unit = self._unit_of_call(definition, inner_types)
+        return Called(call, tuple(arguments.items()), working, Operand(value, unit, self.resolved.sheet.front.digits))
+
+    def _argument(self, parameter: Parameter, node: Node, found: Type, parameters: Values, scope: Mapping[str, Operand]) -> Operand:
+        si = float(self._value(node, parameters))
+        operand = self.operand(node, si, found, scope)
+        if parameter.unit is None or operand.unit.text == parameter.unit.text:
+            return operand
+        unit = parse_unit(parameter.unit.text)
+        if operand.unit.dimension == unit.dimension and operand.typed and not isinstance(node, Name):
+            return operand
+        return Operand(si, unit, exact_digits(unit.from_si(si), self.resolved.sheet.front.digits) if operand.typed else operand.digits)
+
+    def operand(self, node: Node, si: float, found: Type, scope: Mapping[str, Operand]) -> Operand:
+        """How the value of an argument is printed."""
+        digits = self.resolved.sheet.front.digits
+        if isinstance(node, Name):
+            if node.name in scope:
+                return scope[node.name]
+            index = self.resolved.by_name.get(node.name)
+            if index is not None:
+                entry = self.resolved.entries[index]
+                typed = typed_number(entry.statement.value, entry.unit) if entry.kind == "input" else ""  # type: ignore[attr-defined]
+                return Operand(si, entry.unit, digits, typed)
+        unit = _unit_typed(node) or self.resolved.system.unit_for(found.dimension, found.absolute)
+        return Operand(si, unit, digits, typed_number(node, unit))
+
+    def _unit_of_call(self, definition: FunctionDefinition, types: dict[str, Type]) -> Unit:
+        if definition.unit is not None:
+            return parse_unit(definition.unit.text)
+        found = self.resolved.checker.type_of(definition.body, types)
+        return self.resolved.system.unit_for(found.dimension, found.absolute, found.flavour == "bar")
+
+    # --- what governed ---
+
+    def _asides(self, tree: Node, parameters: Values) -> Iterator[Aside]:
+        for node in walk(tree):
+            if isinstance(node, As):
+                yield Aside("", node.operand, f"taken as a number of {node.unit}")
+            elif isinstance(node, Call) and node.function in ("min", "max"):
+                values = [self._value(a, parameters) for a in node.arguments]
+                governing = node.arguments[values.index(FUNCTIONS[node.function].work(*values))]
+                yield Aside(f"{node.function}: governed by", governing, "")
+            elif isinstance(node, Call) and node.function in ("round_up", "round_down"):
+                value, step = (self._value(a, parameters) for a in node.arguments)
+                times = round(FUNCTIONS[node.function].work(value, step) / step)
+                yield Aside(f"{node.function}: {times} steps of", node.arguments[1], "")
+
+
+def _type_of(parameter: Parameter, found: Type) -> Type:
+    assert parameter.unit is not None
+    unit = parse_unit(parameter.unit.text)
+    return Type(unit.dimension, unit.absolute, flavour=found.flavour)
+
+
+def _unit_typed(node: Node) -> Unit | None:
+    if isinstance(node, Quantity):
+        return parse_unit(node.parts[-1].unit)
+    return ONE if isinstance(node, Number) else None

@@ -1,0 +1,1 @@
+"""Formulas: from typed lines to statements and trees, and back to text."""

@@ -1,0 +1,183 @@
+"""Formulas as plain text in one canonical spacing: for ids, for the trace and for messages."""
+
+from __future__ import annotations
+
+from loadpath.formula.statements import (
+    Check,
+    Choice,
+    Criterion,
+    Definition,
+    Faulty,
+    FunctionDefinition,
+    Statement,
+    Validity,
+)
+from loadpath.formula.tree import (
+    As,
+    Binary,
+    Bracket,
+    Call,
+    Cases,
+    Factor,
+    Logic,
+    Name,
+    Negative,
+    Node,
+    Number,
+    Part,
+    Quantity,
+    Relation,
+    Shown,
+    Word,
+)
+
+LOGIC, RELATION, SUM, PRODUCT, SIGN, POWER, ATOM = range(7)
+"""How tightly a node holds together, loosest first; shared by every printer."""
+
+
+def level(node: Node) -> int:
+    """The tightness of a node as it prints."""
+    match node:
+        case Logic():
+            return LOGIC
+        case Relation():
+            return RELATION
+        case Binary(operator="+" | "-"):
+            return SUM
+        case Binary(operator="*" | "/") | Factor():
+            return PRODUCT
+        case Negative():
+            return SIGN
+        case Shown(number=number, unit=unit) if number.startswith("-") and unit not in ("degC", "degF"):
+            return SIGN
+        case Quantity(parts=(Part(whole=whole), *_)) if whole.startswith("-"):
+            return SIGN
+        case Binary(operator="^"):
+            return POWER
+        case _:
+            return ATOM
+
+
+def is_measured(node: Node) -> bool:
+    """True where a number with a unit, or in powers of ten, stands: it takes brackets as the base of a power."""
+    return isinstance(node, Quantity) or (
+        isinstance(node, Shown) and not node.word and (bool(node.unit) or "e" in node.number or " " in node.number)
+    ) or (isinstance(node, Number) and "e" in node.text.lower())
+
+
+def needs_brackets(child: Node, parent: Node, right: bool = False) -> bool:
+    """True where a child of an operation must stand in brackets to keep its meaning."""
+    match parent:
+        case Binary(operator="^") if not right:
+            return level(child) < ATOM or is_measured(child)
+        case Binary(operator="^"):
+            return level(child) < SIGN
+        case Binary(operator="+"):
+            return level(child) < SUM or (right and level(child) in (SUM, SIGN))
+        case Binary(operator="-"):
+            return level(child) < SUM or (right and level(child) in (SUM, SIGN))
+        case Binary(operator="*" | "/"):
+            return level(child) < PRODUCT or (right and level(child) in (PRODUCT, SIGN))
+        case Negative():
+            return level(child) <= SIGN
+        case Factor():
+            return level(child) < PRODUCT
+        case Relation():
+            return level(child) <= RELATION
+        case Logic(word=word):
+            return isinstance(child, Logic) and not (word == "or" and child.word == "and")
+    return False
+
+
+def text(node: Node) -> str:
+    """One line of plain text that reads back to an equal tree (`Shown` and `Factor` apart)."""
+    match node:
+        case Number():
+            return node.text
+        case Quantity(parts=parts):
+            return " ".join(_part(part) for part in parts)
+        case Word():
+            return f'"{node.text}"'
+        case Name():
+            return node.name
+        case Shown(number=number, unit=unit):
+            return f"{number} {unit}" if unit else number
+        case Factor(body=body, number=number, unit=unit, divided=divided):
+            return f"{_child(body, node)} / ({number} {unit})" if divided else f"{_child(body, node)} * {number} {unit}"
+        case Negative(operand=operand):
+            return "-" + _child(operand, node)
+        case Binary():
+            return _binary(node)
+        case Call(function=function, arguments=arguments):
+            return f"{function}({', '.join(text(argument) for argument in arguments)})"
+        case Bracket(inner=inner, power=power):
+            return f"<{text(inner)}>^{power}"
+        case As(operand=operand, unit=unit):
+            return f"({text(operand)} as {unit})"
+        case Relation(operands=operands, signs=signs):
+            out = _child(operands[0], node)
+            for sign, operand in zip(signs, operands[1:], strict=True):
+                out += f" {sign} {_child(operand, node)}"
+            return out
+        case Logic(word=word, operands=operands):
+            return f" {word} ".join(_child(operand, node) for operand in operands)
+        case Cases(branches=branches):
+            return "cases " + "; ".join(_branch(b.value, b.condition) for b in branches)
+    raise TypeError(type(node).__name__)
+
+
+def _part(part: Part) -> str:
+    fraction = f"{part.over[0]}/{part.over[1]}" if part.over else ""
+    return " ".join(piece for piece in (part.whole, fraction, part.unit) if piece)
+
+
+def _branch(value: Node, condition: Node | None) -> str:
+    return f"{text(value)} otherwise" if condition is None else f"{text(value)} when {text(condition)}"
+
+
+def _child(child: Node, parent: Node, right: bool = False) -> str:
+    inside = text(child)
+    return f"({inside})" if needs_brackets(child, parent, right) else inside
+
+
+def _binary(node: Binary) -> str:
+    left, right = _child(node.left, node), _child(node.right, node, right=True)
+    if node.operator == "^" and isinstance(node.right, Binary | Call):
+        right = right if right.startswith("(") or isinstance(node.right, Call) else f"({right})" if node.right.operator != "^" else right
+    spaced = node.operator in "+-" or (node.operator != "^" and (_spaced(node.left) or _spaced(node.right)))
+    if node.operator == "/" and isinstance(node.right, Quantity) and node.right.parts[0].over and not node.right.parts[0].whole:
+        right = f"({right})"
+    return f"{left} {node.operator} {right}" if spaced else f"{left}{node.operator}{right}"
+
+
+def _spaced(node: Node) -> bool:
+    """Round a printed or typed quantity the signs `*` and `/` take spaces, so that units stay apart."""
+    match node:
+        case Shown(unit=unit):
+            return bool(unit)
+        case Quantity():
+            return True
+        case Binary(operator="*" | "/" | "^"):
+            return _spaced(node.left) or _spaced(node.right)
+    return False
+
+
+def statement_text(statement: Statement) -> str:
+    """A statement's formula part in canonical spacing."""
+    match statement:
+        case Definition(value=value):
+            return text(value)
+        case Choice(word=word, options=options):
+            return f'"{word}" of ' + ", ".join(f'"{option}"' for option in options)
+        case FunctionDefinition(name=name, parameters=parameters, body=body):
+            listed = ", ".join(p.name + (f" [{p.unit.text}]" if p.unit else "") for p in parameters)
+            return f"{name}({listed}) = {text(body)}"
+        case Criterion(relation=relation):
+            return text(relation)
+        case Validity(relation=relation, names=names):
+            return f"{text(relation)} for {', '.join(name for name, _ in names)}"
+        case Check(relation=relation, tolerance=tolerance):
+            return f"{text(relation)} within {text(tolerance)}"
+        case Faulty(text=typed):
+            return " ".join(typed.split())
+    raise TypeError(type(statement).__name__)

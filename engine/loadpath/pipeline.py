@@ -1,0 +1,138 @@
+"""The order of the stages. Nothing else knows it.
+
+text -> Sheet -> names and dimensions -> Trace (steps) -> Document -> HTML | Markdown | JSON
+"""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Iterable
+from dataclasses import dataclass
+from pathlib import Path
+
+from loadpath import __version__
+from loadpath.findings import finding
+from loadpath.project import SHEET_ENDING, MemoryWorld, write_atomically
+from loadpath.sheet import Sheet, read_sheet, read_sheet_file
+from loadpath.text import Source
+from loadpath.trace import Trace
+
+FORMATS = ("html", "md", "json")
+"""What `issue` writes when it is not told otherwise."""
+
+
+def evaluate(sheet: Sheet) -> Trace:
+    """Names and dimensions, then numbers."""
+    from loadpath.evaluate.evaluate import evaluate as work
+    from loadpath.resolve import resolve
+
+    return work(resolve(sheet))
+
+
+def audited(sheet: Sheet) -> Trace:
+    """The trace with every finding that an audit adds."""
+    from loadpath.checking.audit import audit
+
+    trace = evaluate(sheet)
+    return trace.with_findings(audit(trace))
+
+
+def read_input(path: Path | str, text: str | None = None) -> Sheet:
+    """The sheet in a file, or in a text that was read from standard input."""
+    if text is not None:
+        return read_sheet(Source("-", text), MemoryWorld({}))
+    return read_sheet_file(Path(path))
+
+
+# --- formats ----------------------------------------------------------------------------------------------------
+
+Files = dict[str, bytes]
+"""Name of each file that a document consists of, and its bytes."""
+
+
+def _html(trace: Trace, stem: str) -> Files:
+    from loadpath.document import build
+    from loadpath.render.html import render
+
+    return {f"{stem}.html": render(build(trace, __version__)).encode()}
+
+
+def _markdown(trace: Trace, stem: str) -> Files:
+    from loadpath.document import build
+    from loadpath.render.markdown import render
+
+    text, images = render(build(trace, __version__), stem)
+    return {f"{stem}.md": text.encode()} | images
+
+
+def _json(trace: Trace, stem: str) -> Files:
+    from loadpath.trace.file import record
+
+    return {f"{stem}.trace.json": record(trace, __version__).to_json().encode()}
+
+
+RENDERERS: dict[str, Callable[[Trace, str], Files]] = {"html": _html, "md": _markdown, "json": _json}
+
+
+def render(trace: Trace, stem: str, formats: Iterable[str] = FORMATS) -> Files:
+    """The files of a document in the formats asked for. Raises KeyError for a format that there is none of."""
+    files: Files = {}
+    for name in formats:
+        files |= RENDERERS[name](trace, stem)
+    return files
+
+
+# --- issuing ----------------------------------------------------------------------------------------------------
+
+
+@dataclass(frozen=True)
+class Issued:
+    """What became of one sheet."""
+
+    path: str
+    """As the user named it."""
+    trace: Trace
+    written: tuple[Path, ...]
+
+    @property
+    def exit_code(self) -> int:
+        """0 done, 1 the sheet has errors, 3 a criterion is not satisfied or not shown."""
+        return exit_code(self.trace)
+
+
+def exit_code(trace: Trace) -> int:
+    """0 done, 1 the sheet has errors, 3 a criterion is not satisfied or not shown; 1 outranks 3."""
+    if trace.has_errors:
+        return 1
+    return 3 if any(s.verdict is not None and s.verdict.satisfied is not True for s in trace.criteria) else 0
+
+
+def stem_of(path: str) -> str:
+    """The name that a sheet's documents begin with."""
+    name = Path(path).name
+    return "stdin" if path == "-" else name.removesuffix(SHEET_ENDING).removesuffix(".md") or "sheet"
+
+
+def issue(path: str, out: Path, formats: Iterable[str] = FORMATS, text: str | None = None) -> Issued:
+    """Reads, works and writes one sheet; a sheet with errors still gives its documents. Raises OSError where it can't write."""
+    trace = safely(audited, read_input(path, text))
+    written = []
+    for name, data in render(trace, stem_of(path), formats).items():
+        target = out / name
+        target.parent.mkdir(parents=True, exist_ok=True)
+        write_atomically(target, data)
+        written.append(target)
+    return Issued(path, trace, tuple(written))
+
+
+def safely(work: Callable[[Sheet], Trace], sheet: Sheet) -> Trace:
+    """The trace, or, where the engine itself fails, one without steps that says so: a fault is never silent."""
+    try:
+        return work(sheet)
+    except Exception as fault:
+        from dataclasses import replace
+
+        said = finding(
+            "engine-fault", f"a fault of the engine, not of the sheet: {type(fault).__name__}: {fault}", sheet.source, None,
+            help="report it with this sheet; nothing on it is shown",
+        )  # fmt: skip
+        return evaluate(replace(sheet, blocks=(), findings=(*sheet.findings, said)))

@@ -1,0 +1,183 @@
+"""HTML: one self-contained page with MathML, fonts inside, readable on screen and printed with its title block."""
+
+from __future__ import annotations
+
+import base64
+import math
+import re
+import unicodedata
+from functools import lru_cache
+from typing import Any
+
+from markupsafe import Markup, escape
+
+from loadpath.document.model import Block, Document, FigureBlock, Ref, TitleBlock
+from loadpath.formula.names import symbol
+from loadpath.formula.tree import Name, Node, Shown
+from loadpath.render.math.mathml import flow, mathml
+from loadpath.render.templates import environment, folder
+from loadpath.units.printing import quantity
+
+CELL = 17
+"""Characters that a cell of the printed title block surely holds on one line."""
+
+
+def render(document: Document) -> str:
+    """The page of a document."""
+    return str(
+        _environment().get_template("document.html.j2").render(
+            d=document, s=document.summary, r=document.registers, t=document.title_block, style=Markup(style()),
+            block_strings=Markup(title_block_strings(document.title_block, document.alerts)),
+            inline=lambda tokens: _inline(tokens, document), prose=lambda tokens: _prose(tokens, document),
+            figure=_figure, kind=lambda block: type(block).__name__, contents=_contents(document.blocks),
+        )
+    )  # fmt: skip
+
+
+@lru_cache(maxsize=1)
+def _environment() -> Any:
+    return environment({
+        "math": lambda node: Markup(mathml(node)),
+        "flow": _flow,
+        "name_math": lambda name: Markup(mathml(Name(name))),
+        "shown": printed,
+        "symbol": symbol_html,
+        "ref": ref_html,
+        "breaks": breaks,
+    })  # fmt: skip
+
+
+# --- style and fonts --------------------------------------------------------------------------------------------
+
+
+@lru_cache(maxsize=1)
+def style() -> str:
+    """The style sheet with the fonts inside."""
+    css = (folder() / "style.css").read_text(encoding="utf-8")
+    css = re.sub(r"/\*.*?\*/", "", css, flags=re.S)
+    css = re.sub(r"\n\s*\n+", "\n", css)
+
+    def inside(match: re.Match[str]) -> str:
+        data = base64.b64encode((folder() / match.group(1)).read_bytes()).decode()
+        return f'url("data:font/woff2;base64,{data}")'
+
+    return re.sub(r'url\("(fonts/[\w-]+\.woff2)"\)', inside, css).strip()
+
+
+def css_string(text: str) -> str:
+    """A text as a CSS string that no text can end: all but plain letters, digits and spaces as escapes."""
+    out = []
+    for character in text:
+        plain = character.isalnum() or character in " .,;:()+*=_·–-/"
+        out.append(character if plain else f"\\{ord(character):x} ")
+    return '"' + "".join(out) + '"'
+
+
+def title_block_strings(block: TitleBlock, alerts: tuple[str, ...]) -> str:
+    """The texts of the printed title block as CSS properties, and how many lines its rows need."""
+    title = block.title + (f"\n{block.subtitle}" if block.subtitle else "")
+    texts = {
+        "owner": block.owner, "title": title, "number": block.number, "revision": block.revision,
+        "created": block.created_by, "reviewed": block.reviewed_by, "approved": block.approved_by, "date": block.date,
+        "made": block.made,
+    }  # fmt: skip
+    rows = [
+        max(_lines(block.owner, CELL), _lines(title, 2 * CELL), _lines(block.number, CELL), _lines(block.revision, CELL)),
+        max(_lines(t, CELL) for t in (block.created_by, block.reviewed_by, block.approved_by, block.date)),
+    ]  # fmt: skip
+    lines = [f"--tb-{name}:{css_string(text)}" for name, text in texts.items()]
+    if alerts:
+        lines.append(f"--tb-state:{css_string(alerts[0].rstrip('.'))}")
+    lines += [f"--tb-lines-{i}:{count}" for i, count in enumerate(rows, 1)]
+    return ":root{" + ";".join(lines) + "}"
+
+
+def _lines(text: str, width: int) -> int:
+    """Lines that a text takes in a cell, by words; wide characters count twice."""
+    total = 0
+    for line in text.split("\n"):
+        used = 0
+        total += 1
+        for word in line.split():
+            size = sum(2 if unicodedata.east_asian_width(c) in "WF" else 1 for c in word)
+            if used and used + 1 + size > width:
+                total, used = total + 1, 0
+            total += max(math.ceil(size / width) - 1, 0)
+            used += size + bool(used)
+    return max(total, 1)
+
+
+# --- pieces of text ---------------------------------------------------------------------------------------------
+
+
+def printed(value: Shown | str) -> str:
+    """A value in running text."""
+    if isinstance(value, str):
+        return value
+    return f"“{value.number}”" if value.word else quantity(value.number, value.unit)
+
+
+def symbol_html(name: str) -> Markup:
+    """A name in running text: σ with its subscript."""
+    s = symbol(name)
+    sub = Markup("<sub>{}</sub>").format(s.subscript) if s.subscript else Markup("")
+    return escape(s.prefix + s.base) + sub + escape("′" * s.primes)
+
+
+def ref_html(ref: Ref) -> Markup:
+    """What a reference to a step reads: symbol or words, then the number."""
+    if not ref.name:
+        return escape(ref.number)
+    name = symbol_html(ref.name) if ref.is_name else breaks(ref.name)
+    return name + " " + escape(ref.number)
+
+
+def breaks(text: str) -> Markup:
+    """A long name that may be broken after `_`."""
+    return Markup("_<wbr>").join(escape(part) for part in text.split("_"))
+
+
+def _flow(node: Node, sign: str = "") -> Markup:
+    return Markup("<wbr>").join(Markup(piece) for piece in flow(node, sign))
+
+
+def _figure(block: FigureBlock) -> str:
+    return f"data:{block.media_type};base64,{base64.b64encode(block.data).decode()}"
+
+
+def _contents(blocks: tuple[Block, ...]) -> list[Any]:
+    return [b for b in blocks if type(b).__name__ == "SectionHead" and b.number]  # type: ignore[union-attr]
+
+
+# --- prose ------------------------------------------------------------------------------------------------------
+
+
+@lru_cache(maxsize=1)
+def _renderer() -> Any:
+    from markdown_it import MarkdownIt
+
+    def value(self: Any, tokens: Any, index: int, options: Any, env: Any) -> str:
+        found = env["values"].get(tokens[index].meta.get("value"), tokens[index].content)
+        return str(escape(printed(found)))
+
+    def image(self: Any, tokens: Any, index: int, options: Any, env: Any) -> str:
+        return str(escape(tokens[index].content))
+
+    markdown = MarkdownIt("commonmark", {"html": False}).enable("table")
+    markdown.add_render_rule("value", value)
+    markdown.add_render_rule("image", image)
+    markdown.add_render_rule("table_open", lambda *_: '<div class="scroll"><table>\n')
+    markdown.add_render_rule("table_close", lambda *_: "</table></div>\n")
+    return markdown
+
+
+def _prose(tokens: Any, document: Document) -> Markup:
+    markdown = _renderer()
+    return Markup(markdown.renderer.render(tokens, markdown.options, {"values": document.values}))
+
+
+def _inline(tokens: Any, document: Document) -> Markup:
+    markdown = _renderer()
+    return Markup(markdown.renderer.renderInline(tokens.children or [], markdown.options, {"values": document.values}))
+
+

@@ -1,0 +1,309 @@
+"""From a formula tree to boxes: which brackets, which sign for a product, what stands above what.
+
+After ISO 80000-1 and -2 (from memory): sloping quantity symbols, upright numbers, units and function names, `×` between
+numbers, a half-high dot between symbols, at most two fractions one within the other.
+"""
+
+from __future__ import annotations
+
+import re
+from dataclasses import dataclass, replace
+
+from loadpath.formula.canonical import POWER, SIGN, level, needs_brackets
+from loadpath.formula.names import symbol
+from loadpath.formula.tree import (
+    As,
+    Binary,
+    Bracket,
+    Call,
+    Cases,
+    Factor,
+    Logic,
+    Name,
+    Negative,
+    Node,
+    Number,
+    Part,
+    Quantity,
+    Relation,
+    Shown,
+    Word,
+    walk,
+)
+from loadpath.functions import NAMES
+from loadpath.render.math.boxes import (
+    Amount,
+    Box,
+    Fence,
+    Figure,
+    Fraction,
+    Function,
+    Operator,
+    Power,
+    Root,
+    Row,
+    Table,
+    Variable,
+    Words,
+    bracketed,
+    row,
+)
+from loadpath.units.printing import MINUS
+
+MOST_FRACTIONS = 2
+"""Fractions one within the other; what lies deeper is set on the line."""
+
+RELATIONS = {"<=": "≤", ">=": "≥", "<": "<", ">": ">", "=": "="}
+_FUNCTIONS = {"asin": ("arcsin", ""), "acos": ("arccos", ""), "atan": ("arctan", ""), "log10": ("log", "10")}
+_FEET = re.compile(r"(-?[\d.]+) ft (.+)")
+
+
+@dataclass(frozen=True, slots=True)
+class Place:
+    """Where in a formula a node stands."""
+
+    flat: bool = False
+    """Fractions are set on the line."""
+    fractions: int = 0
+    """Fractions built up around it."""
+    numeric: bool = False
+    """A formula of numbers: `pi` counts as one."""
+    signed: bool = False
+    """Directly behind an operator: a minus takes brackets."""
+    chosen: int | None = None
+    """The branch to mark."""
+
+    @property
+    def on_line(self) -> bool:
+        return self.flat or self.fractions >= MOST_FRACTIONS
+
+    def start(self) -> Place:
+        """The beginning of an expression of its own."""
+        return replace(self, signed=False)
+
+    def within(self) -> Place:
+        """Above or below the stroke of a fraction."""
+        return replace(self, signed=False, fractions=self.fractions + 1)
+
+    def raised(self) -> Place:
+        """In an exponent."""
+        return replace(self, signed=False, flat=True)
+
+
+def lay_out(node: Node, flat: bool = False, chosen: int | None = None) -> Box:
+    """The boxes of a formula. `flat`: every fraction on the line; `chosen`: index of the branch of `cases` to mark."""
+    return _lay(node, Place(flat=flat, numeric=_is_numeric(node), chosen=chosen))
+
+
+def _is_numeric(node: Node) -> bool:
+    nodes = list(walk(node))
+    return any(isinstance(n, Shown) for n in nodes) or not any(isinstance(n, Name) and n.name != "pi" for n in nodes)
+
+
+def _lay(node: Node, place: Place) -> Box:
+    match node:
+        case Number(text=text):
+            return Figure(text)
+        case Quantity(parts=pieces):
+            return Amount(tuple((_number(part), part.unit) for part in pieces))
+        case Shown():
+            return _shown(node)
+        case Word(text=text):
+            return Words(f"“{text}”")
+        case Name(name=name):
+            return Variable(symbol(name))
+        case Negative(operand=operand):
+            return row(Operator(MINUS, "sign"), _child(operand, node, replace(place, signed=True)))
+        case Binary(operator="+" | "-", left=left, right=right):
+            sign = Operator(MINUS if node.operator == "-" else "+", "sum")
+            return row(_child(left, node, place), sign, _child(right, node, replace(place, signed=True), True))
+        case Binary(operator="*", left=left, right=right):
+            sign = Operator(_product_sign(left, right, place), "product")
+            return row(_child(left, node, place), sign, _child(right, node, replace(place, signed=True), True))
+        case Binary(operator="/"):
+            return _on_line(node, place) if place.on_line else _fraction(node, place)
+        case Binary():
+            return _power(node, place)
+        case Call():
+            return _call(node, place.start())
+        case Bracket(inner=inner, power=power):
+            return Power(Fence("⟨", _lay(inner, place.start()), "⟩"), Figure(str(power)))
+        case As():
+            return _as(node, place.start())
+        case Factor():
+            return _factor(node, place)
+        case Relation():
+            return _relation(node, place.start())
+        case Logic(word=word, operands=operands):
+            return _joined([_child(o, node, place.start()) for o in operands], Operator(word, "logic"))
+        case Cases(branches=branches):
+            conditions = replace(place.start(), flat=True)
+            return Table(
+                tuple((_lay(b.value, place.start()), b.condition and _lay(b.condition, conditions)) for b in branches),
+                place.chosen,
+            )
+    raise TypeError(type(node).__name__)
+
+
+# --- values -----------------------------------------------------------------------------------------------------
+
+
+def _number(part: Part) -> str:
+    return " ".join(filter(None, [part.whole, "/".join(part.over) if part.over else ""]))
+
+
+def _shown(node: Shown) -> Box:
+    if node.word:
+        return Words(f"“{node.number}”")
+    if not node.unit:
+        return Figure(node.number)
+    if feet := _FEET.fullmatch(node.number):
+        return Amount(((feet.group(1), "ft"), (feet.group(2), node.unit)))
+    return Amount(((node.number, node.unit),))
+
+
+def _as(node: As, place: Place, brackets: bool = True) -> Box:
+    """The unit that is taken off stands behind a small word; a value printed in that very unit is its plain number."""
+    if isinstance(node.operand, Shown) and node.operand.unit == node.unit:
+        return _lay(replace(node.operand, unit=""), place)
+    inner = row(_lay(node.operand, place), Words(" in ", small=True), Amount((("", node.unit),)))
+    return bracketed(inner) if brackets else inner
+
+
+def _factor(node: Factor, place: Place) -> Box:
+    """The conversion factor at the end of a substitution."""
+    body, amount = _child(node.body, node, place), Amount(((node.number, node.unit),))
+    if node.divided:
+        return row(body, Operator("÷", "product"), bracketed(amount))
+    return row(body, Operator("×", "product"), amount)
+
+
+# --- operations -------------------------------------------------------------------------------------------------
+
+
+def _child(child: Node, parent: Node, place: Place, right: bool = False) -> Box:
+    """An operand, in brackets where its meaning or a second sign asks for them."""
+    fraction = isinstance(child, Binary) and child.operator == "/"
+    needs = needs_brackets(child, parent, right) or (place.signed and level(child) == SIGN)
+    if fraction and (needs or _multiplies(parent)):
+        if place.on_line:
+            return bracketed(_lay(child, place.start()))
+        built = _lay(child, place.start())
+        assert isinstance(built, Fraction)
+        return replace(built, flat=bracketed(built.flat))
+    return bracketed(_lay(child, place.start())) if needs else _lay(child, place)
+
+
+def _multiplies(node: Node) -> bool:
+    return isinstance(node, Factor) or (isinstance(node, Binary) and node.operator == "*")
+
+
+def _product_sign(left: Node, right: Node, place: Place) -> str:
+    """`×` where numbers stand on both sides."""
+    neighbour = left.right if isinstance(left, Binary) and left.operator == "*" else left
+    return "×" if _is_figures(neighbour, place) and _is_figures(right, place) else "⋅"
+
+
+def _is_figures(node: Node, place: Place) -> bool:
+    for inner in walk(node):
+        if isinstance(inner, Name) and not (inner.name == "pi" and place.numeric):
+            return False
+        if isinstance(inner, Call) and inner.function not in NAMES:
+            return False
+    return True
+
+
+def _fraction(node: Binary, place: Place) -> Fraction:
+    top, bottom = _lay(node.left, place.within()), _lay(node.right, place.within())
+    return Fraction(top, bottom, _stroke(node, top, bottom))
+
+
+def _on_line(node: Binary, place: Place) -> Box:
+    return _stroke(node, _lay(node.left, place.start()), _lay(node.right, place.start()))
+
+
+def _stroke(node: Binary, top: Box, bottom: Box) -> Box:
+    """`top/bottom`, with brackets round all that could be read past the stroke."""
+    long_top = level(node.left) <= SIGN or _has_stroke(node.left)
+    long_bottom = level(node.right) <= SIGN or isinstance(node.right, Quantity | Factor) or _is_long(node.right)
+    return row(
+        bracketed(top) if long_top else top,
+        Operator("/", "slash"),
+        bracketed(bottom) if long_bottom else bottom,
+    )
+
+
+def _is_long(node: Node) -> bool:
+    """True for a printed number with a unit or a power of ten."""
+    return (isinstance(node, Shown) and not node.word and (bool(node.unit) or "e" in node.number)) or (
+        isinstance(node, Number) and "e" in node.text.lower()
+    )
+
+
+def _has_stroke(node: Node) -> bool:
+    """True for an amount with a stroke in its unit or its number."""
+    match node:
+        case Shown(number=number, unit=unit):
+            return "/" in unit or "/" in number
+        case Quantity(parts=pieces):
+            return any("/" in part.unit or part.over for part in pieces)
+    return False
+
+
+def _power(node: Binary, place: Place) -> Box:
+    exponent = _lay(node.right, place.raised())
+    if needs_brackets(node.left, node) or _ends_open(node.left):
+        return Power(bracketed(_lay(node.left, place.start())), exponent)
+    return Power(_lay(node.left, place.start()), exponent)
+
+
+def _ends_open(node: Node) -> bool:
+    """True for what an exponent behind it could be read into: `sin(x)`, a root, a primed name."""
+    match node:
+        case Call(function=function):
+            return function != "abs"
+        case Name(name=name):
+            return name.endswith("'")
+        case Bracket():
+            return True
+    return level(node) == POWER
+
+
+# --- functions, relations ---------------------------------------------------------------------------------------
+
+
+def _call(node: Call, place: Place) -> Box:
+    inside = [_argument(argument, place) for argument in node.arguments]
+    match node.function, inside:
+        case "sqrt", [only]:
+            return Root(only)
+        case "cbrt", [only]:
+            return Root(only, "3")
+        case "abs", [only]:
+            return Fence("|", only, "|")
+    listed = _joined(inside, Operator(",", "comma"))
+    return row(_function(node.function), Operator("", "apply"), bracketed(listed))
+
+
+def _argument(node: Node, place: Place) -> Box:
+    return _as(node, place, brackets=False) if isinstance(node, As) else _lay(node, place)
+
+
+def _function(name: str) -> Box:
+    if name not in NAMES:
+        return Variable(symbol(name))
+    return Function(*_FUNCTIONS.get(name, (name.replace("_", " "), "")))
+
+
+def _relation(node: Relation, place: Place) -> Box:
+    boxes = [_child(node.operands[0], node, place)]
+    for sign, operand in zip(node.signs, node.operands[1:], strict=True):
+        boxes += [Operator(RELATIONS[sign], "relation"), _child(operand, node, place)]
+    return row(*boxes)
+
+
+def _joined(boxes: list[Box], between: Operator) -> Box:
+    out: list[Box] = []
+    for box in boxes:
+        out += [between, box] if out else [box]
+    return row(*out) if out else Row(())

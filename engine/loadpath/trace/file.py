@@ -1,0 +1,180 @@
+"""The trace file: plain records that mirror `trace.schema.json`, made from a trace, written as JSON and read back."""
+
+from __future__ import annotations
+
+import json
+from dataclasses import asdict, dataclass, fields
+from pathlib import PurePath
+from typing import Any
+
+from loadpath.findings import Finding
+from loadpath.formula.canonical import text
+from loadpath.formula.statements import Criterion
+from loadpath.trace import texts
+from loadpath.trace.model import Step, Trace, criterion_kind
+from loadpath.units.printing import quantity
+
+SCHEMA = "loadpath-trace/1"
+
+
+@dataclass(frozen=True, slots=True)
+class StepRecord:
+    """One step in a trace file; every text as printed, in plain form."""
+
+    id: str
+    number: str
+    kind: str
+    line: int
+    formula: str
+    substitution: str
+    display: str
+    value: float | str | None
+    """In `unit`."""
+    unit: str
+    si: float | None
+    """Coherent SI, full precision."""
+    uses: list[str]
+    used_by: list[str]
+    sources: list[str]
+    note: str
+    why: str
+    """Why there is no value, "" where there is one."""
+    branch: int | None
+    """1-based, of the `cases` branch taken."""
+    verdict: str
+    """Of a criterion, a validity or a check."""
+
+
+@dataclass(frozen=True, slots=True)
+class CriterionRecord:
+    """One criterion in a trace file."""
+
+    step: str
+    id: str
+    kind: str
+    relation: str
+    demand: float | None
+    limit: float | None
+    unit: str
+    utilisation: float | None
+    margin: float | None
+    satisfied: bool | None
+    verdict: str
+    conditional_on: list[str]
+
+
+@dataclass(frozen=True, slots=True)
+class FindingRecord:
+    """One finding in a trace file."""
+
+    slug: str
+    severity: str
+    line: int
+    column: int
+    message: str
+    help: str
+    file: str
+
+
+@dataclass(frozen=True, slots=True)
+class TraceFile:
+    """A whole trace file."""
+
+    schema: str
+    sheet: dict[str, str]
+    """file, title, number, revision, digest"""
+    engine: dict[str, str]
+    """version"""
+    steps: list[StepRecord]
+    criteria: list[CriterionRecord]
+    findings: list[FindingRecord]
+
+    def to_json(self) -> str:
+        """As written beside the document, one line end at the end."""
+        return json.dumps(asdict(self), ensure_ascii=False, indent=1) + "\n"
+
+    @staticmethod
+    def from_json(data: str) -> TraceFile:
+        """A trace file read back. Raises ValueError where it is none."""
+        raw = json.loads(data)
+        if not isinstance(raw, dict) or raw.get("schema") != SCHEMA:
+            raise ValueError(f"not a trace file of schema {SCHEMA}")
+        return TraceFile(
+            raw["schema"], raw["sheet"], raw["engine"],
+            [_record(StepRecord, s) for s in raw["steps"]],
+            [_record(CriterionRecord, c) for c in raw["criteria"]],
+            [_record(FindingRecord, f) for f in raw["findings"]],
+        )  # fmt: skip
+
+
+def _record(kind: type[Any], raw: dict[str, Any]) -> Any:
+    return kind(**{f.name: raw[f.name] for f in fields(kind)})
+
+
+def record(trace: Trace, version: str) -> TraceFile:
+    """The file form of a trace."""
+    front = trace.sheet.front
+    about = {
+        "file": PurePath(trace.sheet.source.path).name, "title": front.title, "number": front.number, "revision": front.revision,
+        "digest": trace.digest,
+    }  # fmt: skip
+    return TraceFile(
+        SCHEMA, about, {"version": version},
+        [_step(trace, step) for step in trace.steps],
+        [_criterion(step) for step in trace.criteria],
+        [finding_record(f) for f in trace.findings],
+    )  # fmt: skip
+
+
+def _step(trace: Trace, step: Step) -> StepRecord:
+    shown = texts.display(step)
+    taken = step.working.taken if step.working else None
+    return StepRecord(
+        step.id, step.number, step.kind, step.line, texts.formula(step), _substitution(trace, step),
+        quantity(shown.number, shown.unit) if shown and not shown.word else shown.number if shown else "",
+        step.value, step.unit.text, step.si if isinstance(step.si, float) else None,
+        list(step.uses), list(step.used_by), list(step.sources), step.note, step.why,
+        taken.index + 1 if taken else None, verdict_words(step),
+    )  # fmt: skip
+
+
+def _substitution(trace: Trace, step: Step) -> str:
+    if step.verdict is not None:
+        lines = [c.substituted or c.evaluated for c in texts.compared(trace, step)]
+        return " or ".join(text(line) for line in lines)
+    put = texts.step_substitution(trace, step)
+    return text(put.tree) if put else ""
+
+
+def verdict_words(step: Step) -> str:
+    """The verdict of a judged step in words; "" for other steps."""
+    if step.verdict is None:
+        return ""
+    if step.kind in ("valid", "check"):
+        return {True: "holds", False: "does not hold", None: f"not shown: {step.why}"}[step.verdict.satisfied]
+    return step.verdict.words(step.why)
+
+
+def _criterion(step: Step) -> CriterionRecord:
+    verdict = step.verdict
+    assert verdict is not None
+    units = step.entry.side_units
+    unit = units[min(verdict.part, len(units) - 1)] if units else step.unit
+    shown = unit if verdict.demand is not None else step.unit
+
+    def of(si: float | None) -> float | None:
+        return None if si is None else shown.from_si(si)
+
+    relation = text(step.statement.relation) if isinstance(step.statement, Criterion) else ""
+    margin = None if verdict.margin is None else verdict.margin / unit.size
+    return CriterionRecord(
+        step.number, step.id, criterion_kind(step), relation, of(verdict.demand), of(verdict.limit), unit.text,
+        verdict.utilisation, margin, verdict.satisfied, verdict_words(step), list(verdict.conditional_on),
+    )  # fmt: skip
+
+
+def finding_record(finding: Finding) -> FindingRecord:
+    """The file form of a finding; the same in `audit --format json`."""
+    return FindingRecord(
+        finding.slug, finding.severity, finding.line, finding.column, finding.message, finding.help, PurePath(finding.source.path).name
+    )  # fmt: skip

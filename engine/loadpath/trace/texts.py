@@ -1,0 +1,258 @@
+"""What a step says: formula, substitution, result. Made when asked for; every document and the trace file print these.
+
+All of it is trees and plain numbers: how they look (MathML, LaTeX, text) is up to the printers.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+from loadpath.formula.canonical import statement_text
+from loadpath.formula.statements import Check, Criterion, Definition, Validity
+from loadpath.formula.tree import Binary, Logic, Name, Node, Number, Relation, Shown, walk
+from loadpath.resolve import expressions
+from loadpath.trace.digits import exact_digits, order_digits, typed_number
+from loadpath.trace.model import Called, Operand, Step, Trace, Working
+from loadpath.trace.substitute import Scope, natural_unit, shown, substitute, with_factors
+from loadpath.units import ONE, Unit
+from loadpath.units.printing import MOST_DIGITS, feet_and_inches, plain, read_plain, step_of
+
+MORE = 2
+"""Further digits that a substitution may show where the usual ones would not lead to the result."""
+
+
+# --- values -----------------------------------------------------------------------------------------------------
+
+
+def operand(step: Step) -> Operand | None:
+    """The value of a step as it stands in a substitution; None where it has none."""
+    if step.si is None:
+        return None
+    if isinstance(step.si, str):
+        return Operand(step.si, step.unit, step.digits)
+    if step.kind != "input" or not isinstance(step.statement, Definition):
+        return Operand(step.si, step.unit, step.digits)
+    typed = typed_number(step.statement.value, step.unit)
+    value = step.unit.from_si(step.si)
+    return Operand(step.si, step.unit, exact_digits(value, step.digits), typed, exact=True)
+
+
+def display(step: Step, unit: Unit | None = None) -> Shown | None:
+    """The result of a step as printed, in its own unit or another; None where there is none."""
+    own = operand(step)
+    if own is None:
+        return None
+    if unit is not None and unit.text != own.unit.text:
+        own = Operand(own.si, unit, own.digits)
+    if isinstance(own.si, float) and own.unit.text.startswith("ft-in"):
+        return Shown(feet_and_inches(own.unit.from_si(own.si), int(own.unit.text.partition("/")[2])).removesuffix(" in"), "in")
+    return shown(own)
+
+
+def scope_of(trace: Trace, working: Working | None = None) -> Scope:
+    """The printed value of each name that a working may use."""
+    own = dict(working.scope) if working else {}
+
+    def find(name: str) -> Operand | None:
+        if name in own:
+            return own[name]
+        step = trace.by_name.get(name)
+        return operand(step) if step is not None else None
+
+    return find
+
+
+# --- formula and substitution -----------------------------------------------------------------------------------
+
+
+@dataclass(frozen=True, slots=True)
+class Substitution:
+    """A formula with its printed values."""
+
+    tree: Node
+    closes: bool
+    """False where even further digits don't lead to the printed result: the step says "from unrounded values"."""
+
+
+def holds_names(tree: Node) -> bool:
+    """True where a substitution shows something that the formula doesn't."""
+    return any(isinstance(n, Name) and n.name != "pi" for n in walk(tree)) or any(type(n).__name__ == "Call" for n in walk(tree))
+
+
+def substitution(trace: Trace, working: Working, result: Operand) -> Substitution | None:
+    """The substitution of a value, with as many digits as it takes to land on the printed result."""
+    if not holds_names(working.tree) or isinstance(result.si, str):
+        return None
+    scope = scope_of(trace, working)
+    for more in range(MORE + 1):
+        tree = substitute(working.tree, scope, working.calls, more)
+        if _lands(trace, tree, result):
+            return Substitution(with_factors(tree, result.unit), True)
+    return Substitution(with_factors(substitute(working.tree, scope, working.calls), result.unit), False)
+
+
+def _lands(trace: Trace, tree: Node, result: Operand) -> bool:
+    """True where the printed numbers give the printed result within one unit of its last digit."""
+    assert isinstance(result.si, float)
+    try:
+        reached = result.unit.from_si(trace.work(tree))
+    except (ArithmeticError, ValueError):
+        return False
+    printed = shown(result).number
+    return abs(reached - read_plain(printed)) <= 1.5 * step_of(printed)
+
+
+def step_substitution(trace: Trace, step: Step) -> Substitution | None:
+    """The substitution of a result, None for other steps and where nothing was computed."""
+    result = operand(step)
+    if step.kind != "result" or step.working is None or result is None:
+        return None
+    return substitution(trace, step.working, result)
+
+
+def call_substitution(trace: Trace, called: Called) -> Substitution | None:
+    """The substitution of a call's body, with the parameters' values in place."""
+    return substitution(trace, called.working, called.value)
+
+
+# --- relations --------------------------------------------------------------------------------------------------
+
+
+@dataclass(frozen=True, slots=True)
+class Compared:
+    """One relation of a criterion, a validity or a condition, as it is printed."""
+
+    formula: Relation
+    substituted: Relation | None
+    """With values in place of names, where a side is more than a name or a number."""
+    evaluated: Relation
+    """Each side as one number."""
+    per_length: tuple[int, Name, str] | None = None
+    """Operand index, length and number: the demand as `L/499.9`, where the limit is `L/n`."""
+
+
+def compared(trace: Trace, step: Step) -> tuple[Compared, ...]:
+    """The relations of a judged step, in the order typed; () where nothing was computed."""
+    statement, verdict = step.statement, step.verdict
+    if verdict is None or not verdict.sides or step.working is None or not isinstance(statement, Criterion | Validity | Check):
+        return ()
+    relations = [n for n in walk(expressions(statement)[0]) if isinstance(n, Relation)]
+    out = []
+    for relation, values, unit in zip(relations, verdict.sides, step.entry.side_units, strict=False):
+        out.append(_compared(trace, step.working, relation, values, unit, step.digits))
+    return tuple(out)
+
+
+def _compared(trace: Trace, working: Working, relation: Relation, values: tuple[float | str, ...], unit: Unit, base: int) -> Compared:
+    scope = scope_of(trace, working)
+    numbers = [unit.from_si(v) if isinstance(v, float) else v for v in values]
+    digits = base
+    for a, b in zip(numbers, numbers[1:], strict=False):
+        if isinstance(a, float) and isinstance(b, float):
+            digits = max(digits, order_digits(a, b, base))
+    sides = tuple(_side(o, v, n, unit, digits, scope) for o, v, n in zip(relation.operands, values, numbers, strict=True))
+    evaluated = Relation(sides, relation.signs)
+    substituted = None
+    if any(holds_names(o) and not isinstance(o, Name) for o in relation.operands):
+        inner = tuple(
+            with_factors(substitute(o, scope, working.calls), unit) if isinstance(v, float) else s
+            for o, v, s in zip(relation.operands, values, sides, strict=True)
+        )
+        substituted = Relation(tuple(s if isinstance(o, Name) else i for o, i, s in zip(relation.operands, inner, sides, strict=True)), relation.signs)
+    return Compared(relation, substituted, evaluated, _per_length(relation, numbers, unit, scope))
+
+
+def _side(node: Node, si: float | str, number: float | str, unit: Unit, digits: int, scope: Scope) -> Node:
+    """One side as one number: as typed where it is typed, else to so many digits."""
+    if isinstance(si, str) or isinstance(number, str):
+        return Shown(str(si), "", word=True)
+    if isinstance(node, Name) and (own := scope(node.name)) is not None and own.exact and own.unit.text == unit.text:
+        return shown(own)
+    if typed := typed_number(node, unit):
+        return Shown(typed, unit.text)
+    if number == 0:
+        return Shown("0", unit.text)
+    if not holds_names(node):
+        digits = exact_digits(number, digits)
+    return Shown(plain(number, digits), "in" if unit.text.startswith("ft-in") else unit.text)
+
+
+def _per_length(relation: Relation, numbers: list[float | str], unit: Unit, scope: Scope) -> tuple[int, Name, str] | None:
+    """A criterion against L/n prints its demand as L/n too."""
+    if len(relation.operands) != 2:
+        return None
+    limit_at = 1 if relation.signs[0][0] == "<" else 0
+    limit, demand = relation.operands[limit_at], numbers[1 - limit_at]
+    match limit:
+        case Binary(operator="/", left=Name() as length, right=Number(text=typed)):
+            of = scope(length.name)
+        case _:
+            return None
+    if of is None or not isinstance(of.si, float) or not isinstance(demand, float) or demand == 0 or of.unit.dimension != unit.dimension:
+        return None
+    ratio, asked = of.si / unit.to_si(abs(demand)), float(typed.replace("_", ""))
+    digits = next((d for d in range(4, MOST_DIGITS) if read_plain(plain(ratio, d)) != asked or ratio == asked), MOST_DIGITS)
+    return 1 - limit_at, length, plain(ratio, digits)
+
+
+def conditions(trace: Trace, working: Working) -> tuple[Compared, ...]:
+    """The condition of the branch taken, with its numbers, one a relation."""
+    if working.taken is None or working.taken.branch.condition is None:
+        return ()
+    scope = scope_of(trace, working)
+    out = []
+    for node in walk(working.taken.branch.condition):
+        if isinstance(node, Relation):
+            out.append(_condition(trace, working, node, scope))
+    return tuple(out)
+
+
+def _condition(trace: Trace, working: Working, relation: Relation, scope: Scope) -> Compared:
+    values: list[float | str] = []
+    for operand_ in relation.operands:
+        node = substitute_exact(operand_, scope, working.calls)
+        values.append(node if isinstance(node, str) else trace.work(node))
+    unit = _unit_of(relation, scope, working.calls)
+    return _compared(trace, working, relation, tuple(values), unit, trace.sheet.front.digits)
+
+
+def substitute_exact(node: Node, scope: Scope, calls: tuple[Called, ...]) -> Node | str:
+    """A tree with full values in place of names, to be worked; a word stays a word."""
+    exact = substitute(node, lambda name: _exact(scope(name)), tuple(_exact_call(c) for c in calls))
+    if isinstance(exact, Shown) and exact.word:
+        return exact.number
+    return getattr(node, "text", "") if type(node).__name__ == "Word" else exact
+
+
+def _exact(own: Operand | None) -> Operand | None:
+    return own if own is None or isinstance(own.si, str) else Operand(own.si, own.unit, own.digits, repr(own.unit.from_si(own.si)))
+
+
+def _exact_call(called: Called) -> Called:
+    value = _exact(called.value)
+    assert value is not None
+    return Called(called.call, called.arguments, called.working, value)
+
+
+def _unit_of(relation: Relation, scope: Scope, calls: tuple[Called, ...]) -> Unit:
+    """The unit that the sides of a condition are shown in: that of the first side that has one."""
+    for node in relation.operands:
+        unit = natural_unit(substitute(node, scope, calls))
+        if unit.text:
+            return unit
+    return ONE
+
+
+# --- lines of text ----------------------------------------------------------------------------------------------
+
+
+def formula(step: Step) -> str:
+    """The formula in canonical text."""
+    return statement_text(step.statement)
+
+
+def signs_of(relation: Node) -> tuple[Relation, ...]:
+    """The relations of a criterion in the order typed."""
+    if isinstance(relation, Logic):
+        return tuple(r for o in relation.operands for r in signs_of(o))
+    return (relation,) if isinstance(relation, Relation) else ()
