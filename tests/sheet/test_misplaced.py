@@ -123,7 +123,10 @@ def test_lines_that_follow_one_another_are_one_finding() -> None:
 
 
 def test_what_the_lines_would_have_defined_is_kept() -> None:
-    text = "Loads\n    P = 20 kN\n    strength rod: P <= P_Rd\n\n- item\n\n      L = 6 m\n\nM = P*L/4\nand so on\n"
+    text = (
+        "Loads\n    P = 20 kN\n    strength rod: P <= P_Rd\n\n- item\n\n      L = 6 m\n\nM = P*L\nand so on\n"
+    )
     assert lost(text) == [("P",), ("strength", "rod"), ("L",), ("M",)]
+    assert lost("Loads\n    P = 20 kN\n===") == [("P",)]
     assert lost("The load is\n    and so on\n") == []
     assert lost("> P = 20 kN\n") == [("P",)]

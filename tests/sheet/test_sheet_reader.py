@@ -101,7 +101,7 @@ def test_what_would_hang_ends_soon(body: str) -> None:
 
 
 def test_the_time_grows_with_the_length() -> None:
-    part = "## Step\n\nText that argues {x}, as usual.\n\n- one\n- two\n\nSo:\n\n    x = 3 kN*2 + 5 kN  -- a note\n\n"
+    part = "## Step\n\nText with {x}.\n\n- one\n- two\n\nSo:\n\n    x = 3 kN*2 + 5 kN  -- a note\n\n"
 
     def seconds(times: int) -> float:
         source = Source("a.sheet.md", FRONT + part * times)
@@ -113,53 +113,61 @@ def test_the_time_grows_with_the_length() -> None:
     assert seconds(1000) < 40 * max(seconds(100), 0.002)
 
 
-PARTS = st.sampled_from(
-    [
-        FRONT,
-        "---\n",
-        "\n",
-        "\n\n",
-        "    ",
-        "\t",
-        " ",
-        "- ",
-        "1. ",
-        "> ",
-        "# ",
-        "```\n",
-        "===\n",
-        "|a|b|\n|-|-|\n",
-        "|",
-    ]
-    + [
-        "x = 3 kN",
-        "strength: a <= b",
-        "f = cases",
-        "Table t: x\n\n",
-        "![c](a.png)",
-        "![",
-        "](",
-        "[a]: b\n",
-        "[a]",
-    ]
-    + [
-        "{x}",
-        "{x [m]}",
-        "{",
-        "}",
-        "\\",
-        "\\{",
-        "`",
-        "``",
-        "*",
-        "_",
-        "<script>",
-        '"}</style>',
-        "&amp;",
-        " -- ",
-        "text",
-    ]
-    + ["é", "\u2028", "\u0301", "σ_b", "\ufeff", "\x85", "\r", "\x0c", "<https://tern.example>"]
+PARTS = st.one_of(
+    st.sampled_from(
+        [
+            FRONT,
+            "---\n",
+            "\n",
+            "\n\n",
+            "    ",
+            "\t",
+            " ",
+            "- ",
+            "1. ",
+            "> ",
+            "# ",
+            "```\n",
+            "===\n",
+            "|a|b|\n|-|-|\n",
+            "|",
+        ]
+    ),
+    st.sampled_from(
+        [
+            "x = 3 kN",
+            "strength: a <= b",
+            "f = cases",
+            "Table t: x\n\n",
+            "![c](a.png)",
+            "![",
+            "](",
+            "[a]: b\n",
+            "[a]",
+        ]
+    ),
+    st.sampled_from(
+        [
+            "{x}",
+            "{x [m]}",
+            "{",
+            "}",
+            "\\",
+            "\\{",
+            "`",
+            "``",
+            "*",
+            "_",
+            "<script>",
+            '"}</style>',
+            "&amp;",
+            " -- ",
+            "text",
+        ]
+    ),
+    st.sampled_from(
+        ["é", "\u2028", "\u0301", "σ_b", "\ufeff", "\x85", "\r", "\x0c", "<https://tern.example>"]
+    ),
 )
 
 

@@ -14,7 +14,7 @@ from loadpath.text import Source
 
 def read(text: str) -> tuple[list[Value], tuple[Finding, ...]]:
     blocks, found = read_blocks(Source("a.sheet.md", text), 0, MemoryWorld())
-    values = []
+    values: list[Value] = []
     for block in blocks:
         if isinstance(block, Prose):
             assert list(block.values) == list(values_in(block.tokens))
@@ -120,7 +120,7 @@ def test_braces_without_a_name_are_a_mistake(text: str, column: int) -> None:
     values, found = read(text)
     assert [(f.slug, f.column) for f in found] == [("bad-syntax", column)]
     assert "\\{" in found[0].help
-    assert [value.name for value in values][0] == ""
+    assert values[0].name == ""
 
 
 def test_words_are_given_in_pieces() -> None:

@@ -28,7 +28,7 @@ def citation_findings(trace: Trace) -> Iterator[Finding]:
 
 def _cited(trace: Trace) -> set[str]:
     """Keys that a note or the text cites, or that may have been meant by one that is unknown."""
-    cited = {key for step in trace for key in step.sources} | trace.resolved.mentioned_keys
+    cited = {key for step in trace for key in step.sources} | trace.resolved.meant
     for block in trace.sheet.blocks:
         if isinstance(block, Prose):
             cited |= {match.group(1).strip() for match in _KEY.finditer(block.text)}

@@ -29,7 +29,7 @@ def input_findings(trace: Trace) -> Iterator[Finding]:
             continue
         if step.entry.blocked_by == 0:
             yield from _origin(trace, step, statement.name, statement.name_span)
-        if not step.used_by and statement.name not in trace.resolved.mentioned:
+        if step.entry.blocked_by == 0 and not step.used_by and statement.name not in trace.resolved.meant:
             yield finding(
                 "unused-input", f"nothing uses the input `{statement.name}`", trace.sheet.source, statement.name_span,
                 help="delete it, or use it where it belongs; a value that is only told is written in the text",

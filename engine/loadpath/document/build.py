@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from bisect import bisect_right
 from collections import defaultdict
 from typing import Any
 
@@ -29,10 +30,12 @@ from loadpath.document.model import (
 )
 from loadpath.document.steps import StepWriter, is_listed, ref
 from loadpath.findings import Finding
+from loadpath.formula.names import plain_symbol
 from loadpath.formula.statements import Criterion
 from loadpath.formula.tree import Shown
 from loadpath.sheet import Formulas, Heading, Image, Value, Words
 from loadpath.sheet import Prose as SheetProse
+from loadpath.text import Span
 from loadpath.trace import Step, Trace, criterion_kind, criterion_name, texts
 from loadpath.trace.digits import ratio_text
 from loadpath.trace.file import verdict_words
@@ -51,6 +54,7 @@ class _Builder:
         self.trace, self.version = trace, version
         self.front = trace.sheet.front
         self.writer = StepWriter(trace)
+        self.judged = {s.number: s for s in trace.criteria}
         self.placed: dict[int, str] = {}
         """Anchor of the place where each finding stands, by its index."""
 
@@ -172,20 +176,20 @@ class _Builder:
         """Gives each finding to the step or block in whose lines it stands."""
         source = self.trace.sheet.source
         by_block: dict[int, tuple[Finding, ...]] = defaultdict(tuple)
-        steps = [(s.statement.span.start, s.statement.span.end, i) for i, s in enumerate(self.trace.steps)]
+        steps = [s.statement.span for s in self.trace.steps]
+        blocks = [b.span for b in self.trace.sheet.blocks]
         for number, finding in enumerate(self.trace.findings):
             if finding.span is None or finding.source is not source or finding.severity == "note":
                 continue
-            at = finding.span.start
-            owner = next((i for start, end, i in steps if start <= at <= end), None)
+            owner = _owner(steps, finding.span.start)
             if owner is not None:
                 self.writer.findings[owner].append(finding)
                 self.placed[number] = f"s{self.trace.steps[owner].number}"
                 continue
-            for index, block in enumerate(self.trace.sheet.blocks):
-                if isinstance(block, SheetProse | Image) and block.span.start <= at <= block.span.end:
-                    by_block[index] += (finding,)
-                    self.placed[number] = f"f{number + 1}"
+            index = _owner(blocks, finding.span.start)
+            if index is not None and isinstance(self.trace.sheet.blocks[index], SheetProse | Image):
+                by_block[index] += (finding,)
+                self.placed[number] = f"f{number + 1}"
         return by_block
 
     # --- registers ---
@@ -212,8 +216,7 @@ class _Builder:
         return InputEntry(Ref(row.head.number, row.name), note, row.typed, row.value, citations, any(c.key in open_keys for c in citations))
 
     def _criterion_entry(self, box: CriterionBox) -> CriterionEntry:
-        step = next(s for s in self.trace.criteria if s.number == box.head.number)
-        return CriterionEntry(_verdict_line(step), box.relation)
+        return CriterionEntry(_verdict_line(self.judged[box.head.number]), box.relation)
 
     # --- title block ---
 
@@ -229,6 +232,12 @@ class _Builder:
 
 
 # --- helpers ----------------------------------------------------------------------------------------------------
+
+
+def _owner(spans: list[Span], at: int) -> int | None:
+    """Index of the span that holds an offset; spans rise and don't overlap."""
+    index = bisect_right(spans, at, key=lambda span: span.start) - 1
+    return index if index >= 0 and at <= spans[index].end else None
 
 
 def _typed_only(name: str) -> str:
@@ -298,6 +307,6 @@ def _verdict_line(step: Step) -> VerdictLine:
     name = criterion_name(step)
     is_name = not (isinstance(step.statement, Criterion) and step.statement.name == "")
     strong = verdict.satisfied is not True or verdict.one_sided
-    return VerdictLine(criterion_kind(step), Ref(step.number, name, is_name), ratio_text(verdict), verdict_words(step), strong)
+    return VerdictLine(criterion_kind(step), Ref(step.number, name, is_name), ratio_text(verdict), verdict_words(step, plain_symbol), strong)
 
 

@@ -170,7 +170,7 @@ class JudgedRow:
     head: Head
     relation: Node
     lines: tuple[Node, ...]
-    words: str
+    words: Line
     """What is asked: `for χ`, `within 0.1 %`."""
     verdict: str
     holds: bool | None

@@ -163,14 +163,20 @@ class StepWriter:
         sides = (called.working.tree, *((put.tree,) if put and not isinstance(put.tree, Shown) else ()))
         lines = []
         for compared in texts.conditions(self.trace, called.working):
-            lines.append(Line(("as ", compared.formula, ": ", compared.evaluated)))
+            lines.append(Line(("taken as ", compared.formula, ": ", compared.evaluated)))
+        if called.working.taken is not None and called.working.taken.branch.condition is None:
+            lines.append(Line(("taken: the branch “otherwise”",)))
         return CallLine(call, sides, shown(called.value), put.closes if put else True, (*lines, *self._lines(called.working)))
 
     def _function(self, step: Step, statement: FunctionDefinition, head: Head) -> FunctionRow:
         name = Call(statement.name, tuple(Name(p.name) for p in statement.parameters))
-        units = [f"{plain_symbol(p.name)} in {_unit_words(p.unit.text)}" for p in statement.parameters if p.unit]
+        asked = [(p.name, p.unit.text) for p in statement.parameters if p.unit]
         if statement.unit:
-            units.append(f"{plain_symbol(statement.name)} in {_unit_words(statement.unit.text)}")
+            asked.append((statement.name, statement.unit.text))
+        units = [f"{plain_symbol(n)} in {unit_symbol(unit)}" for n, unit in asked if unit != "1"]
+        plain_ones = [plain_symbol(n) for n, unit in asked if unit == "1"]
+        if plain_ones:
+            units.append(f"{', '.join(plain_ones)} plain")
         body = None if isinstance(statement.body, Cases) else statement.body
         return FunctionRow(head, name, body, self.branches(statement.body, None), ", ".join(units))
 
@@ -182,7 +188,7 @@ class StepWriter:
         ratio = ratio_text(verdict)
         return CriterionBox(
             head, statement.kind, statement.name, statement.relation, self._compared_lines(step), ratio, verdict.utilisation,
-            self._margin(step), verdict_words(step), is_listed(step), verdict.satisfied is not None, verdict.satisfied,
+            self._margin(step), verdict_words(step, plain_symbol), is_listed(step), verdict.satisfied is not None, verdict.satisfied,
             (*self._governing(step, statement), *(self._lines(step.working) if step.working else ())),
             self.calls(step.working) if step.working else (),
         )  # fmt: skip
@@ -191,7 +197,7 @@ class StepWriter:
         kind = criterion_kind(step)
         name = criterion_name(step) if criterion_name(step) != step.id else ""
         return CriterionBox(
-            head, kind, name, None, (), "", None, None, verdict_words(step), True, False, None,  # type: ignore[arg-type]
+            head, kind, name, None, (), "", None, None, verdict_words(step, plain_symbol), True, False, None,  # type: ignore[arg-type]
             typed=getattr(step.statement, "text", ""),
         )  # fmt: skip
 
@@ -204,8 +210,9 @@ class StepWriter:
         relation: Node = statement.relation  # type: ignore[attr-defined]
         lines = []
         if any(c.substituted is not None for c in compared):
-            lines.append(_rejoin(relation, [c.substituted or c.evaluated for c in compared]))
-        lines.append(_rejoin(relation, [_with_length(c) for c in compared]))
+            lines.append(texts.rejoined(relation, [c.substituted or c.evaluated for c in compared]))
+        with_length = isinstance(statement, Criterion)
+        lines.append(texts.rejoined(relation, [_with_length(c) if with_length else c.evaluated for c in compared]))
         return tuple(lines)
 
     def _governing(self, step: Step, statement: Criterion) -> tuple[Line, ...]:
@@ -232,10 +239,12 @@ class StepWriter:
 
     def _judged(self, step: Step, statement: Validity | Check, head: Head) -> JudgedRow:
         if isinstance(statement, Validity):
-            words = "for " + ", ".join(plain_symbol(name) for name, _ in statement.names)
-            good, bad = "within the range", f"outside the range of {words.removeprefix('for ')}"
+            names = [part for name, _ in statement.names for part in (", ", Name(name))]
+            words = Line(("for ", *names[1:]))
+            listed = ", ".join(plain_symbol(name) for name, _ in statement.names)
+            good, bad = "within the range", f"outside the range of {listed}"
         else:
-            words = f"within {text(statement.tolerance)}"
+            words = Line(("within ", statement.tolerance))
             good, bad = "holds", "does not hold"
         holds = step.verdict.satisfied if step.verdict else None
         verdict = {True: good, False: bad, None: f"not shown: {step.why}" if step.why else "not shown"}[holds]
@@ -262,18 +271,6 @@ def is_listed(step: Step) -> bool:
     )
 
 
-def _rejoin(relation: Node, parts: list[Node]) -> Node:
-    """The shape of a typed relation with other relations in place of its own."""
-    waiting = iter(parts)
-
-    def put(node: Node) -> Node:
-        if isinstance(node, Logic):
-            return Logic(node.word, tuple(put(o) for o in node.operands))
-        return next(waiting)
-
-    return put(relation)
-
-
 def _with_length(compared: texts.Compared) -> Relation:
     """`12.003 mm = L/499.9 <= 12 mm`: a demand against L/n printed as L/n too."""
     evaluated = compared.evaluated
@@ -285,9 +282,3 @@ def _with_length(compared: texts.Compared) -> Relation:
     operands.insert(index + 1, as_length)
     signs.insert(index, "=")
     return Relation(tuple(operands), tuple(signs))
-
-
-def _unit_words(unit: str) -> str:
-    return "plain number" if unit == "1" else unit_symbol(unit)
-
-

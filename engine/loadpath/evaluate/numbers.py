@@ -1,17 +1,15 @@
 """The compiled plan: a formula tree becomes a chain of closures over bare SI floats.
 
 `compile_tree` is bound to the scalar functions of `math`; a binding to columns can be made the same way. The closures
-check nothing: where one fails, `explain` goes over the tree again and finds the operation that failed.
+check nothing: where one fails, `explain` goes over the tree once more and finds the operation that failed.
 """
 
 from __future__ import annotations
 
 import math
 from collections.abc import Callable, Mapping
-from dataclasses import dataclass
 from typing import Any
 
-from loadpath.formula.canonical import text
 from loadpath.formula.statements import FunctionDefinition
 from loadpath.formula.tree import (
     As,
@@ -30,10 +28,8 @@ from loadpath.formula.tree import (
     Relation,
     Shown,
     Word,
-    span_of,
 )
 from loadpath.functions import FUNCTIONS
-from loadpath.text import Span
 from loadpath.units import parse_unit
 from loadpath.units.printing import read_plain
 
@@ -45,16 +41,6 @@ EQUAL = 1e-9
 """Sides of a relation within this much of the larger are equal."""
 ON_THE_BRACKET = 1e-12
 """A difference within this much of its larger operand is zero inside a Macaulay bracket."""
-
-
-@dataclass
-class Failure(Exception):
-    """A number that cannot be had; becomes a finding."""
-
-    slug: str
-    message: str
-    span: Span
-    help: str = ""
 
 
 def nearly(a: float, b: float) -> bool:
@@ -124,12 +110,16 @@ class Compiler:
             case Relation():
                 return self._relation(node, parameters)
             case Logic(word=word, operands=operands):
-                parts = [self.compile_tree(o, parameters) for o in operands]
+                works = [self.compile_tree(o, parameters) for o in operands]
                 join = all if word == "and" else any
-                return lambda e, p: join(part(e, p) for part in parts)
+                return lambda e, p: join(work(e, p) for work in works)
             case Cases():
                 return self._cases(node, parameters)
         raise TypeError(type(node).__name__)
+
+    def function(self, name: str) -> FunctionDefinition | None:
+        """The sheet's own function of a name, None for a built-in one."""
+        return self._functions.get(name)
 
     def _name(self, name: str, parameters: frozenset[str]) -> Work:
         if name == "pi":
@@ -201,22 +191,17 @@ class Compiler:
 
     def _cases(self, node: Cases, parameters: frozenset[str]) -> Work:
         branches = [
-            (self.compile_tree(b.condition, parameters) if b.condition is not None else None, self.compile_tree(b.value, parameters))
+            (None if b.condition is None else self.compile_tree(b.condition, parameters), self.compile_tree(b.value, parameters))
             for b in node.branches
-        ]  # fmt: skip
+        ]
 
         def cases(e: Values, p: Values) -> Any:
             for condition, value in branches:
                 if condition is None or condition(e, p):
                     return value(e, p)
-            raise Failure("no-branch", _no_branch(node), node.branches[0].span, "add a last branch: `value  otherwise`")
+            raise ValueError("no branch holds")
 
         return cases
-
-
-def _no_branch(node: Cases) -> str:
-    conditions = "; ".join(text(b.condition) for b in node.branches if b.condition is not None)
-    return f"none of the conditions holds: {conditions}"
 
 
 def _constant(value: Any) -> Work:
@@ -232,97 +217,3 @@ def _sum_of(parts: tuple[Part, ...]) -> float:
 
 def _in_unit(part: Part) -> float:
     return parse_unit(part.unit).from_si(part_value(part))
-
-
-def run(work: Work, node: Node, values: Values, parameters: Values, compiler: Compiler) -> Any:
-    """The value of a compiled tree. Raises `Failure` at the operation that cannot be done."""
-    try:
-        value = work(values, parameters)
-        if isinstance(value, float) and not math.isfinite(value):
-            raise OverflowError
-    except Failure:
-        raise
-    except (ArithmeticError, ValueError, OverflowError):
-        explain(node, values, parameters, compiler)
-        raise Failure("not-finite", f"`{_short(node)}` gives a number too large to hold", span_of(node)) from None
-    return value
-
-
-def explain(node: Any, values: Values, parameters: Values, compiler: Compiler) -> None:
-    """Finds the operation that fails, deepest and leftmost first, and raises its `Failure`."""
-    own = frozenset(parameters)
-    if isinstance(node, Cases):
-        _explain_cases(node, values, parameters, compiler)
-        return
-    for child in _direct(node):
-        explain(child, values, parameters, compiler)
-    arguments = [compiler.compile_tree(c, own)(values, parameters) for c in _direct(node)]
-    match node:
-        case Binary(operator="/") if arguments[1] == 0:
-            raise Failure("division-by-zero", f"`{_short(node.right)}` is 0, and `{_short(node.left)}` is divided by it", node.at, _mend_zero(node))
-        case Binary(operator="^") if arguments[0] < 0 and arguments[1] != int(arguments[1]):
-            raise Failure("root-of-negative", f"`{_short(node.left)}` is {arguments[0]:.4g}, and a power of {arguments[1]:.4g} has no real value there", node.at)
-        case Binary(operator="^") if arguments[0] == 0 and arguments[1] < 0:
-            raise Failure("division-by-zero", f"`{_short(node.left)}` is 0 and is raised to {arguments[1]:.4g}", node.at)
-        case Call(function=function) if function in FUNCTIONS:
-            _explain_call(node, arguments)
-        case Call(function=function):
-            definition = compiler._functions[function]
-            given = {p.name: a for p, a in zip(definition.parameters, arguments, strict=True)}
-            explain(definition.body, values, given, compiler)
-    try:
-        value = compiler.compile_tree(node, own)(values, parameters)
-    except (ArithmeticError, ValueError):
-        value = math.inf
-    if isinstance(value, float) and not math.isfinite(value):
-        shown = " and ".join(f"{a:.4g}" for a in arguments if isinstance(a, float))
-        raise Failure("not-finite", f"`{_short(node)}` of {shown} (in SI units) gives a number too large to hold", getattr(node, "at", None) or span_of(node))
-
-
-def _mend_zero(node: Binary) -> str:
-    return "check the values that it comes from"
-
-
-def _explain_call(node: Call, arguments: list[Any]) -> None:
-    function = FUNCTIONS[node.function]
-    try:
-        function.work(*arguments)
-    except ValueError as reason:
-        slug = "root-of-negative" if function.rule == "root" else "outside-domain"
-        shown = ", ".join(f"{a:.6g}" for a in arguments)
-        raise Failure(slug, f"`{node.function}` of {shown}{' (in SI units)' if function.rule != 'plain' else ''}: {reason}", node.at) from None
-    except OverflowError:
-        raise Failure("not-finite", f"`{node.function}` of {arguments[0]:.6g} gives a number too large to hold", node.at) from None
-
-
-def _explain_cases(node: Cases, values: Values, parameters: Values, compiler: Compiler) -> None:
-    own = frozenset(parameters)
-    for branch in node.branches:
-        if branch.condition is not None:
-            explain(branch.condition, values, parameters, compiler)
-            if not compiler.compile_tree(branch.condition, own)(values, parameters):
-                continue
-        explain(branch.value, values, parameters, compiler)
-        return
-
-
-def _direct(node: Any) -> tuple[Node, ...]:
-    match node:
-        case Negative(operand=operand) | As(operand=operand):
-            return (operand,)
-        case Factor(body=body):
-            return (body,)
-        case Binary(left=left, right=right):
-            return (left, right)
-        case Call(arguments=arguments):
-            return arguments
-        case Bracket(inner=inner):
-            return (inner,)
-        case Relation(operands=operands) | Logic(operands=operands):
-            return operands
-    return ()
-
-
-def _short(node: Node) -> str:
-    said = text(node)
-    return said if len(said) <= 60 else said[:57] + "..."

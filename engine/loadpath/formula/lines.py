@@ -74,6 +74,11 @@ def indent_of(line: str) -> int:
     return columns
 
 
+def without_notes(text: str) -> str:
+    """Lines as typed, each without its note."""
+    return "\n".join(_split_note(line, 0)[0] for line in text.split("\n"))
+
+
 def _split_note(line: str, start: int) -> tuple[str, Note | None]:
     match = _NOTE.search(line)
     if match is None:
@@ -100,12 +105,12 @@ def _lines(source: Source, span: Span) -> list[_Line]:
 
 
 def _item(lines: list[_Line]) -> Item:
-    start, text, notes = lines[0].start, "", []
+    start, at, pieces = lines[0].start, lines[0].start, []
     for line in lines:
-        text += " " * (line.start - start - len(text)) + line.body
-        if line.note is not None:
-            notes.append(line.note)
-    return Item(text.replace("\t", " "), start, tuple(notes))
+        pieces += [" " * (line.start - at), line.body]
+        at = line.start + len(line.body)
+    notes = tuple(line.note for line in lines if line.note is not None)
+    return Item("".join(pieces).replace("\t", " "), start, notes)
 
 
 def _group(lines: list[_Line]) -> Group:

@@ -6,6 +6,7 @@
 from __future__ import annotations
 
 import unicodedata
+from collections.abc import Iterator
 from dataclasses import dataclass
 from functools import lru_cache
 
@@ -39,6 +40,17 @@ def is_letter(character: str) -> bool:
 def is_name_character(character: str) -> bool:
     """True for what may go on a name: letters, digits, `_`, marks that combine with a letter, and a prime."""
     return character.isalpha() or character in "_'" or unicodedata.category(character) in ("Nd", "Mn", "Mc")
+
+
+def words_in(text: str) -> Iterator[str]:
+    """Whatever in a text could be a name, as typed, dots left out."""
+    start = -1
+    for index, character in enumerate(text + " "):
+        if start < 0 and is_letter(character):
+            start = index
+        elif start >= 0 and not is_name_character(character):
+            yield text[start:index]
+            start = index if is_letter(character) else -1
 
 
 @lru_cache(maxsize=65536)

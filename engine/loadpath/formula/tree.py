@@ -8,8 +8,7 @@ Everything that is done with formulas (printing, substitution, dimensions, numbe
 from __future__ import annotations
 
 from collections.abc import Iterator
-from dataclasses import dataclass, field, fields
-from functools import lru_cache
+from dataclasses import dataclass, field
 from typing import Literal
 
 from loadpath.text import Span
@@ -196,15 +195,24 @@ class Factor(Node):
     """True where the body is divided by it."""
 
 
-@lru_cache(maxsize=None)
-def _child_fields(kind: type) -> tuple[str, ...]:
-    keep = ("operand", "left", "right", "arguments", "inner", "operands", "value", "condition", "branches", "body")
-    return tuple(f.name for f in fields(kind) if f.name in keep)
+_CHILDREN: dict[type, tuple[str, ...]] = {
+    Negative: ("operand",),
+    Binary: ("left", "right"),
+    Call: ("arguments",),
+    Bracket: ("inner",),
+    As: ("operand",),
+    Relation: ("operands",),
+    Logic: ("operands",),
+    Branch: ("value", "condition"),
+    Cases: ("branches",),
+    Factor: ("body",),
+}
+"""The fields that hold the nodes below, left to right."""
 
 
 def children(node: Node | Branch) -> Iterator[Node | Branch]:
     """The nodes directly below, left to right."""
-    for name in _child_fields(type(node)):
+    for name in _CHILDREN.get(type(node), ()):
         value = getattr(node, name)
         if isinstance(value, tuple):
             yield from value

@@ -1,4 +1,4 @@
-"""The built-in functions: what each takes, gives, and how it is worked. One file holds the plain ones, by family."""
+"""The built-in functions: what each takes and gives, and how it is worked. One file holds them, by family."""
 
 from loadpath.functions.families import ANGLES, CHOOSING, MAGNITUDE, POWERS, ROOTS
 from loadpath.functions.model import Function, Rule
@@ -7,8 +7,11 @@ FUNCTIONS: dict[str, Function] = {f.name: f for f in (*ROOTS, *MAGNITUDE, *POWER
 """Every function that this version works, by name."""
 
 LATER: frozenset[str] = frozenset(
-    "sum count interp lookup integral derivative limit_of largest smallest where_largest where_smallest simplified".split()
-)
+    [
+        "sum", "count", "interp", "lookup", "integral", "derivative", "limit_of", "largest", "smallest",
+        "where_largest", "where_smallest", "simplified",
+    ]
+)  # fmt: skip
 """Functions of the language that this version cannot work yet."""
 
 NAMES: frozenset[str] = frozenset(FUNCTIONS) | LATER

@@ -25,28 +25,46 @@ def _log10(x: float) -> float:
     return math.log10(x)
 
 
-def _asin(x: float) -> float:
-    if not -1 <= x <= 1:
-        raise ValueError("asin takes a value from -1 to 1")
-    return math.asin(x)
+ROUNDING = 1e-15
+"""What rounding, in parts of the angle, can leave of a sine or cosine that is 0: `sin(180 deg)` is 0."""
+OVER_ONE = 1e-12
+"""How far rounding may carry a ratio beyond 1 before its arc sine is refused."""
 
 
-def _acos(x: float) -> float:
-    if not -1 <= x <= 1:
-        raise ValueError("acos takes a value from -1 to 1")
-    return math.acos(x)
+def _sin(x: float) -> float:
+    value = math.sin(x)
+    return 0.0 if abs(x) > 1 and abs(value) <= ROUNDING * abs(x) else value
+
+
+def _cos(x: float) -> float:
+    value = math.cos(x)
+    return 0.0 if abs(value) <= ROUNDING * abs(x) else value
+
+
+def _tan(x: float) -> float:
+    if _cos(x) == 0:
+        raise ValueError("tan is not defined where the cosine is 0")
+    return 0.0 if _sin(x) == 0 else math.tan(x)
 
 
 def _sec(x: float) -> float:
-    if abs(math.cos(x)) < 1e-15:
+    if _cos(x) == 0:
         raise ValueError("sec is not defined where the cosine is 0")
     return 1 / math.cos(x)
 
 
-def _tan(x: float) -> float:
-    if abs(math.cos(x)) < 1e-15:
-        raise ValueError("tan is not defined where the cosine is 0")
-    return math.tan(x)
+def _ratio(x: float, function: str) -> float:
+    if not abs(x) <= 1 + OVER_ONE:
+        raise ValueError(f"{function} takes a value from -1 to 1")
+    return max(-1.0, min(x, 1.0))
+
+
+def _asin(x: float) -> float:
+    return math.asin(_ratio(x, "asin"))
+
+
+def _acos(x: float) -> float:
+    return math.acos(_ratio(x, "acos"))
 
 
 def _atan2(y: float, x: float) -> float:
@@ -87,8 +105,8 @@ POWERS = (
     Function("log10", "plain", 1, 1, _log10, "x = log10(1000) | 3"),
 )
 ANGLES = (
-    Function("sin", "plain", 1, 1, math.sin, "x = sin(30 deg) | 0.5", angle=True),
-    Function("cos", "plain", 1, 1, math.cos, "x = cos(60 deg) | 0.5", angle=True),
+    Function("sin", "plain", 1, 1, _sin, "x = sin(30 deg) | 0.5", angle=True),
+    Function("cos", "plain", 1, 1, _cos, "x = cos(60 deg) | 0.5", angle=True),
     Function("tan", "plain", 1, 1, _tan, "x = tan(45 deg) | 1", angle=True),
     Function("sec", "plain", 1, 1, _sec, "x = sec(60 deg) | 2", angle=True),
     Function("asin", "plain", 1, 1, _asin, "x = asin(0.5) | 30 deg"),

@@ -1,6 +1,8 @@
 """Resolving: names, order and dimensions, before any number."""
 
+from loadpath.resolve.displays import is_relative
 from loadpath.resolve.model import UNKNOWN, Entry, Resolved, Type
-from loadpath.resolve.resolve import PI, expressions, resolve
+from loadpath.resolve.parts import PI, expressions, relations_in
+from loadpath.resolve.resolve import resolve
 
-__all__ = ["PI", "UNKNOWN", "Entry", "Resolved", "Type", "expressions", "resolve"]
+__all__ = ["PI", "UNKNOWN", "Entry", "Resolved", "Type", "expressions", "is_relative", "relations_in", "resolve"]

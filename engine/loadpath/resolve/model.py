@@ -79,8 +79,9 @@ class Resolved:
     values: dict[Value, Unit]
     """The unit that each readable value in prose is printed in."""
     findings: tuple[Finding, ...]
-    mentioned: frozenset[str] = frozenset()
-    mentioned_keys: frozenset[str] = frozenset()
+    meant: frozenset[str] = frozenset()
+    """Names and keys that count as used or cited: printed in prose, suggested for one that is unknown, part of a unit,
+    or anywhere on a line that could not be read."""
 
 
 __all__ = ["ONE", "UNKNOWN", "Entry", "Flavour", "Kind", "Resolved", "Type"]

@@ -219,8 +219,10 @@ class _Blocks:
             values = tuple(values_in(self.prose))
             self.blocks.append(Prose(tuple(self.prose), values, self.source.cut(span), span))
         self.prose = []
+        starts, line = self.source.line_starts, self.first_line - 1 + before
+        end = starts[line] if line < len(starts) else len(self.source.text) + 1
         lost = []
-        while self.next_lost is not None and self.next_lost.start < span.end:
+        while self.next_lost is not None and self.next_lost.start < end:
             lost.append(self.next_lost)
             self.next_lost = next(self.lost, None)
         self.end_lost(lost)

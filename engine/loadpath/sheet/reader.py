@@ -22,7 +22,14 @@ def read_sheet(source: Source, world: World) -> Sheet:
         return Sheet(source, FrontMatter(), (), (refusal,))
     front, start, front_findings = read_front_matter(source, world)
     blocks, block_findings = read_blocks(source, start, world)
-    return Sheet(source, front, blocks, ordered(front_findings + block_findings))
+    return Sheet(source, front, blocks, ordered(front_findings + block_findings), _project_texts(world))
+
+
+def _project_texts(world: World) -> tuple[str, ...]:
+    try:
+        return tuple(text for _, text in world.project_texts())
+    except Refused:
+        return ()
 
 
 def read_sheet_file(path: Path, root: Path | None = None) -> Sheet:

@@ -2,6 +2,9 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
+from itertools import pairwise
+
 from loadpath.formula.statements import Criterion
 from loadpath.formula.tree import Logic, Name, Negative, Node, Number, Quantity, Relation
 from loadpath.trace.model import Step, Verdict
@@ -23,20 +26,26 @@ def digits_of_verdict(step: Step, base: int) -> tuple[int, list[str]]:
     for relation, values, unit in zip(relations, verdict.sides, step.entry.side_units, strict=False):
         assert isinstance(relation, Relation)
         shown = [unit.from_si(float(v)) for v in values]
-        needed = max([needed, *(order_digits(a, b, base) for a, b in zip(shown, shown[1:], strict=False))])
+        needed = max(needed, order_digits(shown, base))
         names += [o.name for o in relation.operands if isinstance(o, Name)]
     return needed, names
 
 
-def order_digits(a: float, b: float, base: int) -> int:
-    """The fewest digits, `base` or more, with which two printed numbers keep their order."""
-    if abs(a - b) <= EQUAL * max(abs(a), abs(b)):
-        return base
+def order_digits(values: Sequence[float], base: int) -> int:
+    """The fewest digits, `base` or more, with which printed numbers stand to their neighbours as the numbers do."""
+    close = [(a, b) for a, b in pairwise(values) if abs(a - b) <= 10.0 ** (2 - base) * max(abs(a), abs(b))]
     for digits in range(base, MOST_DIGITS):
-        first, second = read_plain(plain(a, digits)), read_plain(plain(b, digits))
-        if first != second and (first < second) == (a < b):
+        if all(in_order(a, b, plain(a, digits), plain(b, digits)) for a, b in close):
             return digits
     return MOST_DIGITS
+
+
+def in_order(a: float, b: float, first: str, second: str) -> bool:
+    """True where two plain numbers stand to each other as the values that they print; values that count as equal print alike."""
+    left, right = read_plain(first), read_plain(second)
+    if abs(a - b) <= EQUAL * max(abs(a), abs(b)):
+        return left == right
+    return left != right and (left < right) == (a < b)
 
 
 def ratio_text(verdict: Verdict) -> str:

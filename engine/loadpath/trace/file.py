@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import json
+from collections.abc import Callable
 from dataclasses import asdict, dataclass, fields
 from pathlib import PurePath
 from typing import Any
@@ -10,6 +11,7 @@ from typing import Any
 from loadpath.findings import Finding
 from loadpath.formula.canonical import text
 from loadpath.formula.statements import Criterion
+from loadpath.resolve import expressions
 from loadpath.trace import texts
 from loadpath.trace.model import Step, Trace, criterion_kind
 from loadpath.units.printing import quantity
@@ -140,19 +142,21 @@ def _step(trace: Trace, step: Step) -> StepRecord:
 
 def _substitution(trace: Trace, step: Step) -> str:
     if step.verdict is not None:
-        lines = [c.substituted or c.evaluated for c in texts.compared(trace, step)]
-        return " or ".join(text(line) for line in lines)
+        compared = texts.compared(trace, step)
+        if not compared:
+            return ""
+        return text(texts.rejoined(expressions(step.statement)[0], [c.substituted or c.evaluated for c in compared]))
     put = texts.step_substitution(trace, step)
     return text(put.tree) if put else ""
 
 
-def verdict_words(step: Step) -> str:
-    """The verdict of a judged step in words; "" for other steps."""
+def verdict_words(step: Step, name: Callable[[str], str] = str) -> str:
+    """The verdict of a judged step in words; "" for other steps. `name` says how names are written."""
     if step.verdict is None:
         return ""
     if step.kind in ("valid", "check"):
         return {True: "holds", False: "does not hold", None: f"not shown: {step.why}"}[step.verdict.satisfied]
-    return step.verdict.words(step.why)
+    return step.verdict.words(step.why, name)
 
 
 def _criterion(step: Step) -> CriterionRecord:

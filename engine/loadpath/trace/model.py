@@ -110,10 +110,10 @@ class Verdict:
     within: float | None = None
     """Tolerance of a check, SI of the sides or a fraction of the right side."""
 
-    def words(self, why: str) -> str:
-        """The verdict as it reads; `why` is the reason where it could not be computed."""
+    def words(self, why: str, name: Callable[[str], str] = str) -> str:
+        """The verdict as it reads; `why` is the reason where it could not be computed, `name` how names are written."""
         if self.satisfied is None:
-            reason = why or "outside the range of " + ", ".join(self.outside)
+            reason = why or "outside the range of " + ", ".join(name(n) for n in self.outside)
             return f"not shown: {reason}"
         if not self.satisfied:
             return "not satisfied"
@@ -122,12 +122,25 @@ class Verdict:
 
 
 @dataclass(frozen=True, slots=True)
-class Step:
-    """One step of the calculation."""
+class Outline:
+    """What is known of a step before any number is worked; shared by every run of one sheet."""
 
     entry: Entry
     number: str
     """`3.2`: second step of the third section."""
+    sources: tuple[str, ...]
+    """Keys cited in its notes, in order."""
+    uses: tuple[str, ...]
+    """Ids of the steps that it uses."""
+    used_by: tuple[str, ...]
+    """Ids of the steps that use it."""
+
+
+@dataclass(frozen=True, slots=True)
+class Step:
+    """One step of the calculation."""
+
+    outline: Outline
     si: float | str | None
     """Value in coherent SI at full precision; the word of a choice; None where there is none."""
     digits: int
@@ -136,12 +149,31 @@ class Step:
     verdict: Verdict | None
     why: str
     """`not computed because of line 12`, "" where it was computed or has no value to compute."""
-    sources: tuple[str, ...]
-    """Keys cited in its notes, in order."""
-    used_by: tuple[str, ...] = ()
-    """Ids of the steps that use it."""
-    uses: tuple[str, ...] = ()
-    """Ids of the steps that it uses."""
+
+    @property
+    def entry(self) -> Entry:
+        """The statement, resolved."""
+        return self.outline.entry
+
+    @property
+    def number(self) -> str:
+        """`3.2`: second step of the third section."""
+        return self.outline.number
+
+    @property
+    def sources(self) -> tuple[str, ...]:
+        """Keys cited in its notes, in order."""
+        return self.outline.sources
+
+    @property
+    def uses(self) -> tuple[str, ...]:
+        """Ids of the steps that it uses."""
+        return self.outline.uses
+
+    @property
+    def used_by(self) -> tuple[str, ...]:
+        """Ids of the steps that use it."""
+        return self.outline.used_by
 
     @property
     def id(self) -> str:

@@ -6,15 +6,17 @@ All of it is trees and plain numbers: how they look (MathML, LaTeX, text) is up 
 from __future__ import annotations
 
 from dataclasses import dataclass
+from itertools import pairwise
 
 from loadpath.formula.canonical import statement_text
 from loadpath.formula.statements import Check, Criterion, Definition, Validity
 from loadpath.formula.tree import Binary, Logic, Name, Node, Number, Relation, Shown, walk
 from loadpath.resolve import expressions
-from loadpath.trace.digits import exact_digits, order_digits, typed_number
+from loadpath.trace.digits import exact_digits, in_order, order_digits, typed_number
 from loadpath.trace.model import Called, Operand, Step, Trace, Working
 from loadpath.trace.substitute import Scope, natural_unit, shown, substitute, with_factors
 from loadpath.units import ONE, Unit
+from loadpath.units.dimension import LENGTH
 from loadpath.units.printing import MOST_DIGITS, feet_and_inches, plain, read_plain, step_of
 
 MORE = 2
@@ -99,7 +101,7 @@ def _lands(trace: Trace, tree: Node, result: Operand) -> bool:
     except (ArithmeticError, ValueError):
         return False
     printed = shown(result).number
-    return abs(reached - read_plain(printed)) <= 1.5 * step_of(printed)
+    return abs(reached - read_plain(printed)) <= 1.5 * step_of(printed, result.digits)
 
 
 def step_substitution(trace: Trace, step: Step) -> Substitution | None:
@@ -146,11 +148,7 @@ def compared(trace: Trace, step: Step) -> tuple[Compared, ...]:
 def _compared(trace: Trace, working: Working, relation: Relation, values: tuple[float | str, ...], unit: Unit, base: int) -> Compared:
     scope = scope_of(trace, working)
     numbers = [unit.from_si(v) if isinstance(v, float) else v for v in values]
-    digits = base
-    for a, b in zip(numbers, numbers[1:], strict=False):
-        if isinstance(a, float) and isinstance(b, float):
-            digits = max(digits, order_digits(a, b, base))
-    sides = tuple(_side(o, v, n, unit, digits, scope) for o, v, n in zip(relation.operands, values, numbers, strict=True))
+    sides = _sides(relation, numbers, unit, base, scope)
     evaluated = Relation(sides, relation.signs)
     substituted = None
     if any(holds_names(o) and not isinstance(o, Name) for o in relation.operands):
@@ -162,10 +160,20 @@ def _compared(trace: Trace, working: Working, relation: Relation, values: tuple[
     return Compared(relation, substituted, evaluated, _per_length(relation, numbers, unit, scope))
 
 
-def _side(node: Node, si: float | str, number: float | str, unit: Unit, digits: int, scope: Scope) -> Node:
-    """One side as one number: as typed where it is typed, else to so many digits."""
-    if isinstance(si, str) or isinstance(number, str):
-        return Shown(str(si), "", word=True)
+def _sides(relation: Relation, numbers: list[float | str], unit: Unit, base: int, scope: Scope) -> tuple[Shown, ...]:
+    """Each side as one number, to as many digits as it takes to stand in the order found."""
+    values = [n for n in numbers if isinstance(n, float)]
+    for digits in range(order_digits(values, base), MOST_DIGITS + 1):
+        sides = tuple(_side(o, n, unit, digits, scope) for o, n in zip(relation.operands, numbers, strict=True))
+        if all(in_order(a, b, s.number, t.number) for (a, b), (s, t) in zip(pairwise(values), pairwise(sides), strict=False)):
+            break
+    return sides
+
+
+def _side(node: Node, number: float | str, unit: Unit, digits: int, scope: Scope) -> Shown:
+    """One side: as typed where it is typed, else to so many digits."""
+    if isinstance(number, str):
+        return Shown(number, "", word=True)
     if isinstance(node, Name) and (own := scope(node.name)) is not None and own.exact and own.unit.text == unit.text:
         return shown(own)
     if typed := typed_number(node, unit):
@@ -178,7 +186,7 @@ def _side(node: Node, si: float | str, number: float | str, unit: Unit, digits: 
 
 
 def _per_length(relation: Relation, numbers: list[float | str], unit: Unit, scope: Scope) -> tuple[int, Name, str] | None:
-    """A criterion against L/n prints its demand as L/n too."""
+    """A length against L/n is printed as L/n too."""
     if len(relation.operands) != 2:
         return None
     limit_at = 1 if relation.signs[0][0] == "<" else 0
@@ -188,10 +196,10 @@ def _per_length(relation: Relation, numbers: list[float | str], unit: Unit, scop
             of = scope(length.name)
         case _:
             return None
-    if of is None or not isinstance(of.si, float) or not isinstance(demand, float) or demand == 0 or of.unit.dimension != unit.dimension:
+    if of is None or not isinstance(of.si, float) or not isinstance(demand, float) or demand == 0 or unit.dimension != LENGTH:
         return None
-    ratio, asked = of.si / unit.to_si(abs(demand)), float(typed.replace("_", ""))
-    digits = next((d for d in range(4, MOST_DIGITS) if read_plain(plain(ratio, d)) != asked or ratio == asked), MOST_DIGITS)
+    ratio, asked = of.si / unit.to_si(abs(demand)), read_plain(typed)
+    digits = next((d for d in range(4, MOST_DIGITS) if in_order(ratio, asked, plain(ratio, d), typed)), MOST_DIGITS)
     return 1 - limit_at, length, plain(ratio, digits)
 
 
@@ -251,8 +259,13 @@ def formula(step: Step) -> str:
     return statement_text(step.statement)
 
 
-def signs_of(relation: Node) -> tuple[Relation, ...]:
-    """The relations of a criterion in the order typed."""
-    if isinstance(relation, Logic):
-        return tuple(r for o in relation.operands for r in signs_of(o))
-    return (relation,) if isinstance(relation, Relation) else ()
+def rejoined(relation: Node, parts: list[Node]) -> Node:
+    """The shape of a typed relation with other relations in place of its own."""
+    waiting = iter(parts)
+
+    def put(node: Node) -> Node:
+        if isinstance(node, Logic):
+            return Logic(node.word, tuple(put(o) for o in node.operands))
+        return next(waiting)
+
+    return put(relation)

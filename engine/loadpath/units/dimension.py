@@ -6,6 +6,9 @@ from fractions import Fraction
 from functools import lru_cache
 from typing import NamedTuple
 
+MOST_POWER, MOST_PARTS = 24, 1000
+"""The largest exponent that a quantity of a sheet may have, and the largest denominator of one."""
+
 
 class Dimension(NamedTuple):
     """Exponents of metre, kilogram, second and kelvin."""
@@ -31,6 +34,11 @@ class Dimension(NamedTuple):
     def is_plain(self) -> bool:
         """True for a plain number."""
         return self == PLAIN
+
+    @property
+    def is_within_reach(self) -> bool:
+        """False where an exponent is too large, or too fine, for a unit that could be printed."""
+        return all(abs(e) <= MOST_POWER and e.denominator <= MOST_PARTS for e in self)
 
 
 @lru_cache(maxsize=4096)
@@ -67,6 +75,12 @@ POWER = dimension(2, 1, -3)
 DENSITY = dimension(-3, 1)
 MASS_PER_LENGTH = dimension(-1, 1)
 UNIT_WEIGHT = dimension(-2, 1, -2)
+BENDING_STIFFNESS = FORCE.times(AREA)
+DAMPING = FORCE.over(VELOCITY)
+HEAT_FLUX = POWER.over(AREA)
+HEAT_TRANSFER = HEAT_FLUX.over(TEMPERATURE)
+CONDUCTIVITY = HEAT_TRANSFER.times(LENGTH)
+SPECIFIC_HEAT = MOMENT.over(MASS).over(TEMPERATURE)
 
 _NAMES = {
     PLAIN: "a plain number",
@@ -88,7 +102,7 @@ _NAMES = {
     DENSITY: "density",
     MASS_PER_LENGTH: "mass per length",
     UNIT_WEIGHT: "force per volume",
-    FORCE.times(AREA): "bending stiffness",
+    BENDING_STIFFNESS: "bending stiffness",
     TEMPERATURE.power(Fraction(-1)): "1/temperature",
     LENGTH.power(Fraction(-1)): "1/length",
 }
@@ -96,19 +110,47 @@ _NAMES = {
 
 def say(d: Dimension) -> str:
     """A dimension in the words of the trade: `stress`, `force`, else a product such as `force/length^2`."""
-    if d in _NAMES:
-        return _NAMES[d]
-    powers = [("force", d.mass), ("length", d.length - d.mass), ("time", d.time + 2 * d.mass), ("temperature", d.temperature)]
-    if d.mass == 0 or d.time + 2 * d.mass != 0:
-        plain = [("mass", d.mass), ("length", d.length), ("time", d.time), ("temperature", d.temperature)]
-        powers = min((powers, plain), key=lambda p: sum(abs(e) for _, e in p))
+    return _NAMES[d] if d in _NAMES else product(simplest(by_force(d), by_mass(d)))
+
+
+Powers = list[tuple[str, Fraction]]
+"""Words or units, each with its exponent."""
+
+
+Words = tuple[str, str, str, str]
+"""For force or mass, for length, time and temperature."""
+
+
+def by_force(of: Dimension, words: Words = ("force", "length", "time", "temperature")) -> Powers:
+    """A dimension in powers of force, length, time and temperature."""
+    powers = (of.mass, of.length - of.mass, of.time + 2 * of.mass, of.temperature)
+    return list(zip(words, powers, strict=True))
+
+
+def by_mass(of: Dimension, words: Words = ("mass", "length", "time", "temperature")) -> Powers:
+    """A dimension in powers of mass, length, time and temperature."""
+    return list(zip(words, (of.mass, of.length, of.time, of.temperature), strict=True))
+
+
+def simplest(*ways: Powers) -> Powers:
+    """The way with the smallest exponents in all; the first of equal ones."""
+    return min(ways, key=lambda powers: sum(abs(exponent) for _, exponent in powers))
+
+
+def product(powers: Powers) -> str:
+    """`kN*s`, `J/(kg*K)`, `1/s^2`."""
     above = [_factor(word, e) for word, e in powers if e > 0]
     below = [_factor(word, -e) for word, e in powers if e < 0]
-    bottom = below[0] if len(below) == 1 else f"({'*'.join(below)})"
-    return "*".join(above) or "1" if not below else f"{'*'.join(above) or '1'}/{bottom}"
+    top = "*".join(above) or "1"
+    if not below:
+        return top
+    return f"{top}/{below[0]}" if len(below) == 1 else f"{top}/({'*'.join(below)})"
 
 
 def _factor(word: str, exponent: Fraction) -> str:
+    base = word if word.replace("_", "").isalpha() else f"({word})"
     if exponent == 1:
-        return word
-    return f"{word}^{exponent}" if exponent.denominator == 1 else f"{word}^({exponent})"
+        return base
+    if exponent.denominator == 1:
+        return f"{base}^{exponent}"
+    return f"{base}^{float(exponent):g}" if 100 % exponent.denominator == 0 else f"{base}^({exponent})"

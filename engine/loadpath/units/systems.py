@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
-from fractions import Fraction
 from functools import lru_cache
 
 from loadpath.units import dimension as d
@@ -25,25 +24,42 @@ KINDS: dict[str, Dimension] = {
     "power": d.POWER,
     "mass": d.MASS,
 }
-"""Kinds that front matter's `units` may name. An energy has the dimension of a moment and is asked for by its unit."""
+"""Kinds that front matter's `units` may name. An energy, which is no moment, is asked for by its unit."""
 
-_METRIC = {
-    d.LENGTH: "mm", d.AREA: "mm^2", d.VOLUME: "mm^3", d.FOURTH: "mm^4", d.STRESS: "MPa", d.TEMPERATURE: "K", d.MASS: "kg",
-    d.DENSITY: "kg/m^3", d.MASS_PER_LENGTH: "kg/m", d.VELOCITY: "m/s", d.ACCELERATION: "m/s^2", d.POWER: "kW", d.TIME: "s",
-    d.UNIT_WEIGHT: "kN/m^3",
+Table = dict[Dimension, str]
+_METRIC: Table = {
+    d.LENGTH: "mm", d.AREA: "mm^2", d.VOLUME: "mm^3", d.FOURTH: "mm^4", d.STRESS: "MPa",
+    d.TEMPERATURE: "K", d.MASS: "kg", d.DENSITY: "kg/m^3", d.MASS_PER_LENGTH: "kg/m", d.TIME: "s",
+    d.VELOCITY: "m/s", d.ACCELERATION: "m/s^2", d.POWER: "kW", d.UNIT_WEIGHT: "kN/m^3",
+    d.HEAT_FLUX: "kW/m^2", d.HEAT_TRANSFER: "W/(m^2*K)", d.CONDUCTIVITY: "W/(m*K)",
+    d.SPECIFIC_HEAT: "J/(kg*K)",
 }  # fmt: skip
-_CUSTOMARY = {
-    d.LENGTH: "in", d.AREA: "in^2", d.VOLUME: "in^3", d.FOURTH: "in^4", d.TEMPERATURE: STEP_OF_DEGF, d.MASS: "lb",
-    d.DENSITY: "lb/ft^3", d.MASS_PER_LENGTH: "lb/ft", d.VELOCITY: "ft/s", d.ACCELERATION: "ft/s^2", d.POWER: "hp", d.TIME: "s",
-    d.UNIT_WEIGHT: "pcf",
+_MACHINE: Table = _METRIC | {
+    d.FORCE: "N", d.MOMENT: "N*m", d.LINE_LOAD: "N/mm", d.BENDING_STIFFNESS: "N*mm^2", d.DAMPING: "N*s/mm",
 }  # fmt: skip
-SYSTEMS: dict[str, dict[Dimension, str]] = {
-    "SI": _METRIC | {d.FORCE: "kN", d.MOMENT: "kN*m", d.LINE_LOAD: "kN/m"},
-    "SI machine": _METRIC | {d.FORCE: "N", d.MOMENT: "N*m", d.LINE_LOAD: "N/mm"},
-    "SI pressure": _METRIC | {d.FORCE: "N", d.MOMENT: "N*m", d.LINE_LOAD: "N/mm"},
-    "US": _CUSTOMARY | {d.FORCE: "kip", d.MOMENT: "kip*ft", d.LINE_LOAD: "kip/ft", d.STRESS: "ksi"},
-    "US machine": _CUSTOMARY | {d.FORCE: "lbf", d.MOMENT: "lbf*in", d.LINE_LOAD: "lbf/in", d.STRESS: "psi"},
-}
+_CUSTOMARY: Table = {
+    d.TEMPERATURE: STEP_OF_DEGF,
+    d.LENGTH: "in", d.AREA: "in^2", d.VOLUME: "in^3", d.FOURTH: "in^4", d.MASS: "lb", d.DENSITY: "lb/ft^3",
+    d.MASS_PER_LENGTH: "lb/ft", d.TIME: "s", d.VELOCITY: "ft/s", d.ACCELERATION: "ft/s^2", d.POWER: "hp",
+    d.UNIT_WEIGHT: "pcf", d.HEAT_FLUX: "Btu/(h*ft^2)", d.HEAT_TRANSFER: "Btu/(h*ft^2*degF)",
+    d.CONDUCTIVITY: "Btu/(h*ft*degF)", d.SPECIFIC_HEAT: "Btu/(lb*degF)",
+}  # fmt: skip
+SYSTEMS: dict[str, Table] = {
+    "SI": _METRIC | {
+        d.FORCE: "kN", d.MOMENT: "kN*m", d.LINE_LOAD: "kN/m", d.BENDING_STIFFNESS: "kN*m^2",
+        d.DAMPING: "kN*s/m",
+    },
+    "SI machine": _MACHINE,
+    "SI pressure": _MACHINE,
+    "US": _CUSTOMARY | {
+        d.FORCE: "kip", d.MOMENT: "kip*ft", d.LINE_LOAD: "kip/ft", d.STRESS: "ksi",
+        d.BENDING_STIFFNESS: "kip*in^2", d.DAMPING: "kip*s/in",
+    },
+    "US machine": _CUSTOMARY | {
+        d.FORCE: "lbf", d.MOMENT: "lbf*in", d.LINE_LOAD: "lbf/in", d.STRESS: "psi",
+        d.BENDING_STIFFNESS: "lbf*in^2", d.DAMPING: "lbf*s/in",
+    },
+}  # fmt: skip
 
 
 @dataclass(frozen=True)
@@ -54,7 +70,10 @@ class UnitSystem:
     overrides: tuple[tuple[str, str], ...] = ()
 
     def unit_for(self, dimension: Dimension, absolute: bool = False, bar: bool = False) -> Unit:
-        """The unit for results of a dimension; `bar` says that the value comes from something typed in bar."""
+        """The unit for results of a dimension; `bar` says that the value comes from something typed in bar.
+
+        Raises `BadUnit` for a dimension that is not within reach.
+        """
         return _unit_for(self, dimension, absolute, bar)
 
 
@@ -63,40 +82,38 @@ def _unit_for(system: UnitSystem, dimension: Dimension, absolute: bool, bar: boo
     if dimension.is_plain:
         return ONE
     chosen = {KINDS[kind]: unit for kind, unit in system.overrides if kind in KINDS and kind != "energy"}
+    scale = chosen.get(d.TEMPERATURE, "degF" if system.name.startswith("US") else "degC")
     if absolute:
-        return parse_unit(_absolute_scale(system, chosen.get(d.TEMPERATURE, "")))
+        return parse_unit(scale)
+    if d.TEMPERATURE in chosen:
+        chosen[d.TEMPERATURE] = {"degC": "K", "degF": STEP_OF_DEGF}.get(scale, scale)
     if bar and system.name == "SI pressure" and dimension == d.STRESS and dimension not in chosen:
         return parse_unit("bar")
-    if dimension == d.TEMPERATURE and chosen.get(dimension) in ("degC", "degF"):
-        return parse_unit("K" if chosen[dimension] == "degC" else STEP_OF_DEGF)
     table = SYSTEMS[system.name] | chosen
-    return parse_unit(table[dimension]) if dimension in table else _product(table, dimension)
+    return parse_unit(table[dimension] if dimension in table else _product(table, dimension))
 
 
-def _absolute_scale(system: UnitSystem, chosen: str) -> str:
-    if chosen in ("degC", "degF", "K"):
-        return chosen
-    return "degF" if system.name.startswith("US") else "degC"
+def _product(table: Table, of: Dimension) -> str:
+    """A product of the system's units that an engineer would write: `kN*s`, `MPa*mm^0.5`, `MPa^2`."""
+    degree = "degF" if table[d.TEMPERATURE] == STEP_OF_DEGF else table[d.TEMPERATURE]
+    short, long = _length_in(table, d.LENGTH), "ft" if table[d.VELOCITY] == "ft/s" else "m"
+    if of.mass == 0:
+        return d.product(d.by_mass(of, ("", long if of.time else short, "s", degree)))
+    force = d.by_force(of, (table[d.FORCE], _length_with_force(table, of), "s", degree))
+    rest = d.by_mass(of.over(d.STRESS.power(of.mass)), ("", short, "s", degree))
+    mass = d.by_mass(of, (table[d.MASS], long, "s", degree))
+    return d.product(d.simplest(force, [(table[d.STRESS], of.mass), *rest], mass))
 
 
-def _product(table: dict[Dimension, str], of: Dimension) -> Unit:
-    """Products of the system's force, length, second and degree."""
-    degree = "degF" if table[d.TEMPERATURE] == STEP_OF_DEGF else "K"
-    if of == d.TEMPERATURE:
-        return parse_unit(table[d.TEMPERATURE])
-    powers = [(table[d.FORCE], of.mass), (table[d.LENGTH], of.length - of.mass), ("s", of.time + 2 * of.mass), (degree, of.temperature)]
-    if of.mass and of.time + 2 * of.mass:
-        plain = [("kg" if "mm" in table[d.LENGTH] or "m" == table[d.LENGTH] else "lb", of.mass), (table[d.LENGTH], of.length), ("s", of.time), (degree, of.temperature)]
-        powers = min((powers, plain), key=lambda p: sum(abs(e) for _, e in p))
-    above = "*".join(_power(name, e) for name, e in powers if e > 0)
-    below = [_power(name, -e) for name, e in powers if e < 0]
-    if not below:
-        return parse_unit(above)
-    bottom = below[0] if len(below) == 1 else f"({'*'.join(below)})"
-    return parse_unit(f"{above or '1'}/{bottom}")
+def _length_with_force(table: Table, of: Dimension) -> str:
+    """Lengths that multiply forces are those of the moments, lengths that divide them of the line loads."""
+    power = of.length - of.mass
+    if power > 0 and of.mass < 0:
+        return _length_in(table, d.LENGTH)
+    return _length_in(table, d.LINE_LOAD if power < 0 < of.mass else d.MOMENT)
 
 
-def _power(name: str, exponent: Fraction) -> str:
-    if exponent == 1:
-        return name
-    return f"{name}^{exponent}" if exponent.denominator == 1 else f"{name}^({exponent})"
+def _length_in(table: Table, kind: Dimension) -> str:
+    """The named length in the table's unit of a kind: `m` of `kN/m`."""
+    atoms = parse_unit(table[kind]).atoms
+    return next((name for name, _ in atoms if parse_unit(name).dimension == d.LENGTH), table[d.LENGTH])

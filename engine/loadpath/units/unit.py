@@ -1,4 +1,4 @@
-"""Units as typed: `kN*m`, `J/(kg*K)`, `degC`, each to its exact factor and dimension. pint holds the definitions."""
+"""Units as typed (`kN*m`, `J/(kg*K)`, `degC`), each with factor and dimension. pint holds the definitions."""
 
 from __future__ import annotations
 
@@ -9,32 +9,32 @@ from fractions import Fraction
 from functools import cached_property, lru_cache
 from importlib.resources import files
 from math import isfinite
-from typing import Any
+from typing import Any, NoReturn
 
-from loadpath.units.dimension import PLAIN, Dimension
+from loadpath.units.dimension import PLAIN, STRESS, TEMPERATURE, Dimension
 
 PREFIXES = ("da", "n", "u", "µ", "μ", "m", "c", "d", "h", "k", "M", "G", "T")
-PREFIXED = ("m", "g", "N", "Pa", "J", "W", "s", "Hz", "bar")
+PREFIXED = ("m", "g", "N", "Pa", "J", "W", "s", "K", "Hz", "rad", "bar")
 """Units that take an SI prefix."""
 ABSOLUTE = ("degC", "degF")
-_PLAIN_NAMES = {"%": "percent"}
-_HIDDEN = {"percent", "metre", "kilogram", "second", "kelvin", "radian", "degree", "gram", "newton", "pascal", "joule", "watt", "hertz", "minute", "hour"}
-_GAUGE = {"psig": "psi", "psia": "psi", "barg": "bar", "bara": "bar", "kPag": "kPa", "ksig": "ksi"}
-_USUAL = {
-    "kn": "kN", "KN": "kN", "Kn": "kN", "mpa": "MPa", "MPA": "MPa", "Mpa": "MPa", "gpa": "GPa", "GPA": "GPa", "pa": "Pa", "PA": "Pa",
-    "n": "N", "nm": "N*m", "Nm": "N*m", "kNm": "kN*m", "Nmm": "N*mm", "KPA": "kPa", "kpa": "kPa", "KPa": "kPa", "kips": "kip",
-    "lbs": "lb", "lbsf": "lbf", "PSI": "psi", "KSI": "ksi", "inch": "in", "inches": "in", "feet": "ft", "foot": "ft", "MM": "mm",
-    "sec": "s", "hr": "h", "Kg": "kg", "KG": "kg", "t": "tonne", "T": "tonne", "l": "litre", "L": "litre", "°C": "degC", "°F": "degF",
-    "°": "deg", "C": "degC", "F": "degF", "RPM": "rpm", "kft": "kip*ft", "gal": "US_gal", "kw": "kW", "KW": "kW", "HP": "hp", "PS": "hp_metric",
-    "BTU": "Btu", "ton": "short_ton", "hz": "Hz", "µε": "microstrain", "degrees": "deg", "in2": "in^2", "mm2": "mm^2", "mm3": "mm^3",
-    "mm4": "mm^4", "m2": "m^2", "m3": "m^3", "cm2": "cm^2", "cm3": "cm^3", "cm4": "cm^4", "in3": "in^3", "in4": "in^4",
-    "lb-ft": "lbf*ft", "ftlb": "ft*lbf", "inlb": "in*lbf",
-}  # fmt: skip
 STEP_OF_DEGF = "delta_degF"
-"""A difference in degrees Fahrenheit: what US results of that kind are shown in; never typed."""
+"""A difference in degrees Fahrenheit: what US results of that kind are shown in."""
 FEET_AND_INCHES = re.compile(r"ft-in +1/(2|4|8|16|32|64)")
 """`[ft-in 1/16]`: a length in feet, inches and fractions of an inch; its number counts inches."""
+LONGEST = 200
+"""Characters of one unit."""
+MOST_POWER, MOST_PARTS = 99, 1000
+"""The largest power in a unit, and the largest denominator of one."""
+LARGEST = Fraction(10**290)
+"""The largest factor, and one over the smallest."""
+
+_HIDDEN = {
+    "metre", "kilogram", "second", "kelvin", "radian", "degree", "gram", "newton", "pascal", "joule", "watt",
+    "hertz", "minute", "hour", "percent",
+}  # fmt: skip
+"""Names that the definition file needs and sheets don't: they type the symbols."""
 _ATOM = re.compile(r"[^\W\d]\w*|%")
+_POWER = re.compile(r"\^(-?[0-9]+(?:\.[0-9]+)?|\(-?[0-9]+(?:\.[0-9]+|/[0-9]+)?\))")
 
 
 class BadUnit(Exception):
@@ -52,7 +52,7 @@ class Unit:
     text: str
     """As typed, without spaces: `kN*m`; "" for a plain number."""
     factor: Fraction
-    """SI value of one; for `degC` and `degF` of one step."""
+    """SI value of one; for `degC` and `degF` of one step. Exact, but where a root is taken or pi is in it."""
     dimension: Dimension
     offset: Fraction = Fraction(0)
     """Kelvins at the zero of an absolute scale."""
@@ -61,21 +61,22 @@ class Unit:
     """Each named unit in it with its power."""
 
     @cached_property
-    def _parts(self) -> tuple[float, float, float]:
-        return float(self.factor.numerator), float(self.factor.denominator), float(self.offset)
+    def _parts(self) -> tuple[float, float]:
+        over, under = self.factor.numerator, self.factor.denominator
+        return (float(over), float(under)) if max(over, under) < LARGEST else (self.size, 1.0)
 
     def to_si(self, value: float) -> float:
         """A number of this unit in coherent SI: multiplied first, then divided."""
         if self.absolute:
             return float(Fraction(value) * self.factor + self.offset) if isfinite(value) else value
-        over, under, _ = self._parts
+        over, under = self._parts
         return value * over / under
 
     def from_si(self, si: float) -> float:
         """A coherent SI value as a number of this unit."""
         if self.absolute:
             return float((Fraction(si) - self.offset) / self.factor) if isfinite(si) else si
-        over, under, _ = self._parts
+        over, under = self._parts
         return si * under / over
 
     @property
@@ -85,6 +86,9 @@ class Unit:
 
 
 ONE = Unit("", Fraction(1), PLAIN)
+
+
+# --- named units --------------------------------------------------------------------------------------------
 
 
 @lru_cache(maxsize=1)
@@ -97,29 +101,32 @@ def _registry() -> Any:
 @lru_cache(maxsize=1)
 def known_names() -> frozenset[str]:
     """Every unit name of the curated set, without prefixes."""
-    names = _registry()._units
-    return frozenset(n for n in names if n not in _HIDDEN and not n.startswith(("delta_", "Δ"))) | {"%"}
+    defined = {name for name in _registry()._units if not name.startswith(("delta_", "Δ"))}
+    return frozenset(defined - _HIDDEN | {"%"})
 
 
 def is_unit(name: str) -> bool:
     """True for one named unit, prefix included: `kN`, not `kN*m`."""
-    if name in known_names():
+    if name in known_names() or name == STEP_OF_DEGF:
         return True
-    return any(name.startswith(p) and name[len(p) :] in PREFIXED for p in PREFIXES)
+    return any(name.startswith(prefix) and name[len(prefix) :] in PREFIXED for prefix in PREFIXES)
 
 
 @lru_cache(maxsize=1024)
 def _atom(name: str) -> tuple[Fraction, Dimension, Fraction]:
     """Factor, dimension and offset of one named unit."""
     registry = _registry()
-    pint_name = _PLAIN_NAMES.get(name, name)
-    if pint_name in ABSOLUTE:
-        converter = registry._units[pint_name].converter
-        return Fraction(converter.scale), Dimension(Fraction(0), Fraction(0), Fraction(0), Fraction(1)), Fraction(converter.offset)
-    factor, root = registry.get_root_units(pint_name)
+    if name in (*ABSOLUTE, STEP_OF_DEGF):
+        scale = registry._units[name.removeprefix("delta_")].converter
+        offset = Fraction(0) if name == STEP_OF_DEGF else Fraction(scale.offset)
+        return Fraction(scale.scale), TEMPERATURE, offset
+    factor, root = registry.get_root_units("percent" if name == "%" else name)
     powers = {base: Fraction(power) for base, power in root._units.items()}
-    dimension = Dimension(*(powers.get(base, Fraction(0)) for base in ("metre", "kilogram", "second", "kelvin")))
-    return Fraction(factor), dimension, Fraction(0)
+    bases = ("metre", "kilogram", "second", "kelvin")
+    return Fraction(factor), Dimension(*(powers.get(base, Fraction(0)) for base in bases)), Fraction(0)
+
+
+# --- compound units -----------------------------------------------------------------------------------------
 
 
 @lru_cache(maxsize=4096)
@@ -127,124 +134,165 @@ def parse_unit(text: str) -> Unit:
     """The unit that a text names. Raises `BadUnit` with slug, message, mend and the part that is wrong."""
     if text in ("", "1"):
         return ONE
-    if text == STEP_OF_DEGF:
-        return Unit(text, Fraction(5, 9), _atom("degF")[1], atoms=((text, Fraction(1)),))
     if feet := FEET_AND_INCHES.fullmatch(text):
         inch = parse_unit("in")
         return Unit(f"ft-in 1/{feet.group(1)}", inch.factor, inch.dimension, atoms=inch.atoms)
+    if len(text) > LONGEST:
+        raise BadUnit("bad-unit", f"a unit of more than {LONGEST} characters", "", text[:20])
     for match in _ATOM.finditer(text):
         if not is_unit(match.group()):
             raise unknown_unit(match.group(), text, match.start())
-    reader = _UnitReader(text)
-    atoms = reader.product()
-    if reader.at < len(text):
-        raise reader.stray()
+    atoms = _UnitReader(text).whole()
+    if text in ABSOLUTE:
+        size, of, offset = _atom(text)
+        return Unit(text, size, of, offset, True, atoms)
     factor, dimension = Fraction(1), PLAIN
     for name, power in atoms:
-        size, of, offset = _atom(name)
-        if len(atoms) == 1 and power == 1 and name in ABSOLUTE:
-            return Unit(text, size, of, offset, True, ((name, power),))
+        size, of, _ = _atom(name)
         factor *= _power_of(size, power)
         dimension = dimension.times(of.power(power))
-    return Unit(text, factor, dimension, atoms=tuple(atoms))
+    if not 1 / LARGEST < factor < LARGEST:
+        raise BadUnit("bad-unit", f"one `{text}` is too large or too small to compute with", "", text)
+    return Unit(text, factor, dimension, atoms=atoms)
 
 
 def _power_of(size: Fraction, power: Fraction) -> Fraction:
-    if power.denominator == 1:
-        return size ** int(power)
-    return Fraction(float(size) ** float(power))
+    """Exact for whole powers; of what is left over, the nearest float."""
+    whole = power.numerator // power.denominator
+    rest = power - whole
+    return size**whole * (Fraction(float(size) ** float(rest)) if rest else 1)
 
 
 class _UnitReader:
-    """Reads `a*b^2/(c*d)`; at most one `/` outside parentheses."""
+    """Reads `a*b^2/(c*d)`; at most one `/` outside parentheses, and nothing after what it divides by."""
 
     def __init__(self, text: str) -> None:
         self.text, self.at = text, 0
 
-    def product(self) -> list[tuple[str, Fraction]]:
-        atoms, slashes = self._factor(), 0
-        while self.at < len(self.text) and self.text[self.at] in "*/":
-            over = self.text[self.at] == "/"
-            slashes += over
-            if slashes > 1:
-                raise self._two_slashes()
+    def whole(self) -> tuple[tuple[str, Fraction], ...]:
+        atoms = self._product()
+        if self.at < len(self.text):
+            raise self._stray()
+        return tuple(atoms)
+
+    def _product(self) -> list[tuple[str, Fraction]]:
+        atoms, divided = self._factor(), False
+        while self.text[self.at : self.at + 1] in ("*", "/"):
+            if divided:
+                raise self._two_slashes() if self.text[self.at] == "/" else self._after_slash()
+            divided = self.text[self.at] == "/"
             self.at += 1
-            sign = Fraction(-1) if over else Fraction(1)
-            if not over and slashes:
-                raise BadUnit(
-                    "bad-unit", f"in `{self.text}` it is not plain what stands under the `/`",
-                    f"write the denominator in parentheses: `{self._grouped()}`", self.text, self.at - 1,
-                )  # fmt: skip
+            sign = Fraction(-1) if divided else Fraction(1)
             atoms += [(name, power * sign) for name, power in self._factor()]
         return atoms
 
-    def _two_slashes(self) -> BadUnit:
-        head, *below = self.text.split("/")
-        bottom = f"{below[0]}^{len(below)}" if len(set(below)) == 1 and "^" not in below[0] else f"({'*'.join(below)})"
-        return BadUnit("bad-unit", f"the unit `{self.text}` has two `/`", f"write `{head}/{bottom}`", self.text, self.at)
-
-    def _grouped(self) -> str:
-        head, _, tail = self.text.partition("/")
-        return f"{head}/({tail})"
-
     def _factor(self) -> list[tuple[str, Fraction]]:
-        if self.text.startswith("(", self.at):
-            self.at += 1
-            atoms = self.product()
-            if not self.text.startswith(")", self.at):
-                raise BadUnit("bad-unit", f"a parenthesis in the unit `{self.text}` is never closed", "", self.text, self.at)
-            self.at += 1
-        elif self.text.startswith("1/", self.at) and self.at == 0:
-            self.at += 1
+        if self.text.startswith("1/") and self.at == 0:
+            self.at = 1
             return []
+        if self.text.startswith("(", self.at):
+            opened = self.at
+            self.at += 1
+            atoms = self._product()
+            if not self.text.startswith(")", self.at):
+                self._fail("a parenthesis in the unit `{}` is never closed", "close it with `)`", opened)
+            self.at += 1
         else:
-            atoms = [(self._name(), Fraction(1))]
-        power = self._exponent()
-        return [(name, p * power) for name, p in atoms]
+            match = _ATOM.match(self.text, self.at)
+            if match is None:
+                raise self._stray()
+            self.at = match.end()
+            atoms = [(match.group(), Fraction(1))]
+        power = self._power()
+        raised = [(name, p * power) for name, p in atoms]
+        if any(abs(p) > MOST_POWER or p.denominator > MOST_PARTS for _, p in raised):
+            help = f"powers up to {MOST_POWER} can be worked"
+            self._fail("the power in the unit `{}` is out of range", help, self.at)
+        return raised
 
-    def _name(self) -> str:
-        match = _ATOM.match(self.text, self.at)
-        if match is None:
-            raise self.stray()
-        name = match.group()
-        if not is_unit(name):
-            raise unknown_unit(name, self.text, self.at)
-        self.at = match.end()
-        return name
-
-    def _exponent(self) -> Fraction:
+    def _power(self) -> Fraction:
         if not self.text.startswith("^", self.at):
             return Fraction(1)
-        match = re.compile(r"\^(-?\d{1,2}(?:\.\d+)?|\(-?\d{1,2}(?:/\d{1,2})?\))").match(self.text, self.at)
+        match = _POWER.match(self.text, self.at)
         if match is None:
-            raise BadUnit("bad-unit", f"the power in the unit `{self.text}` is not a number", "a power is typed as in `mm^2` or `s^-1`", self.text, self.at)
+            help = "a power is typed as in `mm^2` or `s^-1`"
+            self._fail("the power in the unit `{}` is not a number", help, self.at)
         self.at = match.end()
-        value = Fraction(match.group(1).strip("()"))
-        if value.denominator > 12:
-            raise BadUnit("bad-unit", f"the power in the unit `{self.text}` is out of range", "", self.text, self.at)
-        return value
+        over, _, under = match.group(1).strip("()").partition("/")
+        if under and int(under) == 0:
+            self._fail("the power in the unit `{}` divides by 0", "", match.start())
+        return Fraction(over) / Fraction(under or "1")
 
-    def stray(self) -> BadUnit:
-        rest = self.text[self.at :]
-        part = re.match(r"[^*/()^]+", rest)
-        shown = part.group() if part else rest[:1]
-        if shown and not shown[0].isalpha() and rest[:1] in "*/()^":
-            return BadUnit("bad-unit", f"the unit `{self.text}` is not well formed", "a unit is written as in `kN/m^2` or `J/(kg*K)`", self.text, self.at)
-        return unknown_unit(shown or self.text, self.text, self.at)
+    def _fail(self, message: str, help: str, at: int) -> NoReturn:
+        raise BadUnit("bad-unit", message.format(self.text), help, self.text, min(at, len(self.text) - 1))
+
+    def _two_slashes(self) -> BadUnit:
+        head, *below = self.text.split("/")
+        same = len(set(below)) == 1 and below[0].isalpha()
+        bottom = f"{below[0]}^{len(below)}" if same else f"({'*'.join(below)})"
+        help = "write what is divided by in one pair of parentheses: `J/(kg*K)`"
+        if not re.search(r"[()]", self.text):
+            help = f"write `{head}/{bottom}`"
+        return BadUnit("bad-unit", f"the unit `{self.text}` has two `/`", help, self.text, self.at)
+
+    def _after_slash(self) -> BadUnit:
+        head, _, tail = self.text.partition("/")
+        return BadUnit(
+            "bad-unit", f"in `{self.text}` it is not plain what stands under the `/`",
+            f"write the denominator in parentheses: `{head}/({tail})`", self.text, self.at,
+        )  # fmt: skip
+
+    def _stray(self) -> BadUnit:
+        help = "a unit is written as in `kN/m^2` or `J/(kg*K)`"
+        at = min(self.at, len(self.text) - 1)
+        return BadUnit("bad-unit", f"the unit `{self.text}` is not well formed", help, self.text, at)
+
+
+# --- what was meant -----------------------------------------------------------------------------------------
+
+_USUAL = {
+    "Nm": "N*m", "kNm": "kN*m", "MNm": "MN*m", "Nmm": "N*mm", "kNmm": "kN*mm", "Ncm": "N*cm",
+    "kips": "kip", "lbs": "lb", "lbsf": "lbf", "lbm": "lb", "inch": "in", "inches": "in", "feet": "ft",
+    "foot": "ft", "MM": "mm", "sec": "s", "hr": "h", "t": "tonne", "T": "tonne", "l": "litre",
+    "L": "litre", "ml": "cm^3", "mL": "cm^3", "C": "degC", "F": "degF", "kft": "kip*ft", "kipft": "kip*ft",
+    "kipin": "kip*in", "lbfft": "lbf*ft", "lbfin": "lbf*in", "lbft": "lbf*ft", "lbin": "lbf*in",
+    "ftlb": "ft*lbf", "inlb": "in*lbf", "gal": "US_gal", "PS": "hp_metric", "ton": "short_ton",
+    "tons": "short_ton", "µε": "microstrain", "με": "microstrain", "degrees": "deg", "kgs": "kg",
+    "kpsi": "ksi", "gr": "g", "metre": "m", "meter": "m", "gram": "g", "newton": "N", "pascal": "Pa",
+    "joule": "J", "watt": "W", "second": "s", "minute": "min", "hour": "h", "kelvin": "K", "degree": "deg",
+    "radian": "rad", "percent": "%", "micron": "um", "mph": "mile/h",
+}  # fmt: skip
+"""What is commonly typed, and the unit that is meant."""
 
 
 def unknown_unit(name: str, text: str, at: int) -> BadUnit:
     """The finding for a part of a unit that is no unit, with the nearest one that is."""
-    if name in _GAUGE:
-        plain = _GAUGE[name]
+    if name[-1] in "ag" and is_unit(name[:-1]) and _atom(name[:-1])[1] == STRESS:
         return BadUnit(
             "gauge-unit", f"`{name}` says gauge or absolute, which a unit cannot",
-            f"write `{plain}` and say gauge or absolute in the note", name, at,
+            f"write `{name[:-1]}` and say gauge or absolute in the note", name, at,
         )  # fmt: skip
-    mend = _USUAL.get(name)
-    if mend is None:
-        close = get_close_matches(name, sorted(known_names() | {p + u for p in ("k", "M", "G", "m", "c") for u in PREFIXED}), 1, 0.6)
-        mend = close[0] if close else None
-    said = f"did you mean `{mend}`? " if mend else ""
-    apart = "a product of a quantity and a name takes spaces round its `*`: `12 kN/m * L`" if len(text) > len(name) else "the guide's page on units lists those that are known"
-    return BadUnit("unknown-unit", f"`{name}` is not a unit that loadpath knows", said + apart, name, at)
+    help = f"did you mean `{mend}`? " if (mend := _meant(name)) else ""
+    before = text[:at].rstrip("(")
+    if before.endswith(("*", "/")):
+        help += f"where a name is meant, its operator takes spaces: `12 {before[:-1]} {before[-1]} {name}`"
+    elif before.endswith("^"):
+        help = "a power in a unit is typed as a number: `mm^2`"
+    elif text.startswith((f"{name}*", f"{name}/")):
+        help += "a product of a quantity and a name takes spaces round its `*`: `12 kN/m * L`"
+    else:
+        help += "the guide's page on units lists those that are known"
+    return BadUnit("unknown-unit", f"`{name}` is not a unit that loadpath knows", help, name, at)
+
+
+def _meant(name: str) -> str | None:
+    if name in _USUAL:
+        return _USUAL[name]
+    letters = name.rstrip("0123456789")
+    if letters != name and is_unit(letters):
+        return f"{letters}^{name[len(letters) :]}"
+    usual = [*sorted(known_names()), *(p + u for p in ("k", "M", "G", "c", "m") for u in PREFIXED)]
+    for unit in usual:
+        if unit.lower() == name.lower():
+            return unit
+    return next(iter(get_close_matches(name, usual, 1, 0.6)), None)

@@ -197,6 +197,7 @@ def rename(font: TTFont, family: str, style: str) -> None:
         4: f"{family} {style}",
         5: f"Version {version}; subset of {origin} for loadpath",
         6: script,
+        13: "GUST Font License; see GUST-FONT-LICENSE.txt beside this file",
     }
     for number, text in texts.items():
         font["name"].setName(text, number, 3, 1, 0x409)

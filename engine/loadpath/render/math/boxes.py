@@ -1,8 +1,8 @@
-"""What a formula looks like, before anybody says in which notation: figures, symbols, fractions, powers, brackets in rows.
+"""What a formula looks like, whatever the notation: rows of figures, symbols, fractions, powers, brackets.
 
-`layout` makes boxes from a formula tree, `width` measures them, `breaking` opens what is too wide for a line, and one
-writer each turns them into MathML or LaTeX. Everything that is a matter of print (which brackets, `×` or `⋅`, fraction
-or stroke) is settled here once, so that the notations cannot differ in it.
+`layout` makes boxes from a formula tree, `width` measures them, `breaking` opens what is too wide for a
+line, and one writer each turns them into MathML or LaTeX. Everything that is a matter of print (which
+brackets, `×` or `⋅`, fraction or stroke) is settled by `layout`, so that the notations cannot differ in it.
 """
 
 from __future__ import annotations
@@ -56,7 +56,9 @@ class Function(Box):
     index: str = ""
 
 
-Kind = Literal["relation", "logic", "sum", "product", "slash", "comma", "sign", "apply", "open", "close", "raise"]
+Kind = Literal[
+    "relation", "logic", "sum", "product", "slash", "comma", "sign", "apply", "open", "close", "raise"
+]  # fmt: skip
 
 
 @dataclass(frozen=True, slots=True)
@@ -120,6 +122,30 @@ class Table(Box):
     rows: tuple[tuple[Box, Box | None], ...]
     chosen: int | None
     """Index of the branch taken, None where none is marked."""
+
+
+SMALLEST = 2
+"""Script level below which nothing gets smaller: 7.5 pt in a document set in 11 pt."""
+
+
+@dataclass(frozen=True, slots=True)
+class Size:
+    """How small print has become inside a formula."""
+
+    level: int = 0
+    compact: bool = False
+    """Inside a fraction or a script, where a further fraction gets smaller."""
+
+    def script(self) -> Size:
+        """Of an exponent or a subscript."""
+        return Size(self.level + 1, True)
+
+    def within(self) -> Size:
+        """Above and below the stroke of a fraction."""
+        return Size(self.level + self.compact, True)
+
+
+FULL = Size()
 
 
 def row(*boxes: Box) -> Box:

@@ -1,7 +1,7 @@
 """From a formula tree to boxes: which brackets, which sign for a product, what stands above what.
 
-After ISO 80000-1 and -2 (from memory): sloping quantity symbols, upright numbers, units and function names, `×` between
-numbers, a half-high dot between symbols, at most two fractions one within the other.
+After ISO 80000-1 and -2 (from memory): sloping quantity symbols, upright numbers, units and function names,
+`×` between numbers, a half-high dot between symbols. Fractions within fractions stop at two.
 """
 
 from __future__ import annotations
@@ -9,7 +9,7 @@ from __future__ import annotations
 import re
 from dataclasses import dataclass, replace
 
-from loadpath.formula.canonical import POWER, SIGN, level, needs_brackets
+from loadpath.formula.canonical import POWER, SIGN, is_measured, level, needs_brackets
 from loadpath.formula.names import symbol
 from loadpath.formula.tree import (
     As,
@@ -55,6 +55,7 @@ MOST_FRACTIONS = 2
 
 RELATIONS = {"<=": "≤", ">=": "≥", "<": "<", ">": ">", "=": "="}
 _FUNCTIONS = {"asin": ("arcsin", ""), "acos": ("arccos", ""), "atan": ("arctan", ""), "log10": ("log", "10")}
+_PLAIN = re.compile(r"[\d.]+")
 _FEET = re.compile(r"(-?[\d.]+) ft (.+)")
 
 
@@ -81,6 +82,10 @@ class Place:
         """The beginning of an expression of its own."""
         return replace(self, signed=False)
 
+    def behind(self) -> Place:
+        """Directly behind an operator."""
+        return replace(self, signed=True)
+
     def within(self) -> Place:
         """Above or below the stroke of a fraction."""
         return replace(self, signed=False, fractions=self.fractions + 1)
@@ -91,13 +96,17 @@ class Place:
 
 
 def lay_out(node: Node, flat: bool = False, chosen: int | None = None) -> Box:
-    """The boxes of a formula. `flat`: every fraction on the line; `chosen`: index of the branch of `cases` to mark."""
+    """The boxes of a formula.
+
+    `flat`: every fraction on the line; `chosen`: index of the branch of `cases` to mark.
+    """
     return _lay(node, Place(flat=flat, numeric=_is_numeric(node), chosen=chosen))
 
 
 def _is_numeric(node: Node) -> bool:
     nodes = list(walk(node))
-    return any(isinstance(n, Shown) for n in nodes) or not any(isinstance(n, Name) and n.name != "pi" for n in nodes)
+    names = [n.name for n in nodes if isinstance(n, Name)]
+    return any(isinstance(n, Shown) for n in nodes) or all(name == "pi" for name in names)
 
 
 def _lay(node: Node, place: Place) -> Box:
@@ -113,13 +122,13 @@ def _lay(node: Node, place: Place) -> Box:
         case Name(name=name):
             return Variable(symbol(name))
         case Negative(operand=operand):
-            return row(Operator(MINUS, "sign"), _child(operand, node, replace(place, signed=True)))
+            return row(Operator(MINUS, "sign"), _child(operand, node, place.behind()))
         case Binary(operator="+" | "-", left=left, right=right):
             sign = Operator(MINUS if node.operator == "-" else "+", "sum")
-            return row(_child(left, node, place), sign, _child(right, node, replace(place, signed=True), True))
+            return row(_child(left, node, place), sign, _child(right, node, place.behind(), True))
         case Binary(operator="*", left=left, right=right):
             sign = Operator(_product_sign(left, right, place), "product")
-            return row(_child(left, node, place), sign, _child(right, node, replace(place, signed=True), True))
+            return row(_child(left, node, place), sign, _child(right, node, place.behind(), True))
         case Binary(operator="/"):
             return _on_line(node, place) if place.on_line else _fraction(node, place)
         case Binary():
@@ -138,14 +147,15 @@ def _lay(node: Node, place: Place) -> Box:
             return _joined([_child(o, node, place.start()) for o in operands], Operator(word, "logic"))
         case Cases(branches=branches):
             conditions = replace(place.start(), flat=True)
-            return Table(
-                tuple((_lay(b.value, place.start()), b.condition and _lay(b.condition, conditions)) for b in branches),
-                place.chosen,
+            rows = tuple(
+                (_lay(b.value, place.start()), None if b.condition is None else _lay(b.condition, conditions))
+                for b in branches
             )
+            return Table(rows, place.chosen)
     raise TypeError(type(node).__name__)
 
 
-# --- values -----------------------------------------------------------------------------------------------------
+# --- values -------------------------------------------------------------------------------------------------
 
 
 def _number(part: Part) -> str:
@@ -163,10 +173,11 @@ def _shown(node: Shown) -> Box:
 
 
 def _as(node: As, place: Place, brackets: bool = True) -> Box:
-    """The unit that is taken off stands behind a small word; a value printed in that very unit is its plain number."""
-    if isinstance(node.operand, Shown) and node.operand.unit == node.unit:
-        return _lay(replace(node.operand, unit=""), place)
+    """The unit that is taken off, behind a small word; a value in that very unit is its plain number."""
     inner = row(_lay(node.operand, place), Words(" in ", small=True), Amount((("", node.unit),)))
+    if isinstance(node.operand, Shown) and node.operand.unit == node.unit:
+        inner = Figure(node.operand.number)
+        brackets = brackets and not _PLAIN.fullmatch(node.operand.number)
     return bracketed(inner) if brackets else inner
 
 
@@ -178,7 +189,7 @@ def _factor(node: Factor, place: Place) -> Box:
     return row(body, Operator("×", "product"), amount)
 
 
-# --- operations -------------------------------------------------------------------------------------------------
+# --- operations ---------------------------------------------------------------------------------------------
 
 
 def _child(child: Node, parent: Node, place: Place, right: bool = False) -> Box:
@@ -225,18 +236,11 @@ def _on_line(node: Binary, place: Place) -> Box:
 def _stroke(node: Binary, top: Box, bottom: Box) -> Box:
     """`top/bottom`, with brackets round all that could be read past the stroke."""
     long_top = level(node.left) <= SIGN or _has_stroke(node.left)
-    long_bottom = level(node.right) <= SIGN or isinstance(node.right, Quantity | Factor) or _is_long(node.right)
+    long_bottom = level(node.right) <= SIGN or is_measured(node.right)
     return row(
         bracketed(top) if long_top else top,
         Operator("/", "slash"),
         bracketed(bottom) if long_bottom else bottom,
-    )
-
-
-def _is_long(node: Node) -> bool:
-    """True for a printed number with a unit or a power of ten."""
-    return (isinstance(node, Shown) and not node.word and (bool(node.unit) or "e" in node.number)) or (
-        isinstance(node, Number) and "e" in node.text.lower()
     )
 
 
@@ -269,7 +273,7 @@ def _ends_open(node: Node) -> bool:
     return level(node) == POWER
 
 
-# --- functions, relations ---------------------------------------------------------------------------------------
+# --- functions, relations -----------------------------------------------------------------------------------
 
 
 def _call(node: Call, place: Place) -> Box:

@@ -1,0 +1,5 @@
+"""`python -m loadpath`."""
+
+from loadpath.cli import main
+
+main()

@@ -1,0 +1,183 @@
+"""The plan of a sheet: all that can be settled before a number is worked, once for every run of it."""
+
+from __future__ import annotations
+
+from collections import defaultdict
+from collections.abc import Iterator
+from dataclasses import dataclass
+
+
+from loadpath.evaluate.numbers import Compiler, Work
+from loadpath.formula.statements import (
+    Check,
+    Criterion,
+    Definition,
+    Faulty,
+    FunctionDefinition,
+    Statement,
+    Validity,
+)
+from loadpath.formula.tree import As, Call, Cases, Node, Relation, walk
+from loadpath.resolve import Entry, Resolved
+from loadpath.sheet import Formulas, Heading, Sheet
+from loadpath.trace.model import Outline, Working
+
+Sides = tuple[tuple[tuple[Node, Work], ...], ...]
+"""For each relation, its operands with their compiled form."""
+
+
+@dataclass(frozen=True, slots=True)
+class Planned:
+    """One statement, ready to be worked."""
+
+    outline: Outline
+    tree: Node | None
+    """What gives its value, or the relation that it holds."""
+    work: Work | None
+    sides: Sides
+    working: Working | None
+    """How its value comes about, where that is the same at every run; None where it has to be observed."""
+    assumed: tuple[str, ...]
+    """Keys of assumptions still to be confirmed that it hangs on."""
+    ranged: frozenset[str]
+    """Names with a stated range that it hangs on."""
+
+
+@dataclass(frozen=True, slots=True)
+class Plan:
+    """A whole sheet, ready to be worked."""
+
+    resolved: Resolved
+    compiler: Compiler
+    steps: tuple[Planned, ...]
+    sections: tuple[tuple[int, str], ...]
+
+
+def make_plan(resolved: Resolved) -> Plan:
+    """Compiles a resolved sheet."""
+    functions = {e.name: e.statement for e in resolved.entries if isinstance(e.statement, FunctionDefinition)}
+    compiler = Compiler(functions)
+    sections, numbers = _numbering(resolved.sheet)
+    reach = _Reach(resolved)
+    outlines = _outlines(resolved, numbers)
+    steps = tuple(_planned(outline, compiler, *reach.of(outline.entry)) for outline in outlines)
+    return Plan(resolved, compiler, steps, sections)
+
+
+def _planned(outline: Outline, compiler: Compiler, assumed: tuple[str, ...], ranged: frozenset[str]) -> Planned:
+    entry = outline.entry
+    tree = tree_of(entry.statement)
+    if tree is None or entry.blocked_by:
+        return Planned(outline, tree, None, (), None, assumed, ranged)
+    seen = None if any(isinstance(n, Call | Cases | As) for n in walk(tree)) else Working(tree)
+    sides = () if isinstance(entry.statement, Definition) else _sides(tree, compiler)
+    return Planned(outline, tree, compiler.compile_tree(tree), sides, seen, assumed, ranged)
+
+
+def tree_of(statement: Statement) -> Node | None:
+    """The tree that a statement's value or verdict comes from."""
+    match statement:
+        case Definition(value=value):
+            return value
+        case Criterion(relation=relation) | Validity(relation=relation) | Check(relation=relation):
+            return relation
+    return None
+
+
+def _sides(tree: Node, compiler: Compiler) -> Sides:
+    relations = [n for n in walk(tree) if isinstance(n, Relation)]
+    return tuple(tuple((o, compiler.compile_tree(o)) for o in r.operands) for r in relations)
+
+
+# --- trails -----------------------------------------------------------------------------------------------------
+
+
+def _outlines(resolved: Resolved, numbers: Iterator[str]) -> tuple[Outline, ...]:
+    owner: dict[str, str] = {}
+    for entry in resolved.entries:
+        for name in defined_by(entry):
+            owner.setdefault(name, entry.id)
+    used_by: dict[str, list[str]] = defaultdict(list)
+    uses: list[tuple[str, ...]] = []
+    for entry in resolved.entries:
+        of = tuple(dict.fromkeys(owner[n] for n in entry.uses if n in owner and owner[n] != entry.id))
+        uses.append(of)
+        for id in of:
+            used_by[id].append(entry.id)
+    return tuple(
+        Outline(entry, number, cited(entry.statement), of, tuple(used_by[entry.id]))
+        for entry, of, number in zip(resolved.entries, uses, numbers, strict=False)
+    )
+
+
+def defined_by(entry: Entry) -> tuple[str, ...]:
+    """The names that a statement brings, those of a line that could not be read too."""
+    if entry.name:
+        return (entry.name,)
+    return entry.statement.names if isinstance(entry.statement, Faulty) else ()
+
+
+def cited(statement: Statement) -> tuple[str, ...]:
+    """Keys cited in its notes, in order."""
+    return tuple(dict.fromkeys(key for note in statement.notes for key, _ in note.citations))
+
+
+class _Reach:
+    """For each statement: the open assumptions and the names with a stated range that it hangs on."""
+
+    def __init__(self, resolved: Resolved) -> None:
+        self.assumptions = [a.key for a in resolved.sheet.front.assumptions if a.confirm]
+        self.open = frozenset(self.assumptions)
+        self.ranged = {n for e in resolved.entries if isinstance(e.statement, Validity) for n, _ in e.statement.names}
+        self.known: dict[str, tuple[frozenset[str], frozenset[str]]] = {}
+        self.by_id: dict[str, tuple[frozenset[str], frozenset[str]]] = {}
+        self.behind: dict[str, frozenset[str]] = defaultdict(frozenset)
+        for entry in resolved.entries:
+            self._enter(entry)
+
+    def _enter(self, entry: Entry) -> None:
+        feeding = [self.known[name] for name in entry.uses if name in self.known]
+        assumed = (frozenset(cited(entry.statement)) & self.open).union(*(a for a, _ in feeding))
+        ranged = frozenset(n for n in entry.uses if n in self.ranged).union(*(r for _, r in feeding))
+        self.by_id[entry.id] = (assumed, ranged)
+        for name in defined_by(entry):
+            self.known.setdefault(name, (assumed, ranged))
+        if isinstance(entry.statement, Validity):
+            for name, _ in entry.statement.names:
+                self.behind[name] |= assumed
+
+    def of(self, entry: Entry) -> tuple[tuple[str, ...], frozenset[str]]:
+        """What a statement hangs on; the assumptions behind the ranges of its names count too."""
+        assumed, ranged = self.by_id[entry.id]
+        assumed = assumed.union(*(self.behind[name] for name in ranged))
+        return tuple(key for key in self.assumptions if key in assumed), ranged
+
+
+# --- numbers of sections and steps ------------------------------------------------------------------------------
+
+
+def _numbering(sheet: Sheet) -> tuple[tuple[tuple[int, str], ...], Iterator[str]]:
+    """Section number (0 for lower headings) and text of each heading; step numbers in reading order."""
+    levels = [b.level for b in sheet.blocks if isinstance(b, Heading) and not is_title(b, sheet)]
+    top = min(levels, default=1)
+    sections: list[tuple[int, str]] = []
+    numbers: list[str] = []
+    section = step = 0
+    for block in sheet.blocks:
+        if isinstance(block, Heading):
+            counts = block.level == top and not is_title(block, sheet)
+            if counts:
+                section, step = section + 1, 0
+            sections.append((section if counts else 0, block.text))
+        elif isinstance(block, Formulas):
+            for _ in block.statements:
+                step += 1
+                numbers.append(f"{section}.{step}")
+    return tuple(sections), iter(numbers)
+
+
+def is_title(heading: Heading, sheet: Sheet) -> bool:
+    """True for a heading that only repeats the sheet's title."""
+    return heading.level == 1 and heading.text.strip() == sheet.front.title.strip()
+
+

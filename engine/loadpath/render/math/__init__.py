@@ -1,0 +1,7 @@
+"""Formulas in print: the tree as MathML for pages and as LaTeX for Markdown. Pure functions, no state."""
+
+from loadpath.render.math.latex import latex, latex_lines
+from loadpath.render.math.mathml import flow, mathml, pieces, widest
+from loadpath.render.math.width import COLUMN, PAGE
+
+__all__ = ["COLUMN", "PAGE", "flow", "latex", "latex_lines", "mathml", "pieces", "widest"]

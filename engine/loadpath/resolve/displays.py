@@ -1,0 +1,116 @@
+"""The unit that each value and each relation is shown in."""
+
+from __future__ import annotations
+
+from dataclasses import replace
+
+from loadpath.findings import Remark
+from loadpath.formula.mistake import Mistake
+from loadpath.formula.statements import AskedUnit, Check, FunctionDefinition, Parameter, Statement
+from loadpath.formula.tree import Name, Node, Quantity, Relation, Word, span_of, walk
+from loadpath.resolve.dimensions import Checker, Parameters
+from loadpath.resolve.mismatches import article, factor_between
+from loadpath.resolve.model import UNKNOWN, Entry, Type
+from loadpath.resolve.names import Names
+from loadpath.resolve.parts import PI, relations_in
+from loadpath.resolve.units import read_unit, typed_unit
+from loadpath.units import ONE, Unit
+
+RELATIVE = ("%", "ppm")
+"""Units of a tolerance that is a share of the right side."""
+
+Shown = tuple[Type, Unit, bool]
+"""Type, unit, and whether the line asks for that unit."""
+
+
+class Displays:
+    """Types of whole statements with the units they are shown in. Raises `Mistake`."""
+
+    def __init__(self, checker: Checker, names: Names, entries: list[Entry]) -> None:
+        self.checker, self.names, self.entries = checker, names, entries
+
+    def of_value(self, found: Type, asked: AskedUnit | None, value: Node, typed: bool) -> Shown:
+        """Of a definition; `typed` for an input, which keeps the unit it was typed in."""
+        if asked is not None:
+            return *self.checker.shown(found, asked, value), True
+        if found.unknown:
+            return found, ONE, False
+        # a bare 0 fits any dimension, but a name has one
+        found = replace(found, zero=False)
+        if typed and (unit := typed_unit(value, found)) is not None:
+            return found, unit, False
+        return found, self._fitting(found), False
+
+    def _fitting(self, found: Type) -> Unit:
+        return self.checker.system.unit_for(found.dimension, found.absolute, found.flavour == "bar")
+
+    # --- functions ---
+
+    def of_function(self, statement: FunctionDefinition) -> Shown:
+        """Of a function's value; UNKNOWN where a parameter without unit leaves it to each call."""
+        parameters: Parameters = {p.name: self._parameter(p) for p in statement.parameters}
+        found = self.checker.type_of(statement.body, parameters)
+        if found.words is not None:
+            message = "a function cannot give a choice"
+            raise Mistake("unknown-choice", span_of(statement.body), message, "use the choice itself")
+        untyped = any(p.unit is None for p in statement.parameters)
+        type_, unit, asked = self.of_value(found, statement.unit, statement.body, False)
+        return (UNKNOWN if untyped and not asked else type_), unit, asked
+
+    def _parameter(self, parameter: Parameter) -> Type:
+        name = parameter.name
+        if name in self.names or name == PI:
+            first = self.names.first.get(name)
+            remarks = () if first is None else (Remark("the name of the sheet stands here", first),)
+            raise Mistake(
+                "shadowed-name", parameter.span, f"the parameter `{name}` is also a name of this sheet",
+                "choose another name for one of the two", remarks=remarks,
+            )  # fmt: skip
+        if parameter.unit is None:
+            return UNKNOWN
+        unit = read_unit(parameter.unit.text, parameter.unit.span, self.names.__contains__)
+        return Type(unit.dimension, unit.absolute)
+
+    # --- relations ---
+
+    def side_units(self, statement: Statement) -> tuple[Unit, ...]:
+        """For each relation of a judged statement, the unit that its sides are shown in."""
+        return tuple(self.common_unit(relation) for relation in relations_in(statement))
+
+    def common_unit(self, relation: Relation) -> Unit:
+        """That of the first side that is a name, else of the first name in it, that has the right dimension."""
+        types = [self.checker.type_of(o) for o in relation.operands if not isinstance(o, Word)]
+        found = next((t for t in types if not t.zero and not t.unknown), None)
+        if found is None or found.words is not None:
+            return ONE
+        alone = [o for o in relation.operands if isinstance(o, Name)]
+        for name in (*alone, *(n for n in walk(relation) if isinstance(n, Name))):
+            if name.name in self.names.by_name:
+                unit = self.entries[self.names.by_name[name.name]].unit
+                if unit.dimension == found.dimension and unit.absolute == found.absolute:
+                    return unit
+        typed = next((t for o in relation.operands if (t := typed_unit(o, found)) is not None), None)
+        return typed or self._fitting(found)
+
+    def of_check(self, statement: Check) -> Shown:
+        """Of the two sides of a cross-check; its tolerance is of their dimension, or a share."""
+        relation = statement.relation
+        left, right = (self.checker.number(o, None) for o in relation.operands)
+        common = self.checker.same(left, right, relation.at[0], "`=` compares", *relation.operands)
+        tolerance = self.checker.number(statement.tolerance, None)
+        unit = self.common_unit(relation)
+        if is_relative(statement.tolerance) or common.unknown or tolerance.unknown or tolerance.zero:
+            return common, unit, False
+        if tolerance.absolute or (tolerance.dimension != common.dimension and not common.zero):
+            raise Mistake(
+                "unit-mismatch", span_of(statement.tolerance),
+                f"the tolerance is {article(tolerance.dimension)}, but the sides are {article(common.dimension)}",
+                "give it in the unit of the sides, or as a share of the right side: `within 0.1 %`; "
+                + factor_between(tolerance.dimension, common.dimension),
+            )  # fmt: skip
+        return common, unit, False
+
+
+def is_relative(tolerance: Node) -> bool:
+    """True for a tolerance that is a share of the right side."""
+    return isinstance(tolerance, Quantity) and tolerance.parts[0].unit in RELATIVE
