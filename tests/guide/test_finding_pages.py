@@ -1,7 +1,7 @@
 """A page of the guide for every finding: its failing sheet gives the finding, its mended sheet gives none.
 
-A page holds its sheets in fenced blocks opened by "```sheet failing" and "```sheet mended", and files that lie
-beside them in blocks opened by "```file NAME".
+A page holds its sheets in fenced blocks opened by "```sheet failing" and "```sheet mended", and files that
+lie beside them in blocks opened by "```file NAME".
 """
 
 from __future__ import annotations
@@ -52,7 +52,9 @@ def work(slug: str, which: str) -> tuple[Trace, Sequence[Finding]]:
 
 
 def listed(findings: Sequence[Finding]) -> str:
-    return "\n" + "\n".join(f"{f.line}:{f.column} {f.severity} {f.slug}: {f.message} | {f.help}" for f in findings)
+    return "\n" + "\n".join(
+        f"{f.line}:{f.column} {f.severity} {f.slug}: {f.message} | {f.help}" for f in findings
+    )
 
 
 def test_every_finding_has_a_page_and_every_page_a_finding() -> None:
@@ -61,7 +63,7 @@ def test_every_finding_has_a_page_and_every_page_a_finding() -> None:
 
 @pytest.mark.parametrize("slug", sorted(PAGES))
 def test_page_is_well_formed(slug: str) -> None:
-    """The slug as heading; one failing and one mended sheet, short and different, or neither; no other blocks."""
+    """The slug as heading; a failing and a mended sheet, short and different, or neither; no other blocks."""
     assert PAGES[slug].startswith(f"# {slug}\n\n")
     opened = [name for name, _ in BLOCK.findall(PAGES[slug])]
     assert len(opened) == len(set(opened)) == PAGES[slug].count("\n```") / 2

@@ -76,6 +76,21 @@ def test_an_unknown_key_names_the_nearest() -> None:
     assert "did you mean" not in mend("colour: red")
 
 
+def test_a_misspelt_key_is_taken_for_the_one_it_is_near_to() -> None:
+    front, _ = read("titel: Hoist beam\nsource: {hoist: HD-7}\nassumptions: {A1: {text: light, confrim: true}}")
+    assert (front.title, [s.key for s in front.sources]) == ("Hoist beam", ["hoist"])
+    assert front.assumptions[0].confirm
+    assert read("not_applicable: {strenght: none}")[0].not_applicable == (("strength", "none"),)
+    assert read("title: one\ntitel: two")[0].title == "one"
+
+
+def test_keys_that_could_not_be_read_are_known_to_be_so() -> None:
+    assert read("title: one\nsources: HD-7\ncodes: EN 1990\ndigits: 4")[0].unread == {"sources", "codes"}
+    assert {"sources", "codes"} <= read("title: one\nnumber: *x\nsources: {a: b}")[0].unread
+    assert "title" not in read("title: one\nnumber: *x\nsources: {a: b}")[0].unread
+    assert read("title: one\nsources: {a: b}\nstatus: for review")[0].unread == frozenset()
+
+
 def test_a_mistyped_title_is_one_finding_and_a_missing_one_another() -> None:
     assert [f.slug for f in read("titel: Hoist beam")[1]] == ["unknown-key"]
     assert [f.slug for f in read("number: SB-104")[1]] == ["missing-title"]

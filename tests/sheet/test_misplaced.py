@@ -130,3 +130,27 @@ def test_what_the_lines_would_have_defined_is_kept() -> None:
     assert lost("Loads\n    P = 20 kN\n===") == [("P",)]
     assert lost("The load is\n    and so on\n") == []
     assert lost("> P = 20 kN\n") == [("P",)]
+
+
+def test_a_block_in_a_quotation_says_what_it_would_have_defined() -> None:
+    assert lost("> quoted\n>\n>     P = 20 kN -- load [k]\n>     M(x) = P*x\n") == [("P",), ("M",)]
+
+
+def test_what_misplaced_lines_would_have_defined_names_the_line_of_the_finding() -> None:
+    for text, line in (
+        ("The load is\n    P = 20 kN\n    Q = 3 kN\n", 2),
+        ("- item\n\n      P = 20 kN\n      Q = 3 kN\n", 3),
+        ("> quoted\n>\n>     P = 20 kN\n>     Q = 3 kN\n", 3),
+        ("P = 20 kN\nQ = 3 kN\n", 1),
+    ):
+        source = Source("a.sheet.md", text)
+        blocks, found = read_blocks(source, 0, MemoryWorld())
+        statements = [s for b in blocks if isinstance(b, Formulas) for s in b.statements if isinstance(s, Faulty)]
+        assert [s.names for s in statements] == [("P",), ("Q",)]
+        assert {source.line_number(s.trouble.start) for s in statements} == {line} == {f.line for f in found}
+
+
+def test_a_misplaced_check_still_counts_as_using_its_names() -> None:
+    blocks, _ = read_blocks(Source("a.sheet.md", "check: a = b within 2\n"), 0, MemoryWorld())
+    (statement,) = (s for b in blocks if isinstance(b, Formulas) for s in b.statements)
+    assert isinstance(statement, Faulty) and statement.text == "check: a = b within 2"

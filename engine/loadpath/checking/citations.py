@@ -50,7 +50,7 @@ def _unused(trace: Trace, kind: str, entry: SourceEntry | Assumption) -> Finding
 
 def _annex(trace: Trace) -> Iterator[Finding]:
     front = trace.sheet.front
-    if any(_ANNEX.search(code) for code in front.codes):
+    if "codes" in front.unread or any(_ANNEX.search(code) for code in front.codes):
         return
     help = "name it in `codes`: `EN 1993-1-1:2005 with its national annex`"
     for entry in front.sources:

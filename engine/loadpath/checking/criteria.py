@@ -68,6 +68,8 @@ def _without_source(trace: Trace, step: Step, statement: Criterion) -> Finding:
 
 
 def _missing_kinds(trace: Trace) -> Iterator[Finding]:
+    if "not_applicable" in trace.sheet.front.unread:
+        return
     shown = {criterion_kind(step) for step in trace.criteria} | {kind for kind, _ in trace.sheet.front.not_applicable}
     for kind in KINDS:
         if kind not in shown:

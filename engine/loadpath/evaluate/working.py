@@ -26,9 +26,13 @@ class Observer:
     resolved: Resolved
     compiler: Compiler
     values: Values
+    left: int = MOST_CALLS
+    """Calls that may still be shown beneath the step at hand."""
 
     def working(self, tree: Node, given: Mapping[str, Operand] | None = None, types: dict[str, Type] | None = None) -> Working:
         """How the value of a tree came about; `given` are the parameters of the enclosing function."""
+        if given is None:
+            self.left = MOST_CALLS
         scope = dict(given or {})
         if not any(isinstance(n, Call | Cases | As) for n in walk(tree)):
             return Working(tree, tuple(scope.items()))
@@ -54,8 +58,9 @@ class Observer:
         done: set[Call] = set()
         for tree in trees:
             for node in walk(tree):
-                if isinstance(node, Call) and node.function not in FUNCTIONS and node not in done and len(done) < MOST_CALLS:
+                if isinstance(node, Call) and node.function not in FUNCTIONS and node not in done and self.left > 0:
                     done.add(node)
+                    self.left -= 1
                     yield self._called(node, parameters, scope, types)
 
     def _called(self, call: Call, parameters: Values, scope: Mapping[str, Operand], types: dict[str, Type]) -> Called:

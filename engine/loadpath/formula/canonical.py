@@ -59,10 +59,15 @@ def level(node: Node) -> int:
 
 
 def is_measured(node: Node) -> bool:
-    """True where a number with a unit, or in powers of ten, stands: it takes brackets as the base of a power."""
-    return isinstance(node, Quantity) or (
-        isinstance(node, Shown) and not node.word and (bool(node.unit) or "e" in node.number or " " in node.number)
-    ) or (isinstance(node, Number) and "e" in node.text.lower())
+    """True where a number with a unit, or in powers of ten, stands: in a power it takes brackets."""
+    match node:
+        case Quantity():
+            return True
+        case Number(text=typed):
+            return "e" in typed.lower()
+        case Shown(number=number, unit=unit, word=False):
+            return bool(unit) or "e" in number or " " in number
+    return False
 
 
 def needs_brackets(child: Node, parent: Node, right: bool = False) -> bool:
@@ -71,15 +76,13 @@ def needs_brackets(child: Node, parent: Node, right: bool = False) -> bool:
         case Binary(operator="^") if not right:
             return level(child) < ATOM or is_measured(child)
         case Binary(operator="^"):
-            return level(child) < SIGN
-        case Binary(operator="+"):
-            return level(child) < SUM or (right and level(child) in (SUM, SIGN))
-        case Binary(operator="-"):
+            return level(child) < SIGN or is_measured(child.operand if isinstance(child, Negative) else child)
+        case Binary(operator="+" | "-"):
             return level(child) < SUM or (right and level(child) in (SUM, SIGN))
         case Binary(operator="*" | "/"):
             return level(child) < PRODUCT or (right and level(child) in (PRODUCT, SIGN))
         case Negative():
-            return level(child) <= SIGN
+            return level(child) <= SIGN or _takes_the_minus(child)
         case Factor():
             return level(child) < PRODUCT
         case Relation():
@@ -87,6 +90,11 @@ def needs_brackets(child: Node, parent: Node, right: bool = False) -> bool:
         case Logic(word=word):
             return isinstance(child, Logic) and not (word == "or" and child.word == "and")
     return False
+
+
+def _takes_the_minus(child: Node) -> bool:
+    """True for an absolute temperature: a minus directly before it would belong to its number."""
+    return isinstance(child, Quantity) and child.parts[-1].unit in ("degC", "degF")
 
 
 def text(node: Node) -> str:
@@ -142,12 +150,15 @@ def _child(child: Node, parent: Node, right: bool = False) -> str:
 
 def _binary(node: Binary) -> str:
     left, right = _child(node.left, node), _child(node.right, node, right=True)
-    if node.operator == "^" and isinstance(node.right, Binary | Call):
-        right = right if right.startswith("(") or isinstance(node.right, Call) else f"({right})" if node.right.operator != "^" else right
-    spaced = node.operator in "+-" or (node.operator != "^" and (_spaced(node.left) or _spaced(node.right)))
-    if node.operator == "/" and isinstance(node.right, Quantity) and node.right.parts[0].over and not node.right.parts[0].whole:
+    if node.operator == "/" and _is_fraction(node.right):
         right = f"({right})"
+    spaced = node.operator in "+-" or (node.operator != "^" and (_spaced(node.left) or _spaced(node.right)))
     return f"{left} {node.operator} {right}" if spaced else f"{left}{node.operator}{right}"
+
+
+def _is_fraction(node: Node) -> bool:
+    """True for `1/2 in`, which after a `/` could be read in two ways."""
+    return isinstance(node, Quantity) and bool(node.parts[0].over) and not node.parts[0].whole
 
 
 def _spaced(node: Node) -> bool:
@@ -157,6 +168,8 @@ def _spaced(node: Node) -> bool:
             return bool(unit)
         case Quantity():
             return True
+        case Negative(operand=operand):
+            return _spaced(operand)
         case Binary(operator="*" | "/" | "^"):
             return _spaced(node.left) or _spaced(node.right)
     return False

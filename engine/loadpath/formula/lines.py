@@ -48,7 +48,9 @@ class Group:
     @property
     def span(self) -> Span:
         """With its notes, from the first character to the last."""
-        spans = [self.whole.span, *(note.span for note in self.whole.notes)]
+        spans = [note.span for note in self.whole.notes]
+        if self.whole.text.strip():
+            spans.insert(0, self.whole.span)
         return Span(spans[0].start, max(span.end for span in spans))
 
 

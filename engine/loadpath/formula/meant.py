@@ -89,7 +89,7 @@ def no_colon(reader: Reader) -> Mistake:
     """`strength bending sigma <= f_y`."""
     word = reader.word()
     reader.at += len(word)
-    own = re.match(r"\s+[\w-]+(?=\s+\S)", reader.text[reader.at :])
+    own = re.match(r"\s+[\w-]+(?=\s+[^\W\d])", reader.text[reader.at :])
     reader.skip()
     example = f"{word}{own.group().rstrip() if own else ''}: a <= b"
     message = f"a criterion takes a colon after `{word}` and its name"

@@ -70,7 +70,7 @@ def _acos(x: float) -> float:
 def _atan2(y: float, x: float) -> float:
     if x == 0 and y == 0:
         raise ValueError("atan2 is not defined where both arguments are 0")
-    return math.atan2(y, x)
+    return math.atan2(y + 0.0, x)  # a zero has no sign
 
 
 NEAR = 1e-9

@@ -20,6 +20,8 @@ from loadpath.text import Span
 from loadpath.units import KINDS, ONE, Unit, UnitSystem
 
 MOST_STATEMENTS = 20_000
+DEEPEST_CALLS = 30
+"""Functions that call one another."""
 MOST_WORK = 20_000
 """Operations of one statement, those of the functions that it calls counted at each call."""
 MOST_WORK_IN_ALL = 2_000_000
@@ -48,7 +50,7 @@ class _Resolver:
         self.statements = self._limited(sheet.statements)
         self.suggestions = Suggestions()
         self.names = Names(self.source, self.statements, self.suggestions)
-        self.checker = Checker(self._type_of_name, self.names.functions.get, self.names.__contains__, self.system)
+        self.checker = Checker(self._type_of_name, self._function, self.names.__contains__, self.system)
         self.displays = Displays(self.checker, self.names, self.entries)
         self.citable = {s.key for s in sheet.front.sources} | {a.key for a in sheet.front.assumptions}
         self.mentioned: set[str] = set()
@@ -59,6 +61,7 @@ class _Resolver:
         """Names that a line above would have defined, had it been readable."""
         self.warned: set[str] = set()
         self.work: dict[str, int] = {}
+        self.depth: dict[str, int] = {}
         """Operations of each function of the sheet."""
         self.work_in_all = 0
 
@@ -109,7 +112,8 @@ class _Resolver:
         uses, hanging, unknown = self._uses(statement)
         mistakes, checked = refused + unknown, _Checked()
         try:
-            self._limit_work(statement)
+            if not hanging:
+                self._limit_work(statement)
             if kind != "faulty":
                 checked = self._check(statement)
         except Mistake as mistake:
@@ -178,6 +182,8 @@ class _Resolver:
     # --- names and citations ---
 
     def _citations(self, statement: Statement) -> None:
+        if not self.sheet.front.unread.isdisjoint(("sources", "assumptions")):
+            return
         for note in statement.notes:
             for key, span in note.citations:
                 if key not in self.citable:
@@ -207,6 +213,12 @@ class _Resolver:
 
     def _blocked(self, name: str) -> int:
         return self.entries[self.names.by_name[name]].blocked_by or self.names.contested.get(name, 0)
+
+    def _function(self, name: str) -> FunctionDefinition | None:
+        """A function of the sheet; one that cannot be worked has no types and is not looked into."""
+        index = self.names.by_name.get(name)
+        blocked = index is not None and self.entries[index].blocked_by
+        return None if blocked else self.names.functions.get(name)
 
     def _type_of_name(self, name: str) -> Type:
         if name == PI:
@@ -240,10 +252,15 @@ class _Resolver:
     def _limit_work(self, statement: Statement) -> None:
         """Functions of functions of functions can ask for more work than any machine has time for."""
         work = sum(self._work_of(node) for tree in expressions(statement) for node in walk(tree))
+        calls = [n for tree in expressions(statement) for n in walk(tree) if isinstance(n, Call)]
+        depth = 1 + max((self.depth.get(call.function, 0) for call in calls), default=0)
         if isinstance(statement, FunctionDefinition):
-            self.work[statement.name] = work
+            self.work[statement.name], self.depth[statement.name] = work, depth
         else:
             self.work_in_all += work
+        if depth > DEEPEST_CALLS:
+            message = f"functions that call functions, more than {DEEPEST_CALLS} deep"
+            raise Mistake("over-limit", statement.span, message, "write some of them as one")
         if work > MOST_WORK or self.work_in_all > MOST_WORK_IN_ALL:
             message = "the functions that are called here ask for more work than the engine does"
             raise Mistake("over-limit", statement.span, message, "give what is worked often a name of its own")

@@ -44,7 +44,7 @@ class _Words:
     def __init__(self, source: Source, first_line: int) -> None:
         self.source, self.first_line = source, first_line
         self.found: list[Finding] = []
-        self.lost: list[Span] = []
+        self.lost: list[Faulty] = []
         """Misplaced formula lines, in reading order."""
         self.places: dict[int, Places] = {}
         """Of each inline token that stands at top level, by its id."""
@@ -111,8 +111,10 @@ class _Words:
         end = span.start + len(self.source.line(self.line(token)).rstrip())
         place = Span(end - len(token.content.split("\n")[0].strip()), end)
         self.found.append(misplaced.nested_block(self.source, place, self.around))
-        if not self.around.in_quote:
-            self.lost.append(span)
+        if self.around.in_quote:
+            self.lost += misplaced.lost_in_quotation(token.content, self.source, self.line(token), place)
+        else:
+            self.lost += misplaced.lost_statements(self.source, span, place)
 
     def limit(self, token: Token) -> None:
         """The parser leaves out what lies deeper: that is said once."""
@@ -221,16 +223,11 @@ class _Blocks:
         self.prose = []
         starts, line = self.source.line_starts, self.first_line - 1 + before
         end = starts[line] if line < len(starts) else len(self.source.text) + 1
-        lost = []
-        while self.next_lost is not None and self.next_lost.start < end:
+        lost: list[Statement] = self.tables
+        self.tables = []
+        while self.next_lost is not None and self.next_lost.span.start < end:
             lost.append(self.next_lost)
             self.next_lost = next(self.lost, None)
-        self.end_lost(lost)
-
-    def end_lost(self, spans: list[Span]) -> None:
-        """Formula lines and tables that the prose above swallowed, so that what hangs on them can say why."""
-        lost = [*misplaced.lost_statements(self.source, spans), *self.tables]
-        self.tables = []
         if lost:
             lost.sort(key=lambda statement: statement.span)
             self.blocks.append(Formulas(tuple(lost), lost[0].span.join(lost[-1].span)))

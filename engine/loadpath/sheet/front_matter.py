@@ -9,13 +9,13 @@ from typing import Any
 from loadpath.findings import Finding, finding
 from loadpath.project import Refused, World
 from loadpath.sheet.characters import forbidden
-from loadpath.sheet.front_values import Values, nearest, twice
+from loadpath.sheet.front_values import Values, twice
 from loadpath.sheet.model import Assumption, FrontMatter, SourceEntry
 from loadpath.sheet.yaml_nodes import Entry, Scalar, Yaml, read_yaml
 from loadpath.text import Source, Span
 
 FENCE = "---"
-KEYS = tuple(f.name for f in fields(FrontMatter) if f.name != "unit_overrides")
+KEYS = tuple(f.name for f in fields(FrontMatter) if f.name not in ("unit_overrides", "unread"))
 
 _READERS: dict[str, Callable[[Values, Yaml], Any]] = {
     "format": Values.format,
@@ -46,10 +46,10 @@ def read_front_matter(source: Source, world: World) -> tuple[FrontMatter, int, t
         given.read(Source(path, text), Span(0, len(text)))
     span, body, missing = _find(source)
     given.found += missing
-    given.spoilt |= bool(missing)
+    given.unread.update(KEYS if missing else ())
     given.read(source, span)
     given.found += twice(given.sources.values(), given.assumptions.values())
-    if not given.values.get("title") and not given.spoilt:
+    if not given.values.get("title") and "title" not in given.unread:
         help = "write `title: ...` into the front matter"
         given.found.append(
             finding("missing-title", "the sheet has no title", source, source.line_span(1), help=help)
@@ -67,45 +67,51 @@ class _Given:
     system: str = "SI"
     kinds: dict[str, str] = field(default_factory=dict)
     found: list[Finding] = field(default_factory=list)
-    spoilt: bool = False
-    """True where a finding already says why the title may be missing."""
+    unread: set[str] = field(default_factory=set)
+    """Keys of which a finding already says why they may be missing."""
 
     def read(self, source: Source, span: Span) -> None:
         mapping, found = read_yaml(source, span)
         values = Values(source)
-        for entry in mapping.entries:
-            self.take(entry, values)
+        for entry in values.known(mapping.entries, KEYS, "of the front matter"):
+            before = len(values.found)
+            if not self.take(entry, values) and len(values.found) > before:
+                self.unread.add(entry.key.text)
         stopped = any(f.slug in ("front-matter-syntax", "yaml-alias", "over-limit") for f in found)
-        self.spoilt |= stopped
         # where reading stopped, the last entry is not what was meant
         last = mapping.entries[-1].key.span.start if stopped and mapping.entries else span.end
         self.found += [*found, *(f for f in values.found if f.span is None or f.span.start < last)]
+        if stopped:
+            self.unread |= set(KEYS) - {entry.key.text for entry in mapping.entries[:-1]}
 
-    def take(self, entry: Entry, values: Values) -> None:
+    def take(self, entry: Entry, values: Values) -> bool:
+        """Takes up one value; False where it gives nothing."""
         key, node = entry.key.text, entry.value
-        if not values.knows(entry.key, KEYS, "of the front matter"):
-            self.spoilt |= nearest(key, KEYS) == "title"
-            return
         if isinstance(node, Scalar) and node.nothing:
-            return
+            return False
         if key == "sources":
-            self.sources |= values.sources(node)
-        elif key == "assumptions":
-            self.assumptions |= values.assumptions(node)
-        elif key == "units":
-            self.take_units(values.units(node))
-        else:
-            value = _READERS.get(key, Values.text)(values, node)
-            if value is not None:
-                self.values[key] = value
-            self.spoilt |= key == "title" and value is None
+            sources = values.sources(node)
+            self.sources |= sources
+            return bool(sources)
+        if key == "assumptions":
+            assumptions = values.assumptions(node)
+            self.assumptions |= assumptions
+            return bool(assumptions)
+        if key == "units":
+            return self.take_units(values.units(node))
+        value = _READERS.get(key, Values.text)(values, node)
+        if value is not None:
+            self.values[key] = value
+        return bool(value)
 
-    def take_units(self, units: tuple[str, dict[str, str]] | None) -> None:
+    def take_units(self, units: tuple[str, dict[str, str]] | None) -> bool:
         """A named system begins anew; a mapping without one goes on the project's."""
-        if units is not None:
-            system, kinds = units
-            self.kinds = kinds if system else self.kinds | kinds
-            self.system = system or self.system
+        if units is None:
+            return False
+        system, kinds = units
+        self.kinds = kinds if system else self.kinds | kinds
+        self.system = system or self.system
+        return True
 
     def front_matter(self) -> FrontMatter:
         return replace(
@@ -114,6 +120,7 @@ class _Given:
             unit_overrides=tuple(self.kinds.items()),
             sources=tuple(self.sources.values()),
             assumptions=tuple(self.assumptions.values()),
+            unread=frozenset(self.unread),
         )
 
 
@@ -123,6 +130,7 @@ def _project_texts(source: Source, world: World, given: _Given) -> tuple[tuple[s
     except Refused as refused:
         message = f"the project's defaults cannot be read: {refused}"
         given.found.append(finding("unreadable-file", message, source, None))
+        given.unread.update(KEYS)
         return ()
     for path, text in texts:
         if match := forbidden(text):

@@ -6,6 +6,7 @@ import datetime
 import difflib
 import re
 from collections.abc import Callable, Iterable, Sequence
+from dataclasses import replace
 
 from loadpath.findings import Finding, Remark, finding
 from loadpath.sheet.model import Assumption, Confirmed, Revision, SourceEntry, Words
@@ -97,10 +98,22 @@ class Values:
     def entries(self, node: Yaml, what: str, form: str, keys: Sequence[str] = ()) -> tuple[Entry, ...]:
         """The entries of a mapping, those with an unknown key left out."""
         if isinstance(node, Mapping):
-            return tuple(entry for entry in node.entries if not keys or self.knows(entry.key, keys))
+            return self.known(node.entries, keys) if keys else node.entries
         if not (isinstance(node, Scalar) and node.nothing):
             self.wrong(f"`{_short(what)}` needs its parts as `key: value`", node.span, f"write {form}")
         return ()
+
+    def known(self, entries: Sequence[Entry], keys: Sequence[str], where: str = "here") -> tuple[Entry, ...]:
+        """Those with a known key; a misspelt one is taken for the key it is near to, where that is not given."""
+        given = {entry.key.text for entry in entries}
+        kept = []
+        for entry in entries:
+            if self.knows(entry.key, keys, where):
+                kept.append(entry)
+            elif (near := nearest(entry.key.text, keys)) and near not in given:
+                given.add(near)
+                kept.append(Entry(replace(entry.key, text=near), entry.value))
+        return tuple(kept)
 
     def knows(self, key: Scalar, keys: Sequence[str], where: str = "here") -> bool:
         if key.text in keys:
@@ -180,13 +193,13 @@ class Values:
 
     def not_applicable(self, node: Yaml) -> tuple[tuple[str, str], ...] | None:
         """Pairs of kind and reason."""
-        pairs = []
-        for entry in self.entries(node, "not_applicable", "`{stability: the reason}`"):
+        entries = self.entries(node, "not_applicable", "`{stability: the reason}`")
+        for entry in entries:
             if entry.key.text == "limit":
                 help = "leave it out: only strength, stiffness and stability need a criterion or a reason"
                 self.wrong("`limit` is asked of no sheet", entry.key.span, help)
-            elif self.knows(entry.key, CRITERION_KINDS):
-                pairs.append((entry.key.text, self.filled(entry.key, entry.value, "the reason")))
+        kinds = self.known([entry for entry in entries if entry.key.text != "limit"], CRITERION_KINDS)
+        pairs = [(entry.key.text, self.filled(entry.key, entry.value, "the reason")) for entry in kinds]
         return tuple((kind, reason) for kind, reason in pairs if reason)
 
     def revisions(self, node: Yaml) -> tuple[Revision, ...] | None:

@@ -7,14 +7,23 @@ and its criterion counts as not shown.
 from __future__ import annotations
 
 import re
-from collections.abc import Iterable, Iterator
-from dataclasses import dataclass
+from collections.abc import Iterator
+from dataclasses import dataclass, replace
 from itertools import groupby
 
 from loadpath.findings import Finding, finding
 from loadpath.formula.lines import indent_of
 from loadpath.formula.parser import is_statement, parse_block
-from loadpath.formula.statements import Criterion, CriterionKind, Faulty, Statement
+from loadpath.formula.statements import (
+    Choice,
+    Criterion,
+    CriterionKind,
+    Definition,
+    Faulty,
+    FunctionDefinition,
+    Note,
+    Statement,
+)
 from loadpath.sheet.places import Places
 from loadpath.text import Source, Span
 
@@ -49,15 +58,18 @@ class _Line:
 
 def in_paragraph(
     content: str, places: Places, source: Source, around: Surroundings
-) -> tuple[list[Finding], list[Span]]:
-    """Findings for the formula lines of a paragraph, one for each run, and the stretches of the lines."""
-    lines = list(_lines(content, places, source, around))
-    found = []
+) -> tuple[list[Finding], list[Faulty]]:
+    """Findings for the formula lines of a paragraph, one for each run, and what the lines would have been."""
+    found: list[Finding] = []
+    lost: list[Faulty] = []
     # lines that follow one another have one cause
-    for _, run in groupby(enumerate(lines), lambda pair: (pair[1].number - pair[0], pair[1].slug)):
+    lines = enumerate(_lines(content, places, source, around))
+    for _, run in groupby(lines, lambda pair: (pair[1].number - pair[0], pair[1].slug)):
         members = [line for _, line in run]
         found.append(_finding(members, source, around))
-    return found, [line.span for line in lines]
+        for line in members:
+            lost += lost_statements(source, line.span, members[0].span)
+    return found, lost
 
 
 def _lines(content: str, places: Places, source: Source, around: Surroundings) -> Iterator[_Line]:
@@ -134,15 +146,26 @@ def nested_block(source: Source, span: Span, around: Surroundings) -> Finding:
     return finding("nested-formula", message, source, span, help=help)
 
 
-def lost_statements(source: Source, spans: Iterable[Span]) -> tuple[Statement, ...]:
-    """What misplaced lines would have been, as far as they define a name or are a criterion."""
+def lost_statements(source: Source, span: Span, trouble: Span) -> list[Faulty]:
+    """What misplaced lines would have been; `trouble` is the place of their finding."""
+    statements, _ = parse_block(source, span)
+    return [replace(_faulty(s, source), trouble=trouble) for s in statements if _is_missed(s)]
+
+
+def lost_in_quotation(content: str, source: Source, first_line: int, trouble: Span) -> list[Faulty]:
+    """The same for a block whose lines begin with quotation marks; `content` is the block without them."""
+    typed = Source("", content)
     lost = []
-    for span in spans:
-        for statement in parse_block(source, span)[0]:
-            faulty = _faulty(statement, source)
-            if faulty.names or faulty.criterion:
-                lost.append(faulty)
-    return tuple(lost)
+    for faulty in lost_statements(typed, Span(0, len(content)), trouble):
+        span = source.line_span(first_line + typed.line_number(faulty.span.start) - 1)
+        notes = tuple(Note(n.text, tuple((key, trouble) for key, _ in n.citations), trouble) for n in faulty.notes)
+        lost.append(replace(faulty, span=span, notes=notes))
+    return lost
+
+
+def _is_missed(statement: Statement) -> bool:
+    """False for a line that could not be read and defines nothing: mere text, mostly."""
+    return not isinstance(statement, Faulty) or bool(statement.names or statement.criterion)
 
 
 def _faulty(statement: Statement, source: Source) -> Faulty:
@@ -152,6 +175,6 @@ def _faulty(statement: Statement, source: Source) -> Faulty:
     names: tuple[str, ...] = ()
     if isinstance(statement, Criterion):
         criterion = (statement.kind, statement.name)
-    elif name := getattr(statement, "name", ""):
-        names = (name,)
+    elif isinstance(statement, Definition | Choice | FunctionDefinition):
+        names = (statement.name,)
     return Faulty(statement.span, statement.notes, source.cut(statement.span), names, criterion)

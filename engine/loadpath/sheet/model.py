@@ -121,6 +121,8 @@ class FrontMatter:
     page: str = "A4"
     sources: tuple[SourceEntry, ...] = ()
     assumptions: tuple[Assumption, ...] = ()
+    unread: frozenset[str] = field(default=frozenset(), compare=False)
+    """Keys that may have been given, but could not be read (a finding says why): nothing can be said of them."""
 
 
 # --- blocks -----------------------------------------------------------------------------------------------------

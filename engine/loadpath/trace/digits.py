@@ -9,7 +9,7 @@ from loadpath.formula.statements import Criterion
 from loadpath.formula.tree import Logic, Name, Negative, Node, Number, Quantity, Relation
 from loadpath.trace.model import Step, Verdict
 from loadpath.units import Unit
-from loadpath.units.printing import MOST_DIGITS, plain, read_plain
+from loadpath.units.printing import MOST_DIGITS, plain, read_plain, typeset
 
 RATIO_PLACES = 3
 """Decimals of a utilisation, before they grow."""
@@ -32,9 +32,13 @@ def digits_of_verdict(step: Step, base: int) -> tuple[int, list[str]]:
 
 
 def order_digits(values: Sequence[float], base: int) -> int:
-    """The fewest digits, `base` or more, with which printed numbers stand to their neighbours as the numbers do."""
-    close = [(a, b) for a, b in pairwise(values) if abs(a - b) <= 10.0 ** (2 - base) * max(abs(a), abs(b))]
-    for digits in range(base, MOST_DIGITS):
+    """The fewest digits, `base` or more, with which printed numbers stand to their neighbours as the numbers do.
+
+    Fewer than `base` where so many would part values that count as equal.
+    """
+    within = max(10.0 ** (2 - base), EQUAL)
+    close = [(a, b) for a, b in pairwise(values) if abs(a - b) <= within * max(abs(a), abs(b))]
+    for digits in (*range(base, MOST_DIGITS + 1), *range(base - 1, 1, -1)):
         if all(in_order(a, b, plain(a, digits), plain(b, digits)) for a, b in close):
             return digits
     return MOST_DIGITS
@@ -58,7 +62,7 @@ def ratio_text(verdict: Verdict) -> str:
     for places in range(RATIO_PLACES, MOST_DIGITS):
         text = f"{ratio:.{places}f}"
         if (float(text) < 1) == (ratio < 1) and float(text) != 1:
-            return text if ratio < 1000 else plain(ratio, 4)
+            return text if ratio < 1000 else typeset(plain(ratio, 4))
     return repr(ratio)
 
 

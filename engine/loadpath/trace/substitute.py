@@ -30,8 +30,9 @@ from loadpath.resolve.dimensions import typed_exponent
 from loadpath.trace.digits import exact_digits
 from loadpath.trace.model import Called, Operand
 from loadpath.units import Unit, parse_unit
+from loadpath.units.dimension import LENGTH, MASS, PLAIN, TEMPERATURE, TIME, Dimension
 from loadpath.units.printing import plain
-from loadpath.units.unit import PREFIXED, PREFIXES
+from loadpath.units.unit import PREFIXED, PREFIXES, STEP_OF_DEGF
 
 FACTOR_DIGITS = 6
 """Significant digits of a conversion factor that no fewer digits hold exactly."""
@@ -93,13 +94,17 @@ def _number_of(value: Operand, unit: Unit, more: int) -> Shown:
 # --- conversion factors -----------------------------------------------------------------------------------------
 
 
+Atoms = tuple[tuple[str, Fraction], ...]
+_BASES, _BASE_UNITS = (LENGTH, MASS, TIME, TEMPERATURE), ("m", "kg", "s", "K")
+
+
 @dataclass(frozen=True, slots=True)
 class Scale:
     """What the printed numbers of an expression count in."""
 
     size: float
     """SI value of one."""
-    atoms: tuple[tuple[str, Fraction], ...] = ()
+    atoms: Atoms = ()
     absolute: str = ""
     """`degC` or `degF` where the number is a reading of that scale."""
 
@@ -141,17 +146,14 @@ def _scaled(node: Node, want: Scale | None = None) -> tuple[Node, Scale]:
         case Negative(operand=operand):
             inner, scale = _scaled(operand, want)
             return replace(node, operand=inner), scale
-        case Binary(operator="+" | "-", left=left, right=right):
-            (a, b), scale = _alike((left, right), want)
-            if node.operator == "-" and scale.absolute and _is_absolute(right):
-                scale = _step_scale(scale)
-            return replace(node, left=a, right=b), scale
+        case Binary(operator="+" | "-"):
+            return _scaled_sum(node, want)
         case Binary(operator="*" | "/", left=left, right=right):
             a, first = _scaled(left)
             b, second = _scaled(right)
             return replace(node, left=a, right=b), first.times(second, 1 if node.operator == "*" else -1)
-        case Binary(left=left, right=right):
-            return _scaled_power(node, left, right)
+        case Binary():
+            return _scaled_power(node, want)
         case Call():
             return _scaled_call(node, want)
         case Bracket(inner=inner, power=power):
@@ -160,13 +162,27 @@ def _scaled(node: Node, want: Scale | None = None) -> tuple[Node, Scale]:
     return node, PLAIN_SCALE
 
 
-def _scaled_power(node: Binary, left: Node, right: Node) -> tuple[Node, Scale]:
-    base, scale = _scaled(left)
-    raised, of = _scaled(right)
+def _scaled_sum(node: Binary, want: Scale | None) -> tuple[Node, Scale]:
+    (a, first), (b, second) = _scaled(node.left, want), _scaled(node.right, want)
+    if not first.absolute and not second.absolute:
+        (a, b), scale = _alike([(a, first), (b, second)], want)
+        return replace(node, left=a, right=b), scale
+    if node.operator == "-" and second.absolute:
+        return replace(node, left=a, right=_converted(b, second, first)), _steps_of(first)
+    reading = first if first.absolute else second
+    a, b = (n if s.absolute else _converted(n, s, _steps_of(reading)) for n, s in ((a, first), (b, second)))
+    return replace(node, left=a, right=b), reading
+
+
+def _scaled_power(node: Binary, want: Scale | None) -> tuple[Node, Scale]:
+    base, scale = _scaled(node.left)
+    raised, of = _scaled(node.right)
     raised = _converted(raised, of, PLAIN_SCALE)
     exponent = typed_exponent(node.right)
     if exponent is None:
         return replace(node, left=_converted(base, scale, PLAIN_SCALE), right=raised), PLAIN_SCALE
+    if exponent.denominator > 1:
+        base, scale = _under_root(base, scale, exponent, want)
     return replace(node, left=base, right=raised), scale.power(exponent)
 
 
@@ -175,66 +191,93 @@ def _scaled_call(node: Call, want: Scale | None) -> tuple[Node, Scale]:
     if function is None:
         return node, PLAIN_SCALE
     if function.rule == "root":
-        inner, scale = _scaled(node.arguments[0])
-        return replace(node, arguments=(inner,)), scale.power(Fraction(1, function.root))
+        exponent = Fraction(1, function.root)
+        inner, scale = _under_root(*_scaled(node.arguments[0]), exponent, want)
+        return replace(node, arguments=(inner,)), scale.power(exponent)
     if function.rule == "plain":
         inner, scale = _scaled(node.arguments[0])
         in_degrees = function.angle and scale.atoms == (("deg", Fraction(1)),)
         if not in_degrees:
             inner = _converted(inner, scale, PLAIN_SCALE)
         return replace(node, arguments=(inner,)), PLAIN_SCALE
-    arguments, scale = _alike(node.arguments, want)
+    arguments, scale = _alike([_scaled(a, want) for a in node.arguments], want)
     return replace(node, arguments=arguments), PLAIN_SCALE if function.rule == "like-first" else scale
 
 
-def _alike(nodes: tuple[Node, ...], want: Scale | None) -> tuple[tuple[Node, ...], Scale]:
+def _alike(scaled: list[tuple[Node, Scale]], want: Scale | None) -> tuple[tuple[Node, ...], Scale]:
     """Several operands brought to one scale: that of the result where given, else that of the first with a unit."""
-    scaled = [_scaled(node, want) for node in nodes]
-    if want is None or not any(_same_dimension(s, want) for _, s in scaled):
+    if want is None or any(s.absolute for _, s in scaled) or not any(_same_dimension(s, want) for _, s in scaled):
         want = next((s for n, s in scaled if s.atoms), scaled[0][1])
-    return tuple(_converted(n, s, want) if not _is_zero(n) else n for n, s in scaled), replace(want, absolute=scaled[0][1].absolute)
+    return tuple(_converted(n, s, want) if not _is_zero(n) else n for n, s in scaled), want
+
+
+def _under_root(node: Node, scale: Scale, exponent: Fraction, want: Scale | None) -> tuple[Node, Scale]:
+    """The node in units of which the root can be taken, so that no root of a factor is left outside."""
+    dimension = _dimension(scale.atoms)
+    if want and _dimension(want.atoms) == dimension.power(exponent) and _names(want) <= _names(scale):
+        target = want.power(1 / exponent)
+    else:
+        atoms = _one_of_each_kind(scale.atoms, dimension)
+        target = Scale(_size(atoms), atoms)
+    return _converted(node, scale, target), target
+
+
+def _names(scale: Scale) -> set[str]:
+    return {name for name, _ in scale.atoms}
+
+
+def _one_of_each_kind(atoms: Atoms, dimension: Dimension) -> Atoms:
+    """Units for a dimension out of those given: a power of one where that is enough, else one unit for each kind in them."""
+    atoms = _taken_apart(atoms, lambda name: parse_unit(_MADE_OF[name]).atoms if name in _MADE_OF else None)
+    ordered = sorted(atoms, key=lambda atom: -abs(atom[1]))
+    of_kind = {_dimension(((name, Fraction(1)),)): name for name, _ in reversed(ordered)}
+    of_kind = dict(zip(_BASES, _BASE_UNITS, strict=True)) | of_kind
+    for base, power in zip(_BASES, dimension, strict=True):
+        if dimension == base.power(power):
+            return ((of_kind[base], power),) if power else ()
+    return _merge((), tuple((of_kind[_dimension(((name, Fraction(1)),))], power) for name, power in atoms))
 
 
 def _same_dimension(a: Scale, b: Scale) -> bool:
-    def total(scale: Scale) -> Unit:
-        text = _unit_text(scale.atoms)
-        return parse_unit(text) if text else parse_unit("")
+    return _dimension(a.atoms) == _dimension(b.atoms)
 
-    return total(a).dimension == total(b).dimension
+
+def _dimension(atoms: Atoms) -> Dimension:
+    return parse_unit(_unit_text(atoms)).dimension if atoms else PLAIN
 
 
 def _is_zero(node: Node) -> bool:
     return getattr(node, "text", getattr(node, "number", "")) == "0"
 
 
-def _is_absolute(node: Node) -> bool:
-    unit = node.unit if isinstance(node, Shown) else node.parts[-1].unit if isinstance(node, Quantity) else ""
-    return unit in ("degC", "degF")
-
-
-def _step_scale(scale: Scale) -> Scale:
-    return Scale(scale.size, (("K", Fraction(1)),) if scale.absolute == "degC" else (("delta_degF", Fraction(1)),))
+def _steps_of(reading: Scale) -> Scale:
+    """The scale of differences of a temperature that is read in degC or degF."""
+    return Scale(reading.size, (("K" if reading.absolute == "degC" else STEP_OF_DEGF, Fraction(1)),))
 
 
 def _converted(node: Node, have: Scale, want: Scale) -> Node:
     """The node with the factor from one scale to the other, where it is no power of ten."""
-    if have.absolute and not want.absolute and want.atoms == (("K", Fraction(1)),):
-        return _to_kelvins(node, have)
+    if have.absolute and have.absolute != want.absolute:
+        return _read_as(node, have, want)
     ratio = have.size / want.size
     if _is_power_of_ten(ratio):
         return node
     label = _best_label(_merge(want.atoms, tuple((n, -p) for n, p in have.atoms)))
     ratio = 1 / _size(label) if label else ratio
-    divided = ratio < 1 and abs(1 / ratio - round(1 / ratio)) < 1e-9 * (1 / ratio)
+    divided = not _is_short(ratio) and _is_short(1 / ratio)
     if divided:
         ratio, label = 1 / ratio, tuple((n, -p) for n, p in label)
     return Factor(node, _short(ratio), _unit_text(label), divided)
 
 
-def _to_kelvins(node: Node, have: Scale) -> Node:
-    if have.absolute == "degC":
-        return Binary("+", node, Shown("273.15", "K"))
-    return Factor(Binary("+", node, Shown("459.67", "delta_degF")), "0.555556", "K/degF")
+def _read_as(node: Node, have: Scale, want: Scale) -> Node:
+    """A temperature read in degC or degF, on the other scale or in kelvins."""
+    if want.absolute == "degF":
+        return Binary("+", Factor(node, "1.8", "degF/degC"), Shown("32", STEP_OF_DEGF))
+    if want.absolute == "degC":
+        return Factor(Binary("-", node, Shown("32", STEP_OF_DEGF)), "1.8", "degF/degC", divided=True)
+    above_zero = Shown("273.15", "K") if have.absolute == "degC" else Shown("459.67", STEP_OF_DEGF)
+    return _converted(Binary("+", node, above_zero), _steps_of(have), want)
 
 
 def _is_power_of_ten(ratio: float) -> bool:
@@ -243,12 +286,16 @@ def _is_power_of_ten(ratio: float) -> bool:
     return abs(sixths - round(sixths)) < 1e-8
 
 
-def _short(value: float) -> str:
+def _is_short(factor: float) -> bool:
+    """True where a few digits hold a factor exactly."""
+    return exact_digits(factor, FACTOR_DIGITS + 1) <= FACTOR_DIGITS
+
+
+def _short(factor: float) -> str:
     """A factor: exact where a few digits hold it, else to so many."""
-    return plain(value, min(exact_digits(value, FACTOR_DIGITS), FACTOR_DIGITS))
+    return plain(factor, min(exact_digits(factor, FACTOR_DIGITS), FACTOR_DIGITS))
 
 
-Atoms = tuple[tuple[str, Fraction], ...]
 _MADE_OF = {
     "psi": "lbf/in^2", "ksi": "kip/in^2", "psf": "lbf/ft^2", "ksf": "kip/ft^2", "plf": "lbf/ft", "klf": "kip/ft",
     "pcf": "lbf/ft^3", "kcf": "kip/ft^3",
@@ -257,9 +304,10 @@ _MADE_OF = {
 
 def _best_label(atoms: Atoms) -> Atoms:
     """The plainest way to write the units of a factor: whole powers, no two multiples of one unit, few units."""
+    atoms = _merge((), tuple(("degF" if name == STEP_OF_DEGF else name, power) for name, power in atoms))
     apart = _taken_apart(atoms, lambda name: parse_unit(_MADE_OF[name]).atoms if name in _MADE_OF else None)
     reduced = _taken_apart(atoms, _base_of_decimal)
-    return min((atoms, apart, reduced), key=_awkwardness)
+    return min((apart, atoms, reduced), key=_awkwardness)
 
 
 def _awkwardness(atoms: Atoms) -> tuple[bool, bool, Fraction]:

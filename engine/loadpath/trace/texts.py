@@ -163,11 +163,16 @@ def _compared(trace: Trace, working: Working, relation: Relation, values: tuple[
 def _sides(relation: Relation, numbers: list[float | str], unit: Unit, base: int, scope: Scope) -> tuple[Shown, ...]:
     """Each side as one number, to as many digits as it takes to stand in the order found."""
     values = [n for n in numbers if isinstance(n, float)]
-    for digits in range(order_digits(values, base), MOST_DIGITS + 1):
+    fewest = order_digits(values, base)
+    for digits in range(fewest, MOST_DIGITS + 1):
         sides = tuple(_side(o, n, unit, digits, scope) for o, n in zip(relation.operands, numbers, strict=True))
         if all(in_order(a, b, s.number, t.number) for (a, b), (s, t) in zip(pairwise(values), pairwise(sides), strict=False)):
-            break
-    return sides
+            return sides
+    return tuple(_rounded(value, unit, fewest) for value in values)
+
+
+def _rounded(value: float, unit: Unit, digits: int) -> Shown:
+    return Shown(plain(value, digits), "in" if unit.text.startswith("ft-in") else unit.text)
 
 
 def _side(node: Node, number: float | str, unit: Unit, digits: int, scope: Scope) -> Shown:
@@ -182,7 +187,7 @@ def _side(node: Node, number: float | str, unit: Unit, digits: int, scope: Scope
         return Shown("0", unit.text)
     if not holds_names(node):
         digits = exact_digits(number, digits)
-    return Shown(plain(number, digits), "in" if unit.text.startswith("ft-in") else unit.text)
+    return _rounded(number, unit, digits)
 
 
 def _per_length(relation: Relation, numbers: list[float | str], unit: Unit, scope: Scope) -> tuple[int, Name, str] | None:

@@ -2,7 +2,8 @@
 
 A formula is cut before relations, `+` and `−` at its top level. What is still too wide is cut before `×`
 and `/` too; then its widest fraction is set on the line, its widest brackets or root may be broken inside,
-and at last a name or a number is broken. So nothing is wider than asked for, whatever was typed.
+and at last a name or a number is broken. So nothing is wider than asked for, whatever was typed, down to the
+widths of a small screen.
 """
 
 from __future__ import annotations
@@ -94,15 +95,15 @@ def _cut(run: _Run, before: tuple[str, ...]) -> list[_Run]:
 
 def _fit(run: _Run, most: float) -> list[_Run]:
     if _measure(run) <= most:
-        return [run]
-    for before in (_TOP, _ANY):
+        return [[(box, size) for box, size in run if not isinstance(box, Break)]]
+    for before in ((), _TOP, _ANY):
         shorter = _cut(run, before)
         if len(shorter) > 1:
             return [fitting for piece in shorter for fitting in _fit(piece, most)]
     for index in sorted(range(len(run)), key=lambda i: -run[i][1]):
         if opened := _opened(run[index][0]):
             return _fit([*run[:index], *_sized(opened), *run[index + 1 :]], most)
-    return [run]
+    return shorter
 
 
 # --- opening ------------------------------------------------------------------------------------------------
@@ -127,11 +128,10 @@ def _opened(box: Box) -> Boxes:
 
 def _opened_power(base: Box, exponent: Box) -> Boxes:
     """Brackets keep the exponent behind them; an exponent that is itself too wide comes down to the line."""
-    if isinstance(base, Operator):
-        return ()
-    fence = base if isinstance(base, Fence) else Fence("(", base, ")")
     if width(base) >= width(exponent):
-        *opened, closing = _opened(fence)
+        if isinstance(base, Operator):
+            return ()
+        *opened, closing = _opened(base if isinstance(base, Fence) else Fence("(", base, ")"))
         return *opened, Power(closing, exponent)
     return *parts(base), Operator("^", "raise"), *_opened(Fence("(", exponent, ")"))
 
@@ -177,7 +177,7 @@ def _broken(box: Box) -> Boxes:
             return _with_breaks(Words(group) for group in _groups(number))
         case Amount(parts=((number, unit),)):
             if number:
-                return Figure(number), Break(), Amount((("", unit),))
+                return Figure(number), Words(THIN), Break(), Amount((("", unit),))
             chunks = _chunks(unit_symbol(unit))
             return _with_breaks(Words(chunk) for chunk in chunks) if len(chunks) > 1 else ()
         case Amount(parts=pairs) if len(pairs) > 1:

@@ -35,7 +35,8 @@ from loadpath.render.math.breaking import Boxes, lines
 from loadpath.render.math.layout import RELATIONS, lay_out
 from loadpath.render.math.texts import MIXED, mantissa_and_exponent, printable
 from loadpath.render.math.width import PAGE, width
-from loadpath.units.printing import MINUS, grouped, unit_symbol
+from loadpath.units.printing import MINUS, NARROW, grouped, unit_symbol
+from loadpath.units.printing import THIN as THIN_SPACE
 
 THIN = r"\thinspace "
 
@@ -185,7 +186,7 @@ def _figure(number: str) -> str:
     if mixed := MIXED.fullmatch(mantissa):
         minus, whole, over, under = mixed.groups("")
         return rf"{minus}{whole}\tfrac{{{over}}}{{{under}}}"
-    text = grouped(mantissa).replace(MINUS, "-").replace("\u2009", THIN)
+    text = grouped(mantissa).replace(MINUS, "-").replace(THIN_SPACE, THIN)
     return text + (rf" \times 10^{{{exponent}}}" if exponent is not None else "")
 
 
@@ -216,6 +217,8 @@ def _text(text: str) -> str:
 
 
 def _harmless(character: str) -> str:
+    if character in (THIN_SPACE, NARROW):
+        return " "
     if not character.isascii() or character.isalnum() or character in _HARMLESS:
         return character
     return _TWINS.get(character) or chr(ord(character) + 0xFEE0)
