@@ -12,7 +12,7 @@ from pathlib import Path
 from loadpath import __version__
 from loadpath.findings import finding
 from loadpath.project import SHEET_ENDING, MemoryWorld, write_atomically
-from loadpath.sheet import Sheet, read_sheet, read_sheet_file
+from loadpath.sheet import FrontMatter, Sheet, read_sheet, read_sheet_file
 from loadpath.text import Source
 from loadpath.trace import Trace
 
@@ -114,7 +114,7 @@ def stem_of(path: str) -> str:
 
 def issue(path: str, out: Path, formats: Iterable[str] = FORMATS, text: str | None = None) -> Issued:
     """Reads, works and writes one sheet; a sheet with errors still gives its documents. Raises OSError where it can't write."""
-    trace = safely(audited, read_input(path, text))
+    trace = safely(path, text)
     written = []
     for name, data in render(trace, stem_of(path), formats).items():
         target = out / name
@@ -124,15 +124,14 @@ def issue(path: str, out: Path, formats: Iterable[str] = FORMATS, text: str | No
     return Issued(path, trace, tuple(written))
 
 
-def safely(work: Callable[[Sheet], Trace], sheet: Sheet) -> Trace:
-    """The trace, or, where the engine itself fails, one without steps that says so: a fault is never silent."""
+def safely(path: str, text: str | None = None) -> Trace:
+    """The audited trace of a sheet. Where the engine itself fails it has no steps and says so: a fault is never silent."""
     try:
-        return work(sheet)
+        return audited(read_input(path, text))
     except Exception as fault:
-        from dataclasses import replace
-
         said = finding(
-            "engine-fault", f"a fault of the engine, not of the sheet: {type(fault).__name__}: {fault}", sheet.source, None,
+            "engine-fault", f"a fault of the engine, not of the sheet: {type(fault).__name__}: {fault}", Source(path, ""), None,
             help="report it with this sheet; nothing on it is shown",
         )  # fmt: skip
-        return evaluate(replace(sheet, blocks=(), findings=(*sheet.findings, said)))
+        front = FrontMatter(title=stem_of(path))
+        return evaluate(Sheet(Source(path, ""), front, (), (said,)))

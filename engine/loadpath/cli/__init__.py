@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import gc
 from typing import Any
 
 import click
@@ -40,3 +41,5 @@ def main() -> None:
 
     Exit codes: 0 done, 1 a sheet has errors, 2 wrong use, 3 a criterion is not satisfied or not shown.
     """
+    # a run makes many small records and ends soon: looking for circles among them would only cost time
+    gc.set_threshold(200_000, 20, 20)

@@ -17,11 +17,11 @@ def audit(sheets: tuple[str, ...], form: str) -> None:
 
     Text goes to standard error, one finding as `file:line:column: severity: message [slug]`; JSON to standard output.
     """
-    from loadpath.pipeline import audited, exit_code, read_input, safely
+    from loadpath.pipeline import exit_code, safely
 
     paths = sheet_paths(sheets)
     text = standard_input() if "-" in paths else None
-    traces = [safely(audited, read_input(path, text if path == "-" else None)) for path in paths]
+    traces = [safely(path, text if path == "-" else None) for path in paths]
     found = [f for trace in traces for f in trace.findings]
     if form == "json":
         click.echo(as_json(found))

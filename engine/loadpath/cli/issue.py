@@ -3,9 +3,11 @@
 from __future__ import annotations
 
 import sys
+from collections.abc import Iterable
 from concurrent.futures import ProcessPoolExecutor
 from dataclasses import dataclass
 from pathlib import Path
+from typing import TypeVar
 
 import click
 
@@ -78,7 +80,8 @@ def _targets(paths: list[str], sheets: tuple[str, ...], out: str) -> list[str]:
     from loadpath.pipeline import stem_of
 
     roots = [Path(name) for name in sheets if Path(name).is_dir()]
-    targets, taken = [], {}
+    targets: list[str] = []
+    taken: dict[Path, str] = {}
     for path in paths:
         root = next((r for r in roots if path != "-" and Path(path).is_relative_to(r)), None)
         target = Path(out) / Path(path).parent.relative_to(root) if root else Path(out)
@@ -91,21 +94,28 @@ def _targets(paths: list[str], sheets: tuple[str, ...], out: str) -> list[str]:
 
 
 def _run(paths: list[str], targets: list[str], formats: tuple[str, ...], jobs: int, text: str | None) -> list[_Outcome]:
+    def given(path: str) -> str | None:
+        return text if path == "-" else None
+
     try:
         if jobs == 1 or len(paths) == 1:
-            return [_work(p, t, formats, text if p == "-" else None) for p, t in _with_progress(paths, targets)]
+            pairs = _with_progress(list(zip(paths, targets, strict=True)))
+            return [_work(path, target, formats, given(path)) for path, target in pairs]
         with ProcessPoolExecutor(min(jobs, len(paths))) as pool:
-            waiting = [pool.submit(_work, p, t, formats, text if p == "-" else None) for p, t in zip(paths, targets, strict=True)]
-            return [future.result() for future, _ in _with_progress(waiting, targets)]
+            waiting = [pool.submit(_work, p, t, formats, given(p)) for p, t in zip(paths, targets, strict=True)]
+            return [future.result() for future in _with_progress(waiting)]
     except OSError as error:
         raise click.ClickException(f"cannot write: {error}") from None
 
 
-def _with_progress(items, targets):  # type: ignore[no-untyped-def]
-    pairs = zip(items, targets, strict=True)
-    if len(targets) < LONG or not sys.stderr.isatty():
-        return pairs
+Item = TypeVar("Item")
+
+
+def _with_progress(items: list[Item]) -> Iterable[Item]:
+    """The same items; on a terminal, where there are many, with a bar that follows them."""
+    if len(items) < LONG or not sys.stderr.isatty():
+        return items
     from rich.console import Console
     from rich.progress import track
 
-    return track(list(pairs), description="issuing", console=Console(stderr=True), transient=True)
+    return track(items, description="issuing", console=Console(stderr=True), transient=True)

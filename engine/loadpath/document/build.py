@@ -278,7 +278,7 @@ def _conclusion(criteria: tuple[Step, ...]) -> tuple[tuple[str, bool], ...]:
     if sided:
         phrases.append((f"{sided} satisfied on one side only" if phrases else f"{sided} {of} satisfied on one side only", True))
     if not phrases:
-        phrases.append((f"{total} {of} satisfied" if total > 1 else "the one criterion is satisfied", not conditional))
+        phrases.append((f"{total} {of} satisfied" if total > 1 else "The one criterion is satisfied", not conditional))
     if conditional:
         phrases.append((f"{conditional} conditional", True))
     return tuple(phrases)

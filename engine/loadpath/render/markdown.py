@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import re
+from collections.abc import Callable
 from functools import lru_cache
 from typing import Any
 
@@ -35,7 +36,7 @@ def render(document: Document, stem: str) -> tuple[str, dict[str, bytes]]:
 
 @lru_cache(maxsize=1)
 def _environment() -> Any:
-    filters = {
+    filters: dict[str, Callable[..., Any]] = {
         "latex": lambda node: Markup(latex(node)),
         "inline": _inline_math,
         "shown": _shown,

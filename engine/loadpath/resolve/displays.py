@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Iterable
 from dataclasses import replace
 
 from loadpath.findings import Remark
@@ -78,19 +79,27 @@ class Displays:
         return tuple(self.common_unit(relation) for relation in relations_in(statement))
 
     def common_unit(self, relation: Relation) -> Unit:
-        """That of the first side that is a name, else of the first name in it, that has the right dimension."""
+        """That of a side that is a name, else that of a typed quantity, else the system's.
+
+        Where the system has no unit of its own for the kind, the first name in the relation that is of it decides.
+        """
         types = [self.checker.type_of(o) for o in relation.operands if not isinstance(o, Word)]
         found = next((t for t in types if not t.zero and not t.unknown), None)
         if found is None or found.words is not None:
             return ONE
-        alone = [o for o in relation.operands if isinstance(o, Name)]
-        for name in (*alone, *(n for n in walk(relation) if isinstance(n, Name))):
+        alone = self._unit_of_names((o for o in relation.operands if isinstance(o, Name)), found)
+        typed = next((t for o in relation.operands if (t := typed_unit(o, found)) is not None), None)
+        if alone or typed or self.checker.system.knows(found.dimension):
+            return alone or typed or self._fitting(found)
+        return self._unit_of_names((n for n in walk(relation) if isinstance(n, Name)), found) or self._fitting(found)
+
+    def _unit_of_names(self, names: Iterable[Name], found: Type) -> Unit | None:
+        for name in names:
             if name.name in self.names.by_name:
                 unit = self.entries[self.names.by_name[name.name]].unit
                 if unit.dimension == found.dimension and unit.absolute == found.absolute:
                     return unit
-        typed = next((t for o in relation.operands if (t := typed_unit(o, found)) is not None), None)
-        return typed or self._fitting(found)
+        return None
 
     def of_check(self, statement: Check) -> Shown:
         """Of the two sides of a cross-check; its tolerance is of their dimension, or a share."""

@@ -339,7 +339,7 @@ def _base_of_decimal(name: str) -> Atoms | None:
 
 
 def _size(atoms: Atoms) -> float:
-    return math.prod(parse_unit(name).size ** float(power) for name, power in atoms)
+    return float(math.prod(parse_unit(name).size ** float(power) for name, power in atoms))
 
 
 def _merge(a: Atoms, b: Atoms) -> Atoms:

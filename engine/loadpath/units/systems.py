@@ -69,6 +69,10 @@ class UnitSystem:
     name: str = "SI"
     overrides: tuple[tuple[str, str], ...] = ()
 
+    def knows(self, dimension: Dimension) -> bool:
+        """True for a kind that the system has a unit of its own for; others are shown in products of its units."""
+        return dimension.is_plain or dimension in SYSTEMS[self.name]
+
     def unit_for(self, dimension: Dimension, absolute: bool = False, bar: bool = False) -> Unit:
         """The unit for results of a dimension; `bar` says that the value comes from something typed in bar.
 

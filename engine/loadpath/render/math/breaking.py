@@ -128,9 +128,9 @@ def _opened(box: Box) -> Boxes:
 
 def _opened_power(base: Box, exponent: Box) -> Boxes:
     """Brackets keep the exponent behind them; an exponent that is itself too wide comes down to the line."""
-    if width(base) >= width(exponent):
-        if isinstance(base, Operator):
-            return ()
+    if isinstance(base, Operator) and isinstance(exponent, Figure | Variable):
+        return ()
+    if width(base) >= width(exponent) and not isinstance(base, Operator):
         *opened, closing = _opened(base if isinstance(base, Fence) else Fence("(", base, ")"))
         return *opened, Power(closing, exponent)
     return *parts(base), Operator("^", "raise"), *_opened(Fence("(", exponent, ")"))

@@ -1,0 +1,486 @@
+"""The grammar on one page against the parser by hand: both take the same lines and refuse the same.
+
+source: the grammar file beside the parser, made a second parser by Lark, a general library.
+"""
+
+from __future__ import annotations
+
+import re
+from functools import cache
+from importlib.resources import files
+from pathlib import Path
+
+import lark
+import pytest
+from hypothesis import HealthCheck, assume, given, settings
+from hypothesis import strategies as st
+from hypothesis.extra.lark import from_lark
+
+import loadpath
+from loadpath.formula.names import RESERVED
+from loadpath.formula.parser import parse_block
+from loadpath.formula.statements import Definition, Faulty, FunctionDefinition, Statement
+from loadpath.formula.tree import As, Quantity, walk
+from loadpath.functions import NAMES as FUNCTION_NAMES
+from loadpath.resolve import expressions
+from loadpath.sheet.model import Formulas
+from loadpath.text import Source, Span
+from loadpath.units import BadUnit, parse_unit
+
+GRAMMAR = (files("loadpath.formula") / "grammar.lark").read_text("utf-8")
+ROOT = Path(__file__).parents[2]
+FOLDERS = ("tests/published", "calcsheets", "templates/sheets")
+SHEETS = sorted(path for folder in FOLDERS for path in (ROOT / folder).glob("*.sheet.md"))
+
+
+@cache
+def grammar() -> lark.Lark:
+    return lark.Lark(GRAMMAR, parser="lalr", lexer="basic")
+
+
+# --- the two parsers --------------------------------------------------------------------------------------------
+
+
+def laid_out(typed: str) -> str:
+    """A statement's lines put together as the grammar's comment says; a note stays where its line ends."""
+    lines = [line for line in typed.replace("\t", "    ").split("\n") if line.strip()]
+    split = [re.split(r"(?<=\s)--(?=\s|$)", line, maxsplit=1) for line in lines]
+    head, *deeper = [(len(body) - len(body.lstrip()), body.strip(), note) for body, *note in split]
+    if not re.search(r"\bcases$", head[1]):
+        whole = " ".join(body for _, body, _ in (head, *deeper))
+        return whole + "".join(f" --{text}" for text in head[2])
+    rows = [head]
+    level = min(indent for indent, _, _ in deeper) if deeper else 0
+    for indent, body, note in deeper:
+        if indent > level and len(rows) > 1:
+            rows[-1] = (indent, f"{rows[-1][1]} {body}", rows[-1][2])
+        else:
+            level = indent
+            rows.append((indent, body, note))
+    return "\n".join(body + "".join(f" --{text}" for text in note) for _, body, note in rows)
+
+
+def by_grammar(typed: str) -> bool:
+    try:
+        grammar().parse(laid_out(typed))
+    except lark.exceptions.LarkError:
+        return False
+    return True
+
+
+ELSEWHERE = ("over-limit", "defined-twice")
+"""Mistakes that the grammar leaves to others, as its comment says."""
+
+
+def by_hand(typed: str) -> bool | None:
+    """None where what is wrong is none of the grammar's business."""
+    text = "\n".join("    " + line for line in typed.split("\n"))
+    statements, findings = parse_block(Source("", text), Span(0, len(text)))
+    if len(statements) != 1:
+        return None
+    if findings:
+        named_like_a_function = findings[0].slug == "reserved-word" and "function" in findings[0].message
+        built_in = re.match(r"\s*\w+", typed)
+        at_a_function = built_in is not None and built_in.group().strip() in FUNCTION_NAMES
+        return None if findings[0].slug in ELSEWHERE or named_like_a_function or at_a_function else False
+    assert not isinstance(statements[0], Faulty)
+    return all(is_well_formed(unit) for unit in units_of(statements[0]))
+
+
+def units_of(statement: Statement) -> list[str]:
+    found = [n.unit for tree in expressions(statement) for n in walk(tree) if isinstance(n, As)]
+    found += [p.unit for tree in expressions(statement) for n in walk(tree) if isinstance(n, Quantity) for p in n.parts]
+    asked = [statement.unit] if isinstance(statement, Definition | FunctionDefinition) else []
+    asked += [p.unit for p in statement.parameters] if isinstance(statement, FunctionDefinition) else []
+    return found + [unit.text for unit in asked if unit is not None]
+
+
+def is_well_formed(unit: str) -> bool:
+    """With each name in it taken for a metre: whether a unit is known is not for the grammar to say."""
+    if unit.startswith("ft-in"):
+        return True
+    try:
+        parse_unit(re.sub(r"[^\W\d]\w*|%", "m", unit))
+    except BadUnit as bad:
+        return "well formed" not in bad.message and "/" not in bad.message and "power" not in bad.message
+    return True
+
+
+def agree(typed: str) -> None:
+    hand = by_hand(typed)
+    assume(hand is not None)
+    assert by_grammar(typed) == hand, typed
+
+
+# --- what sheets hold -------------------------------------------------------------------------------------------
+
+
+def statements_of(path: Path) -> list[str]:
+    sheet = loadpath.read(path)
+    found = []
+    for block in sheet.blocks:
+        if isinstance(block, Formulas):
+            for statement in block.statements:
+                start = sheet.source.line_starts[sheet.source.line_number(statement.span.start) - 1]
+                found.append(sheet.source.text[start : statement.span.end])
+    return found
+
+
+@cache
+def corpus() -> tuple[str, ...]:
+    return tuple(typed for path in SHEETS for typed in statements_of(path))
+
+
+def test_there_are_sheets_to_read() -> None:
+    assert len(SHEETS) > 60
+    assert len(corpus()) > 1000
+
+
+@pytest.mark.parametrize("path", SHEETS, ids=lambda path: path.name.removesuffix(".sheet.md"))
+def test_the_grammar_takes_every_statement_of_the_sheets(path: Path) -> None:
+    refused = [typed for typed in statements_of(path) if not by_grammar(typed)]
+    assert refused == []
+
+
+# --- lines, good and bad ----------------------------------------------------------------------------------------
+
+GOOD = r"""
+P_r = 20 kN                     -- rated load [hoist]
+P = 20 kN
+phi = 1.25 -- dynamic factor [hoist]
+n = 12_000
+n = 1.2e6
+n = 12e-6 1/K
+T = -20 degC
+T = 3 K^-1
+c = 0.24 J/(kg*K)
+p = 12 %
+p [%] = a/b
+x [1] = a
+a [deg] = b
+a [ kN*m ] = b
+s = 5/8 in
+s = 2 1/2 in
+s = 12 ft 6 in
+s = 12 ft 6 1/2 in
+s = 12 ft 1/2 in
+s = W/(1/2 in)
+s = W/2 1/2 in
+s = 1 - 1/2 in
+s = x-1/2 in
+s = 3/4
+s = 1/2*b
+s = 5/8 in/s
+h [ft-in 1/16] = sqrt(a^2 - b^2)
+M_Ed [kN*m] = P_Ed*L/4          -- midspan, load at the middle
+x = -x_1^2
+x = a^b^c
+x = a^-1
+x = a^(1/3)
+x = a - -b
+x = a*-b
+x = a + (-b)
+x = (a + b)*(c - d)/e
+x = f(a)
+x = f(a, b + c, 2 mm)
+x = f()
+x = max(a, b)^2
+x = b.I_y/b.W_el.y
+x = (f_c as psi)^0.5*(1 psi)
+x = sqrt((f_c as N/mm^2))
+x = <a - b>^0 + <c>^12
+x = <<a>^1 - b>^2
+x = 12 kN/m * L
+x = 12 kN*m
+x = a'
+σ_b = Δ_1 + größe
+M(x [m]) [kN*m] = R_A*x - P*<x - a>^1
+chi(lambda [1], alpha [1]) = 1/(lambda + alpha)
+f(x) = x
+f(x)[mm] = x*2
+curve = "b" of "a", "b", "c", "d"  -- table 6.2 [ec3]
+curve = "very thin" of "very thin"
+strength bending: sigma_Ed <= f_y/gamma_M0        -- [ec3]
+strength: sigma <= f_y
+strength bottom flange: sigma <= f_y
+strength x-axis 2: sigma <= f_y
+stiffness: delta <= L/500
+stability : P < P_cr
+limit: 3 <= t/d <= 12
+limit: 12 > t/d >= 3
+limit n: f <= 3 Hz or f >= 5 Hz
+limit: 1 <= a <= 2 or 3 < a < 4
+limit: a > <b - c>^1
+check: R_A + R_B = P within 0.1 %
+check: a = b within 2 mm + c
+valid: 3 <= t/d <= 12 for chi
+valid: a > 1 and (b < 2 or c = 3) for x, b.y
+valid: (a > 1) for x
+valid: ((a > 1) and (b > 2)) or c = "b" for x
+limit = 3 mm
+strength = 3 MPa
+valid = 1
+check [kN] = a
+x = 1 -- a note -- with dashes [a] [b]
+x = a --
+""".strip().split("\n")  # fmt: skip
+
+BAD = r"""
+x
+x =
+= 3
+x == 3
+x := 3
+x = 3 = 3
+x = a b
+x = 2a
+x = 2(a)
+x = (2)a
+x = f (a)
+x = a(
+x = (a
+x = a)
+x = [a]
+x = 20 [kN]
+x kN = 20
+x = 20kN
+x = 20%
+x = 3,5
+x = .5
+x = 5.
+x = 1.2.3
+x = 1e
+x = 1__0e
+x = a**2
+x = a--b
+x = --a
+x = a +- b
+x = a+-b
+x = +a
+x = a*
+x = a/
+x = a*/b
+x = a^
+x = a^^b
+x = W/1/2 in
+x = W/5/8 in
+x = a^1/2 in
+x = W/-1/2 in
+x = 1-1/2 in
+x = 3*2-1/2 in
+x = 12 kN/m/s
+x = 12 N/m*s
+x = 12 kN+a
+x = 12 kN-a
+x = 12 kN*
+x = 12 kN^
+x = 12 kN^a
+x = 12 (kN)
+x = 12 kN m
+x = 1 1/2
+x = 1/2 ft 6 in
+x = 12 ft 6
+x = (a as psi
+x = (a as)
+x = a as psi
+x = <a - b>
+x = <a - b>^-1
+x = <a - b>^n
+x = <a - b>^1.5
+x = <a - b>^(1)
+x = <a - b^1
+x = a < b
+x = a <= b
+x <= 3
+x ≤ 3
+x = a·b
+x = 3²
+x = "a"
+x = "a" of
+x = "a" of b
+x = "a" of "a" "b"
+x [mm] = "a" of "a"
+x = "a
+x [ = 3
+x [] = 3
+x [kN = 3
+x [kN m] = 3
+x [kN/m/s] = 3
+x [mm] [mm] = 3
+x. = 3
+b.x = 3
+x y = 3
+1x = 3
+_x = 3
+when = 3
+x = when
+x = at
+use = 3
+x = a at b
+use section IPE 300 as b
+solve for x
+f(x = 3
+f() = 3
+f(2) = 3
+f(x y) = 3
+f(x,) = 3
+f(a.b) = 3
+f.g(x) = 3
+f(x [m]) kN = 3
+strength sigma <= 3
+strength:
+strength: a
+strength: a = b
+strength: a == b
+strength: a <= b >= c
+strength: a <= b <= c <= d
+strength: a <= b and c <= d
+strength: a <= b or c <= d or e <= f
+strength: (a <= b)
+strength: a < = b
+strength: a =< b
+strength: a => b
+strength: a <> b
+strength: a != b
+strengh: a <= b
+strength+: a <= b
+check: a = b
+check: a <= b within 1
+check: a = b = c within 1
+check: a within 1
+valid: a < b
+valid: a for b
+valid: a < b for
+valid: a < b for 3
+valid: a < b for x y
+valid: not a < b for x
+limit: a < b within 3
+x = 3; y = 4
+x = 3 # comment
+x = 3 // comment
+x = a ? b : c
+x = a % b
+x = a & b
+x = {a}
+x = a!
+x = 'a'
+x = ١
+""".strip().split("\n")  # fmt: skip
+
+
+@pytest.mark.parametrize("typed", GOOD)
+def test_both_take(typed: str) -> None:
+    assert (by_hand(typed), by_grammar(typed)) == (True, True)
+
+
+@pytest.mark.parametrize("typed", BAD)
+def test_both_refuse(typed: str) -> None:
+    assert (by_hand(typed), by_grammar(typed)) == (False, False)
+
+
+CASES = {
+    "f = cases\n    a when x < 3\n    b otherwise": True,
+    "f = cases -- note\n    a when x < 3 -- first [a]\n    b otherwise -- last": True,
+    "f = cases\n    a when x < 3 and y > 2\n    b when c = 3": True,
+    "f = cases\n    a otherwise": True,
+    'f = cases\n    a when k = "b"\n    b when (k = "c" or x < 2) and y > 3': True,
+    "f(x [1]) [MPa] = cases\n    a*x\n        when x < 3\n    b otherwise": True,
+    "f [MPa] = cases\n    a + \n        b when x < 3 -- n\n    b\n      otherwise": True,
+    "M = a +\n    b*c -- continued": True,
+    "strength x:\n    a\n    <= b": True,
+    "f = cases": False,
+    "f = cases a when x < 3": False,
+    "f = cases\n    a": False,
+    "f = cases\n    a when": False,
+    "f = cases\n    a when x": False,
+    "f = cases\n    a otherwise\n    b when x < 3": False,
+    "f = cases\n    a otherwise b": False,
+    "f = cases\n    when x < 3": False,
+    "f = cases\n    a when x < 3 otherwise": False,
+    "f = 3 + cases\n    a otherwise": False,
+    "M = a\n    b": False,
+    "M = a +": False,
+}
+
+
+@pytest.mark.parametrize("typed", CASES)
+def test_statements_of_several_lines(typed: str) -> None:
+    assert (by_hand(typed), by_grammar(typed)) == (CASES[typed], CASES[typed])
+
+
+# --- generated lines --------------------------------------------------------------------------------------------
+
+names = st.sampled_from(["a", "x_1", "sigma_Ed", "L'", "σ", "limit", "valid", "e5", "f"])
+wholes = st.integers(0, 120).map(str)
+numbers = wholes | st.sampled_from(["0.5", "12_000", "1.2e6", "3e-3", "2_5.0"])
+fractions = st.tuples(wholes, wholes).map("/".join)
+units = st.sampled_from(["kN", "mm^2", "N/mm^2", "1/K", "J/(kg*K)", "%", "m^-1", "m^(1/2)", "m^0.5", "(N)*m", "m/(s)^2", "q"])
+measures = units.filter(lambda unit: not unit.startswith("("))
+inches = numbers | fractions | st.tuples(wholes, fractions).map(" ".join)
+
+
+def spaced(*parts: st.SearchStrategy[str]) -> st.SearchStrategy[str]:
+    return st.tuples(*parts).map(" ".join)
+
+
+WORDS = {
+    "NAME": names, "DOTTED_NAME": st.sampled_from(["b.I_y", "B1.M.max", "rod.sigma'"]), "SMALL": wholes.filter(lambda n: len(n) < 3),
+    "NUMBER": numbers, "FUNCTION": names, "DOTTED_FUNCTION": st.just("B1.V"), "QUANTITY": spaced(numbers, measures) | spaced(wholes, fractions, measures),
+    "FRACTION_QUANTITY": spaced(fractions, measures), "FEET_AND_INCHES": st.tuples(numbers, inches).map(lambda p: f"{p[0]} ft {p[1]} in"),
+    "AS": units.map("as {}".format), "ASKED": units.map("[{}]".format) | st.sampled_from(["[1]", "[ft-in 1/16]", "[ kN*m ]"]),
+    "CRITERION": st.sampled_from(["strength:", "limit a-b 2:", "stability :"]), "VALID": st.just("valid:"), "CHECK": st.just("check :"),
+    "WORD": st.sampled_from(['"b"', '"thin wall"', '""']), "EQUALS": st.just("="), "PLUS": st.just("+"), "MINUS": st.just("-"),
+    "TIMES": st.just("*"), "NOTE": st.sampled_from([" -- note [a]", " --", " -- a = b -- c"]), "NEW_LINE": st.just("\n    "), "SPACES": st.just(" "),
+}  # fmt: skip
+generated = from_lark(grammar(), explicit=WORDS).filter(lambda text: len(text) < 300)
+quick = settings(deadline=None, suppress_health_check=list(HealthCheck))
+
+
+@quick
+@given(generated)
+def test_both_agree_on_what_the_grammar_makes(typed: str) -> None:
+    """Words run together at random, so that some of these lines are bad."""
+    agree(typed.replace("  ", " "))
+
+
+apart = {name: words if "FUNCTION" in name else words.map(" {} ".format) for name, words in WORDS.items()}
+good = from_lark(grammar(), explicit=apart | {"NOTE": WORDS["NOTE"]}).filter(lambda text: len(text) < 300)
+
+
+@quick
+@given(good)
+def test_with_spaces_between_its_words_every_line_is_good(typed: str) -> None:
+    assert by_grammar(typed)
+    assert by_hand(typed) in (True, None)
+
+
+pieces = st.sampled_from([
+    "", " ", "-", "--", " -- ", "+", "*", "/", "^", "(", ")", "<", ">", "<=", "=", "==", "[", "]", ",", ".", ":", '"', "1", "1/2 ",
+    "1/2 in", " kN", "kN", "%", "a", "f(", " when ", " otherwise", " and ", " or ", " for ", " as psi", "cases", "\n        ", "_", "'", "e5", "²",
+])  # fmt: skip
+
+
+@quick
+@given(st.data())
+def test_both_agree_on_lines_with_one_thing_changed(data: st.DataObject) -> None:
+    typed = data.draw(st.sampled_from(corpus()))
+    typed = typed.replace("\n    ", "\n").removeprefix("    ")
+    start = data.draw(st.integers(0, len(typed)))
+    end = data.draw(st.integers(start, min(start + 4, len(typed))))
+    agree(typed[:start] + data.draw(pieces) + typed[end:])
+
+
+# --- the page itself --------------------------------------------------------------------------------------------
+
+
+def test_the_reserved_words_are_the_language_s() -> None:
+    listed = re.search(r"_NOT_RESERVED: /\(\?!\(([a-z|]+)\)", GRAMMAR)
+    assert listed is not None
+    assert set(listed.group(1).split("|")) == RESERVED
+
+
+def test_the_page_fits_a_reader() -> None:
+    lines = GRAMMAR.split("\n")
+    assert max(len(line) for line in lines) <= 130 + 60  # the list of reserved words is one line
+    assert len(lines) < 140
+    assert not [rule.name for rule in grammar().terminals if rule.name.startswith("__ANON")]
