@@ -136,7 +136,7 @@ def test_page_carries_the_caution(page: str) -> None:
 
 @pytest.mark.parametrize("page", PAGES)
 def test_links_lead_to_pages(page: str) -> None:
-    """Those to pages of findings are held against the registry; that each page is there is tested beside it."""
+    """Links to pages of findings are held against the registry; those pages have a test of their own."""
     for words, target in re.findall(r"\[([^\]\n]+)\]\(([\w/-]+)\.md\)", PAGES[page]):
         assert target in PAGES or (target == f"findings/{words}" and words in SLUGS), target
 

@@ -3,12 +3,12 @@
 from __future__ import annotations
 
 import time
+from importlib import import_module
 
 import pytest
 from sheets import entry, findings, resolve, slugs
 
 import loadpath
-from loadpath.resolve.resolve import MOST_STATEMENTS
 
 
 def blocked(*lines: str, **more: str) -> dict[str, int]:
@@ -24,7 +24,7 @@ def blocked(*lines: str, **more: str) -> dict[str, int]:
 @pytest.mark.parametrize(
     ("lines", "slug", "place", "mend"),
     [
-        (("a = b", "b_1 = 2"), "unknown-name", "b", "b_1"),
+        (("a = b", "b_1 = 2"), "unknown-name", "b", "define"),
         (("force = 2", "a = froce"), "unknown-name", "froce", "did you mean `force`?"),
         (("P = 2", "a = p"), "unknown-name", "p", "did you mean `P`?"),
         (("a = zeta_9",), "unknown-name", "zeta_9", "define"),
@@ -211,10 +211,11 @@ def test_functions_of_functions_that_ask_for_too_much_are_refused() -> None:
     assert slugs(*lines, "a = f_60(1)") == ["over-limit"]
 
 
-def test_the_number_of_statements_is_limited() -> None:
-    resolved = resolve(*(f"a_{i} = {i}" for i in range(MOST_STATEMENTS + 1)))
+def test_the_number_of_statements_is_limited(monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.setattr(import_module("loadpath.resolve.resolve"), "MOST_STATEMENTS", 20)
+    resolved = resolve(*(f"a_{i} = {i}" for i in range(21)))
     assert [f.slug for f in resolved.findings] == ["over-limit"]
-    assert len(resolved.entries) == MOST_STATEMENTS
+    assert len(resolved.entries) == 20
 
 
 def chain(count: int) -> list[str]:
@@ -240,12 +241,12 @@ def seconds(lines: list[str]) -> float:
 def test_the_work_is_linear_in_the_steps() -> None:
     """Eight times the steps take less than sixteen times as long: nothing is quadratic."""
     seconds(chain(200))
-    few, many = min(seconds(chain(1000)) for _ in range(2)), seconds(chain(8000))
+    few, many = min(seconds(chain(500)) for _ in range(2)), seconds(chain(4000))
     assert many < 16 * few
 
 
 @pytest.mark.parametrize("line", ["a_{i} = b_{i}", "a_{i} = 2 -- x [c_{i}]", "a = {i}", "limit x: 1 <= {i}", "m = 3 kN/m"])
 def test_a_sheet_of_mistakes_alone_ends_soon(line: str) -> None:
     resolved_in = time.process_time()
-    resolve(*(line.format(i=i) for i in range(5000)))
-    assert time.process_time() - resolved_in < 10
+    resolve(*(line.format(i=i) for i in range(2000)))
+    assert time.process_time() - resolved_in < 6

@@ -1,8 +1,8 @@
-"""A pocket calculator for printed formulas: numbers, brackets, functions, and units that it carries but never converts.
+"""A pocket calculator for printed formulas: it carries units along and never converts them.
 
-It shares nothing with the engine. Powers of ten between SI prefixes, kip and lbf, ksi and psi it does by itself, as a reader
-does; feet never become inches, degrees never radians and rpm never rad/s unless a printed factor says so. Where units
-don't cancel it refuses.
+It shares nothing with the engine. Powers of ten between SI prefixes, kip and lbf, ksi and psi it does by
+itself, as a reader does; feet never become inches, degrees never radians and rpm never rad/s unless a printed
+factor says so. Where units don't cancel it refuses.
 """
 
 from __future__ import annotations
@@ -32,25 +32,40 @@ def amount(number: float, powers: Powers) -> Amount:
     return Amount(number, tuple(sorted((name, power) for name, power in powers.items() if power)))
 
 
-# --- units ------------------------------------------------------------------------------------------------------
+# --- units --------------------------------------------------------------------------------------------------
 
-PREFIXES = {"": 0, "n": -9, "u": -6, "µ": -6, "m": -3, "c": -2, "d": -1, "h": 2, "k": 3, "M": 6, "G": 9, "T": 12}
+PREFIXES = {
+    "": 0,
+    "n": -9,
+    "u": -6,
+    "µ": -6,
+    "m": -3,
+    "c": -2,
+    "d": -1,
+    "h": 2,
+    "k": 3,
+    "M": 6,
+    "G": 9,
+    "T": 12,
+}
 # source: the SI Brochure, tables 4 and 7: powers of metre, kilogram, second, kelvin, and a power of ten
 DECIMAL: dict[str, tuple[int, dict[str, int]]] = {
     "m": (0, {"m": 1}), "g": (-3, {"kg": 1}), "s": (0, {"s": 1}), "K": (0, {"K": 1}), "rad": (0, {}),
-    "N": (0, {"kg": 1, "m": 1, "s": -2}), "Pa": (0, {"kg": 1, "m": -1, "s": -2}), "bar": (5, {"kg": 1, "m": -1, "s": -2}),
+    "N": (0, {"kg": 1, "m": 1, "s": -2}),
+    "Pa": (0, {"kg": 1, "m": -1, "s": -2}), "bar": (5, {"kg": 1, "m": -1, "s": -2}),
     "J": (0, {"kg": 1, "m": 2, "s": -2}), "W": (0, {"kg": 1, "m": 2, "s": -3}), "Hz": (0, {"s": -1}),
 }  # fmt: skip
 ALONE: dict[str, tuple[int, dict[str, int]]] = {
     "litre": (-3, {"m": 3}), "tonne": (3, {"kg": 1}), "%": (-2, {}), "ppm": (-6, {}), "microstrain": (-6, {}),
-    "kip": (3, {"lbf": 1}), "mil": (-3, {"in": 1}), "psi": (0, {"lbf": 1, "in": -2}), "ksi": (3, {"lbf": 1, "in": -2}),
+    "kip": (3, {"lbf": 1}), "mil": (-3, {"in": 1}),
+    "psi": (0, {"lbf": 1, "in": -2}), "ksi": (3, {"lbf": 1, "in": -2}),
     "psf": (0, {"lbf": 1, "ft": -2}), "ksf": (3, {"lbf": 1, "ft": -2}), "plf": (0, {"lbf": 1, "ft": -1}),
     "klf": (3, {"lbf": 1, "ft": -1}), "pcf": (0, {"lbf": 1, "ft": -3}), "kcf": (3, {"lbf": 1, "ft": -3}),
     "delta_degF": (0, {"degF": 1}), "degF": (0, {"degF": 1}), "degC": (0, {"K": 1}),
 }  # fmt: skip
 OWN_KIND = {
-    "deg", "rpm", "min", "h", "day", "in", "ft", "yd", "mile", "lbf", "ozf", "lb", "slug", "short_ton", "short_tonf", "kgf",
-    "hp", "hp_metric", "Btu", "US_gal", "atm",
+    "deg", "rpm", "min", "h", "day", "in", "ft", "yd", "mile",
+    "lbf", "ozf", "lb", "slug", "short_ton", "short_tonf", "kgf", "hp", "hp_metric", "Btu", "US_gal", "atm",
 }  # fmt: skip
 """Units that only a printed factor turns into others."""
 
@@ -96,7 +111,7 @@ def _factors(text: str) -> list[str]:
     return [part for part in text.split("*") if part not in ("", "1")]
 
 
-# --- arithmetic -------------------------------------------------------------------------------------------------
+# --- arithmetic ---------------------------------------------------------------------------------------------
 
 
 def times(a: Amount, b: Amount) -> Amount:
@@ -141,6 +156,11 @@ def stepped(rounding: Callable[[float], int]) -> Callable[[Amount, Amount], Amou
     return work
 
 
+def of(take: Callable[[Amount], float], function: Callable[[float], float]) -> Callable[[Amount], Amount]:
+    """A function of one plain number or angle."""
+    return lambda x: Amount(function(take(x)))
+
+
 FUNCTIONS: dict[str, Callable[..., Amount]] = {
     "sqrt": lambda x: raised(x, Fraction(1, 2)),
     "cbrt": lambda x: raised(x, Fraction(1, 3)),
@@ -150,17 +170,17 @@ FUNCTIONS: dict[str, Callable[..., Amount]] = {
     "round_up": stepped(math.ceil),
     "round_down": stepped(math.floor),
     "atan2": lambda y, x: (alike(y, x), Amount(math.atan2(y.number, x.number)))[1],
-    **{name: lambda x, f=getattr(math, name): Amount(f(angle(x))) for name in ("sin", "cos", "tan")},
-    "sec": lambda x: Amount(1 / math.cos(angle(x))),
+    **{name: of(angle, getattr(math, name)) for name in ("sin", "cos", "tan")},
+    "sec": of(angle, lambda x: 1 / math.cos(x)),
     **{
-        name: lambda x, f=getattr(math, name): Amount(f(plain(x)))
+        name: of(plain, getattr(math, name))
         for name in ("exp", "log10", "asin", "acos", "atan", "sinh", "cosh", "tanh")
     },
-    "ln": lambda x: Amount(math.log(plain(x))),
+    "ln": of(plain, math.log),
 }
 
 
-# --- reading ----------------------------------------------------------------------------------------------------
+# --- reading ------------------------------------------------------------------------------------------------
 
 _NAME = r"(?:[A-Za-zµ][A-Za-z_]*|%)"
 _POWER = r"(?:\^(?:-?\d+(?:\.\d+)?|\([-\d/]+\)))?"
@@ -170,7 +190,8 @@ _NUMBER = r"\d[\d_]*(?:\.\d+)?(?:[eE][-+]?\d+)?"
 _TOKENS = re.compile(
     rf"(?P<fraction>(?:(?P<whole>\d+) )?(?P<over>\d+)/(?P<under>\d+) (?P<fraction_unit>{_UNIT})(?![\w(]))"
     rf"|(?P<number>{_NUMBER})(?: (?!as )(?P<unit>{_UNIT})(?![\w(]))?"
-    r"|(?P<as>as (?P<as_unit>[^()\s]+(?:\([^()]*\)[^()\s]*)?))|(?P<word>[a-z]\w*)|(?P<sign>[-+*/^(),<>])|(?P<space>\s+)"
+    r"|(?P<as>as (?P<as_unit>[^()\s]+(?:\([^()]*\)[^()\s]*)?))"
+    r"|(?P<word>[a-z]\w*)|(?P<sign>[-+*/^(),<>])|(?P<space>\s+)"
 )
 
 
@@ -269,7 +290,9 @@ class Reader:
 
     def _feet_and_inches(self, feet: Amount) -> Amount:
         inches = self.pop()
-        assert isinstance(inches, Amount) and dict(feet.powers) == {"ft": 1} and dict(inches.powers) == {"in": 1}
+        assert (
+            isinstance(inches, Amount) and dict(feet.powers) == {"ft": 1} and dict(inches.powers) == {"in": 1}
+        )
         return Amount(12 * feet.number + inches.number, inches.powers)
 
     def bracket(self) -> Amount:
@@ -287,7 +310,11 @@ class Reader:
         self.expect(">")
         self.expect("^")
         power = int(plain(self.atom()))
-        return raised(value, power) if value.number > 0 or (value.number == 0 and power == 0) else amount(0.0, dict(raised(value, power).powers))
+        return (
+            raised(value, power)
+            if value.number > 0 or (value.number == 0 and power == 0)
+            else amount(0.0, dict(raised(value, power).powers))
+        )
 
     def named(self) -> Amount:
         name = str(self.pop())
@@ -303,7 +330,7 @@ class Reader:
 
 
 def work(text: str, unit: str) -> float:
-    """The number that a printed formula comes to in the unit of its result. Raises DoesNotCancel where it doesn't get there."""
+    """The number that a printed formula comes to in the unit of its result. Raises DoesNotCancel."""
     value, one = Reader(text).whole(), unit_amount(unit)
     if value.number != 0 and value.powers != one.powers:
         raise DoesNotCancel(f"{dict(value.powers)} is not {dict(one.powers)}")

@@ -1,4 +1,4 @@
-"""Substitutions: every name replaced by its printed value, with a printed factor wherever printed units don't cancel."""
+"""Substitutions: printed values in place of names, and a printed factor where printed units don't cancel."""
 
 from __future__ import annotations
 
@@ -68,11 +68,19 @@ US = """
         ("x [lbf*in] = H/n", "5 hp / 1750 rpm * 63025.4 lbf*in*rpm/hp", ("180.1", "lbf*in")),
         ("x [ft/min] = n*b", "1750 rpm * 3 in * 0.523599 ft/(min*rpm*in)", ("2749", "ft/min")),
         # pounds of mass and of force
-        ("x [lbf] = m * 32.174 ft/s^2", "10 lb * 32.174 ft/s^2 * 0.0310810 lbf*s^2/(lb*ft)", ("10.00", "lbf")),
+        (
+            "x [lbf] = m * 32.174 ft/s^2",
+            "10 lb * 32.174 ft/s^2 * 0.0310810 lbf*s^2/(lb*ft)",
+            ("10.00", "lbf"),
+        ),
         # angles: a calculator has a key for degrees, and none for what comes out of atan
         ("x = P*sin(al)", "100 lbf * sin(30 deg)", ("0.05000", "kip")),
         ("x [deg] = atan(b/L)", "atan(3 in / 20 ft / (12 in/ft)) * 57.2958 deg", ("0.7162", "deg")),
-        ("x [deg] = al + atan(b/L)", "30 deg + atan(3 in / 20 ft / (12 in/ft)) * 57.2958 deg", ("30.72", "deg")),
+        (
+            "x [deg] = al + atan(b/L)",
+            "30 deg + atan(3 in / 20 ft / (12 in/ft)) * 57.2958 deg",
+            ("30.72", "deg"),
+        ),
         ("x = al*L", "30 deg * 20 ft * 0.209440 in/(deg*ft)", ("125.7", "in")),
         # sums turn to the unit of the result where they can, and to that of their first term where they can't
         ("x [ft] = b + L", "3 in / (12 in/ft) + 20 ft", ("20.25", "ft")),
@@ -86,9 +94,21 @@ US = """
         ("x [ft] = sqrt(b*L)", "sqrt(3 in * 20 ft / (12 in/ft))", ("2.236", "ft")),
         ("x = cbrt(b*L*L)", "cbrt(3 in * 20 ft * 20 ft * 144 in^2/ft^2)", ("55.70", "in")),
         ("x = (0.5*L/b)^0.3", "(0.5 * 20 ft / 3 in * 12 in/ft)^0.3", ("3.024", "")),
-        ("x [ft/s] = sqrt(2 * 32.174 ft/s^2 * b)", "sqrt(2 * 32.174 ft/s^2 * 3 in / (12 in/ft))", ("4.011", "ft/s")),
-        ("x [Hz] = sqrt(k/m)/(2*pi)", "sqrt(20 lbf/in / 10 lb * 386.089 in*lb/(s^2*lbf))/(2*pi)", ("4.423", "Hz")),
-        ("x [rpm] = sqrt(k/m)", "sqrt(20 lbf/in / 10 lb * 386.089 in*lb/(s^2*lbf)) * 9.54930 rpm*s", ("265.4", "rpm")),
+        (
+            "x [ft/s] = sqrt(2 * 32.174 ft/s^2 * b)",
+            "sqrt(2 * 32.174 ft/s^2 * 3 in / (12 in/ft))",
+            ("4.011", "ft/s"),
+        ),
+        (
+            "x [Hz] = sqrt(k/m)/(2*pi)",
+            "sqrt(20 lbf/in / 10 lb * 386.089 in*lb/(s^2*lbf))/(2*pi)",
+            ("4.423", "Hz"),
+        ),
+        (
+            "x [rpm] = sqrt(k/m)",
+            "sqrt(20 lbf/in / 10 lb * 386.089 in*lb/(s^2*lbf)) * 9.54930 rpm*s",
+            ("265.4", "rpm"),
+        ),
         # plain numbers are needed there: exponents, logarithms
         ("x = 2^(b/L)", "2^(3 in / 20 ft / (12 in/ft))", ("1.009", "")),
         ("x = ln(L/b)", "ln(20 ft / 3 in * 12 in/ft)", ("4.382", "")),
@@ -162,15 +182,23 @@ READINGS = """
 @pytest.mark.parametrize(
     ("line", "substitution", "result"),
     [
-        ("x = t_2 - t_3", "20 degC - -10 degC", ("30.00", "K")),
-        ("x = t_1 - t_2", "(70 degF - (20 degC * 1.8 degF/degC + 32 delta_degF)) / (1.8 degF/K)", ("1.111", "K")),
+        ("x = t_2 - t_3", "20 degC - (-10 degC)", ("30.00", "K")),
+        (
+            "x = t_1 - t_2",
+            "(70 degF - (20 degC * 1.8 degF/degC + 32 delta_degF)) / (1.8 degF/K)",
+            ("1.111", "K"),
+        ),
         ("x [K] = t_2", "20 degC + 273.15 K", ("293.2", "K")),
         ("x [K] = t_1", "(70 degF + 459.67 delta_degF) / (1.8 degF/K)", ("294.3", "K")),
         ("x [degC] = t_1", "(70 degF - 32 delta_degF) / (1.8 degF/degC)", ("21.11", "degC")),
         ("x [degF] = t_2", "20 degC * 1.8 degF/degC + 32 delta_degF", ("68.00", "degF")),
         ("x [degF] = t_2 + 10 K", "(20 degC + 10 K) * 1.8 degF/degC + 32 delta_degF", ("86.00", "degF")),
-        ("x [mm] = 12e-6 1/K * (t_2 - t_3) * 3 m", "12e-6 1/K * (20 degC - -10 degC) * 3 m", ("1.080", "mm")),
-        ("x [degF] = max(t_1, t_2)", "max(70 degF, 20 degC * 1.8 degF/degC + 32 delta_degF)", ("70.00", "degF")),
+        ("x [mm] = 12e-6 1/K * (t_2 - t_3) * 3 m", "12e-6 1/K * (20 degC - (-10 degC)) * 3 m", ("1.080", "mm")),
+        (
+            "x [degF] = max(t_1, t_2)",
+            "max(70 degF, 20 degC * 1.8 degF/degC + 32 delta_degF)",
+            ("70.00", "degF"),
+        ),
     ],
 )
 def test_absolute_temperatures(line: str, substitution: str, result: tuple[str, str]) -> None:
@@ -179,7 +207,7 @@ def test_absolute_temperatures(line: str, substitution: str, result: tuple[str, 
     assert number_of(trace, "x") == result
 
 
-# --- any mixture of units ---------------------------------------------------------------------------------------
+# --- any mixture of units -----------------------------------------------------------------------------------
 
 UNITS = {
     "length": ["mm", "cm", "m", "in", "ft", "yd"],
@@ -206,11 +234,27 @@ def last_digit(value: float, digits: int) -> float:
 
 
 @settings(max_examples=80, deadline=None)
-@given(st.tuples(a_unit, a_unit), st.lists(a_number, min_size=4, max_size=4), st.integers(-2, 3), st.integers(-2, 3), st.data())
-def test_products_of_mixed_units_land(units: tuple[dict[str, str], dict[str, str]], n: list[str], p: int, q: int, data: st.DataObject) -> None:
+@given(
+    st.tuples(a_unit, a_unit),
+    st.lists(a_number, min_size=4, max_size=4),
+    st.integers(-2, 3),
+    st.integers(-2, 3),
+    st.data(),
+)
+def test_products_of_mixed_units_land(
+    units: tuple[dict[str, str], dict[str, str]], n: list[str], p: int, q: int, data: st.DataObject
+) -> None:
     """Force times powers of two lengths over a time, asked for in units of any system."""
     a, b = units
-    asked = "*".join(filter(None, (data.draw(st.sampled_from(RESULTS["force"])), f"{data.draw(st.sampled_from(RESULTS['length']))}^{p + q}" if p + q else "")))
+    asked = "*".join(
+        filter(
+            None,
+            (
+                data.draw(st.sampled_from(RESULTS["force"])),
+                f"{data.draw(st.sampled_from(RESULTS['length']))}^{p + q}" if p + q else "",
+            ),
+        )
+    )
     asked = f"{asked}/{data.draw(st.sampled_from(RESULTS['time']))}"
     trace = evaluated(
         f"""F = {n[0]} {a["force"]} -- a
@@ -223,8 +267,14 @@ def test_products_of_mixed_units_land(units: tuple[dict[str, str], dict[str, str
 
 
 @settings(max_examples=50, deadline=None)
-@given(st.tuples(a_unit, a_unit), st.lists(a_number, min_size=4, max_size=4), st.sampled_from(["mm", "m", "in", "ft"]))
-def test_sums_and_roots_of_mixed_units_land(units: tuple[dict[str, str], dict[str, str]], n: list[str], asked: str) -> None:
+@given(
+    st.tuples(a_unit, a_unit),
+    st.lists(a_number, min_size=4, max_size=4),
+    st.sampled_from(["mm", "m", "in", "ft"]),
+)
+def test_sums_and_roots_of_mixed_units_land(
+    units: tuple[dict[str, str], dict[str, str]], n: list[str], asked: str
+) -> None:
     a, b = units
     trace = evaluated(
         f"""u = {n[0]} {a["length"]} -- a

@@ -19,8 +19,12 @@ from loadpath.trace import Trace
 from loadpath.trace.file import TraceFile, finding_record, record
 
 ROOT = Path(__file__).parents[2]
-SHEETS = sorted([*(ROOT / "calcsheets").glob("*.sheet.md"), *(ROOT / "tests" / "published").glob("*.sheet.md")])
-SCHEMA: dict[str, Any] = json.loads((files("loadpath.trace") / "trace.schema.json").read_text(encoding="utf-8"))
+SHEETS = sorted(
+    [*(ROOT / "calcsheets").glob("*.sheet.md"), *(ROOT / "tests" / "published").glob("*.sheet.md")]
+)
+SCHEMA: dict[str, Any] = json.loads(
+    (files("loadpath.trace") / "trace.schema.json").read_text(encoding="utf-8")
+)
 
 ALL_KINDS = """---
 title: Everything
@@ -75,7 +79,7 @@ def strict(text: str) -> Any:
     return json.loads(text, parse_constant=refuse)
 
 
-# --- schema -----------------------------------------------------------------------------------------------------
+# --- schema -------------------------------------------------------------------------------------------------
 
 
 def test_the_schema_is_one() -> None:
@@ -125,9 +129,11 @@ def test_keys_of_the_contract() -> None:
     assert raw["schema"] == "loadpath-trace/1"
     assert set(raw["sheet"]) >= {"file", "title", "number", "revision", "digest"}
     assert raw["engine"] == {"version": "9.9.9"}
-    steps = "id number kind line formula substitution display value unit si uses used_by sources note".split()
-    criteria = "step id kind relation demand limit unit utilisation satisfied verdict conditional_on".split()
-    finding = "slug severity line column message help".split()
+    steps = ["id", "number", "kind", "line", "formula", "substitution", "display", "value", "unit", "si"]
+    steps += ["uses", "used_by", "sources", "note"]
+    criteria = ["step", "id", "kind", "relation", "demand", "limit", "unit", "utilisation", "satisfied"]
+    criteria += ["verdict", "conditional_on"]
+    finding = ["slug", "severity", "line", "column", "message", "help"]
     for part, keys in (("steps", steps), ("criteria", criteria), ("findings", finding)):
         assert raw[part]
         assert all(set(entry) >= set(keys) for entry in raw[part])
@@ -142,7 +148,7 @@ def test_what_is_no_trace_file(text: str) -> None:
         TraceFile.from_json(text)
 
 
-# --- what stands in it ------------------------------------------------------------------------------------------
+# --- what stands in it --------------------------------------------------------------------------------------
 
 
 def test_a_result() -> None:
@@ -166,16 +172,33 @@ def test_an_input_a_choice_and_a_note() -> None:
 def test_criteria() -> None:
     by_id = {c.id: c for c in file_of(ALL_KINDS).criteria}
     plain = by_id["strength: sigma <= 60 MPa"]
-    assert (plain.step, plain.kind, plain.relation, plain.unit) == ("1.5", "strength", "sigma <= 60 MPa", "MPa")
+    assert (plain.step, plain.kind, plain.relation, plain.unit) == (
+        "1.5",
+        "strength",
+        "sigma <= 60 MPa",
+        "MPa",
+    )
     assert (plain.demand, plain.limit, plain.utilisation) == tuple(map(pytest.approx, (50, 60, 5 / 6)))
-    assert (plain.satisfied, plain.verdict, plain.conditional_on) == (True, "satisfied, conditional on A1", ["A1"])
+    assert (plain.satisfied, plain.verdict, plain.conditional_on) == (
+        True,
+        "satisfied, conditional on A1",
+        ["A1"],
+    )
     warm = by_id["limit warm"]
     assert (warm.demand, warm.limit, warm.unit) == (pytest.approx(20), pytest.approx(30), "degC")
     assert (warm.utilisation, warm.margin) == (None, pytest.approx(10))
     ranged = by_id["stiffness: e <= 2 mm"]
-    assert (ranged.satisfied, ranged.utilisation, ranged.verdict) == (None, None, "not shown: outside the range of e")
+    assert (ranged.satisfied, ranged.utilisation, ranged.verdict) == (
+        None,
+        None,
+        "not shown: outside the range of e",
+    )
     blocked = by_id["limit z"]
-    assert (blocked.satisfied, blocked.demand, blocked.verdict) == (None, None, "not shown: not computed because of line 29")
+    assert (blocked.satisfied, blocked.demand, blocked.verdict) == (
+        None,
+        None,
+        "not shown: not computed because of line 29",
+    )
 
 
 def test_what_was_not_computed_says_why() -> None:
@@ -185,13 +208,16 @@ def test_what_was_not_computed_says_why() -> None:
 
 
 def test_a_chain_tells_its_governing_part() -> None:
-    made = file_of("---\ntitle: T\n---\n\n    x = 9 mm -- a\n    limit a: 2 mm <= x <= 10 mm\n    limit b: 2 mm <= x/3 <= 10 mm\n")
+    made = file_of(
+        "---\ntitle: T\n---\n\n    x = 9 mm -- a\n"
+        "    limit a: 2 mm <= x <= 10 mm\n    limit b: 2 mm <= x/3 <= 10 mm\n"
+    )
     a, b = made.criteria
     assert (a.demand, a.limit, a.utilisation) == tuple(map(pytest.approx, (9, 10, 0.9)))
     assert (b.demand, b.limit, b.utilisation) == tuple(map(pytest.approx, (2, 3, 2 / 3)))
 
 
-# --- ids --------------------------------------------------------------------------------------------------------
+# --- ids ----------------------------------------------------------------------------------------------------
 
 
 @pytest.mark.parametrize("path", SHEETS, ids=lambda p: p.name.removesuffix(".sheet.md"))
@@ -207,7 +233,7 @@ def test_ids_are_unique_and_trails_run_both_ways(path: Path) -> None:
 
 
 def test_ids_are_names_and_never_counters() -> None:
-    """Steps and prose put in above leave the ids of those below as they were; a second check of one relation is `#2`."""
+    """Steps put in above leave the ids of those below as they were; a second check of one is `#2`."""
     before = file_of(ALL_KINDS)
     put_in = ALL_KINDS.replace("# One\n", "# Nought\n\nSome text.\n\n    q = 3 mm -- a [s]\n\n# One\n")
     after = file_of(put_in)
@@ -219,11 +245,13 @@ def test_ids_are_names_and_never_counters() -> None:
 
 
 def test_the_spacing_of_a_line_leaves_its_id_alone() -> None:
-    loose = ALL_KINDS.replace("strength: sigma <= 60 MPa", "strength:sigma<=60 MPa").replace("sigma = P/A", "sigma = P / A")
+    loose = ALL_KINDS.replace("strength: sigma <= 60 MPa", "strength:sigma<=60 MPa").replace(
+        "sigma = P/A", "sigma = P / A"
+    )
     assert [s.id for s in file_of(loose).steps] == [s.id for s in file_of(ALL_KINDS).steps]
 
 
-# --- numbers and names ------------------------------------------------------------------------------------------
+# --- numbers and names --------------------------------------------------------------------------------------
 
 
 @pytest.mark.parametrize("path", SHEETS, ids=lambda p: p.name.removesuffix(".sheet.md"))
@@ -233,11 +261,15 @@ def test_values_are_at_full_precision_and_agree_with_si(path: Path) -> None:
     for step in trace:
         if isinstance(step.si, float):
             assert by_id[step.id].si == step.si
-            assert step.unit.to_si(by_id[step.id].value) == pytest.approx(step.si, rel=1e-14)  # type: ignore[arg-type]
+            value = by_id[step.id].value
+            assert isinstance(value, float)
+            assert step.unit.to_si(value) == pytest.approx(step.si, rel=1e-14)
 
 
 def test_only_the_name_of_the_file_is_told() -> None:
-    trace = loadpath.evaluate(loadpath.read_text("---\ntitle: T\n---\n\n    x = 1 +\n", "some/folder/rod.sheet.md"))
+    trace = loadpath.evaluate(
+        loadpath.read_text("---\ntitle: T\n---\n\n    x = 1 +\n", "some/folder/rod.sheet.md")
+    )
     made = record(trace, "1")
     assert made.sheet["file"] == "rod.sheet.md"
     assert {f.file for f in made.findings} == {"rod.sheet.md"}
@@ -247,12 +279,14 @@ def test_only_the_name_of_the_file_is_told() -> None:
 def test_a_finding_about_a_whole_file_stands_at_its_first_line() -> None:
     made = finding_record(Finding("no-criterion", "note", "said", None, Source("a/b.sheet.md", "x\ny\n")))
     assert (made.line, made.column, made.file, made.help) == (1, 1, "b.sheet.md", "")
-    placed = finding_record(Finding("no-note", "warning", "said", Span(2, 3), Source("b.sheet.md", "x\ny\n"), help="mend"))
+    placed = finding_record(
+        Finding("no-note", "warning", "said", Span(2, 3), Source("b.sheet.md", "x\ny\n"), help="mend")
+    )
     assert (placed.line, placed.column, placed.help) == (2, 1, "mend")
 
 
 def test_text_stays_as_typed() -> None:
-    made = file_of("---\ntitle: Løfteøre 吊耳 \"x\"\n---\n\n    σ = 1 MPa -- Spannung “zulässig”\n")
+    made = file_of('---\ntitle: Løfteøre 吊耳 "x"\n---\n\n    σ = 1 MPa -- Spannung “zulässig”\n')
     text = made.to_json()
     assert "Løfteøre 吊耳" in text
     assert "Spannung “zulässig”" in text

@@ -40,14 +40,38 @@ def trace() -> Trace:
     return loadpath.evaluate(loadpath.read_text(SHEET))
 
 
-# --- what feeds what --------------------------------------------------------------------------------------------
+# --- what feeds what ----------------------------------------------------------------------------------------
 
 
 @pytest.mark.parametrize(
     ("id", "feeds", "fed_by"),
     [
-        ("P", set(), {"sigma", "f", "u", "q", "strength: sigma <= 60 MPa", "stability buckling", "valid: u <= 3", "check: sigma*A = P"}),
-        ("sigma", {"P", "A"}, {"f", "u", "strength: sigma <= 60 MPa", "stability buckling", "valid: u <= 3", "check: sigma*A = P"}),
+        (
+            "P",
+            set(),
+            {
+                "sigma",
+                "f",
+                "u",
+                "q",
+                "strength: sigma <= 60 MPa",
+                "stability buckling",
+                "valid: u <= 3",
+                "check: sigma*A = P",
+            },
+        ),
+        (
+            "sigma",
+            {"P", "A"},
+            {
+                "f",
+                "u",
+                "strength: sigma <= 60 MPa",
+                "stability buckling",
+                "valid: u <= 3",
+                "check: sigma*A = P",
+            },
+        ),
         ("u", {"f", "sigma", "P", "A"}, {"valid: u <= 3"}),
         ("strength: sigma <= 60 MPa", {"sigma", "P", "A"}, set()),
         ("T", set(), set()),
@@ -77,7 +101,7 @@ def test_steps_by_id_and_by_name(trace: Trace) -> None:
             missing()
 
 
-# --- one step ---------------------------------------------------------------------------------------------------
+# --- one step -----------------------------------------------------------------------------------------------
 
 
 def test_values_in_their_units(trace: Trace) -> None:
@@ -95,7 +119,13 @@ def test_notes_and_sources(trace: Trace) -> None:
 
 
 def test_lines_and_numbers(trace: Trace) -> None:
-    assert [(s.number, s.line) for s in trace][:5] == [("0.1", 6), ("0.2", 7), ("0.3", 9), ("1.1", 13), ("1.2", 14)]
+    assert [(s.number, s.line) for s in trace][:5] == [
+        ("0.1", 6),
+        ("0.2", 7),
+        ("0.3", 9),
+        ("1.1", 13),
+        ("1.2", 14),
+    ]
     assert trace.sections == ((1, "One"),)
 
 
@@ -109,7 +139,7 @@ def test_criteria_are_those_that_could_not_be_read_too(trace: Trace) -> None:
     assert unread.why == "not computed because of line 21"
 
 
-# --- verdicts in words ------------------------------------------------------------------------------------------
+# --- verdicts in words --------------------------------------------------------------------------------------
 
 
 @pytest.mark.parametrize(
@@ -120,18 +150,26 @@ def test_criteria_are_those_that_could_not_be_read_too(trace: Trace) -> None:
         (Verdict(True, conditional_on=("A1", "A3")), "", "satisfied, conditional on A1, A3"),
         (Verdict(False, conditional_on=("A1",)), "", "not satisfied"),
         (Verdict(True, one_sided=True), "", "satisfied on one side only"),
-        (Verdict(True, one_sided=True, conditional_on=("A1",)), "", "satisfied on one side only, conditional on A1"),
+        (
+            Verdict(True, one_sided=True, conditional_on=("A1",)),
+            "",
+            "satisfied on one side only, conditional on A1",
+        ),
         (Verdict(None, outside=("chi",)), "", "not shown: outside the range of chi"),
         (Verdict(None, outside=("chi", "phi")), "", "not shown: outside the range of chi, phi"),
         (Verdict(None), "not computed because of line 12", "not shown: not computed because of line 12"),
-        (Verdict(None, conditional_on=("A1",)), "not computed because of line 12", "not shown: not computed because of line 12"),
+        (
+            Verdict(None, conditional_on=("A1",)),
+            "not computed because of line 12",
+            "not shown: not computed because of line 12",
+        ),
     ],
 )
 def test_words_of_a_verdict(verdict: Verdict, why: str, words: str) -> None:
     assert verdict.words(why) == words
 
 
-# --- findings ---------------------------------------------------------------------------------------------------
+# --- findings -----------------------------------------------------------------------------------------------
 
 
 def test_further_findings_are_put_in_their_place(trace: Trace) -> None:
@@ -142,12 +180,14 @@ def test_further_findings_are_put_in_their_place(trace: Trace) -> None:
     assert trace.with_findings(trace.findings).findings == trace.findings
 
 
-@pytest.mark.parametrize(("line", "errors"), [("x = 1 mm -- a", False), ("x = 1 mm + 2 s -- a", True), ("limit x: 1 <= 2", False)])
+@pytest.mark.parametrize(
+    ("line", "errors"), [("x = 1 mm -- a", False), ("x = 1 mm + 2 s -- a", True), ("limit x: 1 <= 2", False)]
+)
 def test_errors_make_a_document_unfit_for_use(line: str, errors: bool) -> None:
     assert loadpath.evaluate(loadpath.read_text(f"---\ntitle: T\n---\n\n    {line}\n")).has_errors is errors
 
 
-# --- digest -----------------------------------------------------------------------------------------------------
+# --- digest -------------------------------------------------------------------------------------------------
 
 PNG = bytes.fromhex(
     "89504e470d0a1a0a0000000d494844520000000100000001080000000003a7e9"
@@ -155,7 +195,9 @@ PNG = bytes.fromhex(
 )
 
 
-def digest(text: str = SHEET, project: str = "owner: Yard\n", image: bytes = PNG, path: str = "a.sheet.md") -> str:
+def digest(
+    text: str = SHEET, project: str = "owner: Yard\n", image: bytes = PNG, path: str = "a.sheet.md"
+) -> str:
     world = MemoryWorld({"project.yaml": project.encode(), "s.png": image})
     return loadpath.evaluate(read_sheet(Source(path, text + "\n\n![A sketch](s.png)\n"), world)).digest
 
@@ -165,5 +207,10 @@ def test_the_digest_covers_text_project_and_images_and_nothing_else() -> None:
     assert len(own) == 64
     assert own == digest()
     assert own == digest(path="elsewhere/b.sheet.md")
-    others = {digest(SHEET.replace("20 kN", "21 kN")), digest(project="owner: Yards\n"), digest(image=PNG + b"\0"), digest(SHEET + " ")}
+    others = {
+        digest(SHEET.replace("20 kN", "21 kN")),
+        digest(project="owner: Yards\n"),
+        digest(image=PNG + b"\0"),
+        digest(SHEET + " "),
+    }
     assert len(others | {own}) == 5

@@ -35,6 +35,7 @@ from loadpath.formula.statements import Criterion
 from loadpath.formula.tree import Shown
 from loadpath.sheet import Formulas, Heading, Image, Value, Words
 from loadpath.sheet import Prose as SheetProse
+from loadpath.sheet.values import pieces
 from loadpath.text import Span
 from loadpath.trace import Step, Trace, criterion_kind, criterion_name, texts
 from loadpath.trace.digits import ratio_text
@@ -98,12 +99,8 @@ class _Builder:
         return texts.display(step, unit if value.unit else None) or f"[{value.name} {step.why or 'not computed'}]"
 
     def _words(self, words: Words) -> Prose:
-        parts: list[str | Shown] = []
-        rest = words.text
-        for value in words.values:
-            before, typed, rest = rest.partition(value.typed)
-            parts += [before.replace("\\{", "{"), self.values.get(value, typed)]
-        return tuple(p for p in [*parts, rest.replace("\\{", "{")] if p != "")
+        parts = (self.values.get(p, p.typed) if isinstance(p, Value) else p for p in pieces(words))
+        return tuple(part for part in parts if part != "")
 
     # --- front ---
 
@@ -154,13 +151,16 @@ class _Builder:
         by_block = self._place_findings()
         blocks: list[Block] = []
         headings = iter(self.trace.sections)
+        levels = (b.level for b in self.trace.sheet.blocks if isinstance(b, Heading))
+        top = next((level for level, (number, _) in zip(levels, self.trace.sections, strict=True) if number), 1)
         step = 0
-        top = min((b.level for b in self.trace.sheet.blocks if isinstance(b, Heading)), default=1)
+        above = 2
         for index, block in enumerate(self.trace.sheet.blocks):
             if isinstance(block, Heading):
                 number, _ = next(headings)
-                if number or block.text.strip() != self.front.title.strip():
-                    blocks.append(SectionHead(2 if number else min(3 + max(block.level - top - 1, 0), 6), number, block.tokens, block.text))
+                if number or block.level > 1:  # the only heading of level 1 without a number is the title again
+                    above = 2 if number else min(max(block.level - top + 2, 3), above + 1, 6)
+                    blocks.append(SectionHead(above, number, block.tokens, block.text))
             elif isinstance(block, Formulas):
                 for _ in block.statements:
                     if step < len(self.trace.steps):

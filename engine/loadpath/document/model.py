@@ -106,6 +106,7 @@ class BranchRow:
     taken: bool
     numbers: tuple[Node, ...] = ()
     """The condition with its numbers, where it is the one taken."""
+    note: tuple[Inline, ...] = ()
 
 
 @dataclass(frozen=True, slots=True)
@@ -132,7 +133,7 @@ class FunctionRow:
     name: Node
     body: Node | None
     branches: tuple[BranchRow, ...]
-    units: str
+    units: Line
     """`x in m, M in kN⋅m`."""
 
 

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections import defaultdict
 from dataclasses import dataclass, field
+from textwrap import dedent
 
 from loadpath.document.model import (
     BranchRow,
@@ -22,19 +23,20 @@ from loadpath.document.model import (
     StepBlock,
 )
 from loadpath.findings import Finding
-from loadpath.formula.canonical import text
 from loadpath.formula.names import plain_symbol
 from loadpath.formula.statements import (
     Check,
     Choice,
     Criterion,
     Definition,
+    Faulty,
     FunctionDefinition,
     Note,
-
+    Statement,
     Validity,
 )
 from loadpath.formula.tree import Binary, Call, Cases, Logic, Name, Node, Relation, Shown
+from loadpath.resolve import expressions
 from loadpath.trace import Called, Step, Trace, Working, criterion_kind, criterion_name, texts
 from loadpath.trace.digits import ratio_text, typed_number
 from loadpath.trace.file import verdict_words
@@ -66,7 +68,7 @@ class StepWriter:
             case _ if step.kind == "faulty" and criterion_kind(step):
                 return self._faulty_criterion(step, head)
             case _ if step.kind == "faulty":
-                return FaultyRow(head, getattr(statement, "text", ""))
+                return FaultyRow(head, _as_typed(statement))
             case Definition() if step.kind == "input":
                 return self._input(step, statement, head)
             case Choice():
@@ -85,7 +87,7 @@ class StepWriter:
         by_id = self.trace.by_id
         from_, to = [by_id[i] for i in step.uses], [by_id[i] for i in step.used_by]
         return Head(
-            step.number, step.kind, self.inlines(step.statement.notes), tuple(ref(s) for s in from_),
+            step.number, step.kind, self.inlines(_own_notes(step.statement)), tuple(ref(s) for s in from_),
             tuple(ref(s) for s in to), findings, step.why,
         )  # fmt: skip
 
@@ -121,16 +123,16 @@ class StepWriter:
         name = Name(statement.name)
         if working is None:
             typed = statement.value if not isinstance(statement.value, Cases) else None
-            branches = self.branches(statement.value, None)
+            branches = self.branches(statement, statement.value, None)
             return ResultRow(head, name, (typed,) if typed else (), None, True, branches)
         put = texts.step_substitution(self.trace, step)
         sides = (working.tree, *((put.tree,) if put and not isinstance(put.tree, Shown) else ()))
         return ResultRow(
             head, name, sides if not working.taken else sides[1:] or sides, texts.display(step), put.closes if put else True,
-            self.branches(statement.value, working), self._lines(working), self.calls(working),
+            self.branches(statement, statement.value, working), self._lines(working), self.calls(working),
         )  # fmt: skip
 
-    def branches(self, value: Node, working: Working | None) -> tuple[BranchRow, ...]:
+    def branches(self, statement: Statement, value: Node, working: Working | None) -> tuple[BranchRow, ...]:
         """The branches of a `cases`, the taken one marked, its condition with numbers."""
         if not isinstance(value, Cases):
             return ()
@@ -139,8 +141,12 @@ class StepWriter:
         if working is not None:
             numbers = tuple(c.evaluated for c in texts.conditions(self.trace, working))
         return tuple(
-            BranchRow(b.value, b.condition, i == taken, numbers if i == taken else ()) for i, b in enumerate(value.branches)
-        )
+            BranchRow(
+                b.value, b.condition, i == taken, numbers if i == taken else (),
+                self.inlines(_notes_between(statement, b.span.start, value.branches[i + 1].span.start if i + 1 < len(value.branches) else None)),
+            )
+            for i, b in enumerate(value.branches)
+        )  # fmt: skip
 
     def _lines(self, working: Working) -> tuple[Line, ...]:
         out = []
@@ -173,12 +179,12 @@ class StepWriter:
         asked = [(p.name, p.unit.text) for p in statement.parameters if p.unit]
         if statement.unit:
             asked.append((statement.name, statement.unit.text))
-        units = [f"{plain_symbol(n)} in {unit_symbol(unit)}" for n, unit in asked if unit != "1"]
-        plain_ones = [plain_symbol(n) for n, unit in asked if unit == "1"]
-        if plain_ones:
-            units.append(f"{', '.join(plain_ones)} plain")
+        units: list[str | Node] = []
+        for n, unit in asked:
+            words = " plain" if unit == "1" else f" in {unit_symbol(unit)}"
+            units += [", ", Name(n), words]
         body = None if isinstance(statement.body, Cases) else statement.body
-        return FunctionRow(head, name, body, self.branches(statement.body, None), ", ".join(units))
+        return FunctionRow(head, name, body, self.branches(statement, statement.body, None), Line(tuple(units[1:])))
 
     # --- judged steps ---
 
@@ -198,7 +204,7 @@ class StepWriter:
         name = criterion_name(step) if criterion_name(step) != step.id else ""
         return CriterionBox(
             head, kind, name, None, (), "", None, None, verdict_words(step, plain_symbol), True, False, None,  # type: ignore[arg-type]
-            typed=getattr(step.statement, "text", ""),
+            typed=_as_typed(step.statement),
         )  # fmt: skip
 
     def _compared_lines(self, step: Step) -> tuple[Node, ...]:
@@ -241,18 +247,26 @@ class StepWriter:
         if isinstance(statement, Validity):
             names = [part for name, _ in statement.names for part in (", ", Name(name))]
             words = Line(("for ", *names[1:]))
-            listed = ", ".join(plain_symbol(name) for name, _ in statement.names)
-            good, bad = "within the range", f"outside the range of {listed}"
         else:
             words = Line(("within ", statement.tolerance))
-            good, bad = "holds", "does not hold"
         holds = step.verdict.satisfied if step.verdict else None
-        verdict = {True: good, False: bad, None: f"not shown: {step.why}" if step.why else "not shown"}[holds]
+        verdict = verdict_words(step, plain_symbol)
         calls = self.calls(step.working) if step.working else ()
         return JudgedRow(head, statement.relation, self._compared_lines(step), words, verdict, holds, calls)
 
 
 # --- helpers ----------------------------------------------------------------------------------------------------
+
+
+def _notes_between(statement: Statement, start: int, end: int | None) -> tuple[Note, ...]:
+    """The notes on the lines of one branch."""
+    return tuple(n for n in statement.notes if n.span.start >= start and (end is None or n.span.start < end))
+
+
+def _own_notes(statement: Statement) -> tuple[Note, ...]:
+    """The notes of a statement itself; those on the branches of its `cases` stand at the branches."""
+    tree = next((t for t in expressions(statement) if isinstance(t, Cases)), None)
+    return statement.notes if tree is None else tuple(n for n in statement.notes if n.span.start < tree.branches[0].span.start)
 
 
 def ref(step: Step) -> Ref:
@@ -261,6 +275,11 @@ def ref(step: Step) -> Ref:
         words = step.id if step.kind not in ("valid", "check") else step.kind
         return Ref(step.number, words, is_name=False)
     return Ref(step.number, step.entry.name)
+
+
+def _as_typed(statement: Statement) -> str:
+    """The lines of a statement that could not be read, without the depth of its block."""
+    return dedent(statement.text).strip() if isinstance(statement, Faulty) else ""
 
 
 def is_listed(step: Step) -> bool:

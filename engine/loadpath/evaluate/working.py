@@ -61,7 +61,12 @@ class Observer:
                 if isinstance(node, Call) and node.function not in FUNCTIONS and node not in done and self.left > 0:
                     done.add(node)
                     self.left -= 1
-                    yield self._called(node, parameters, scope, types)
+                    try:
+                        called = self._called(node, parameters, scope, types)
+                    except (ArithmeticError, ValueError):
+                        # what a condition passes over (`when x = 0 or f(x) <= 3`) need not have a value
+                        continue
+                    yield called
 
     def _called(self, call: Call, parameters: Values, scope: Mapping[str, Operand], types: dict[str, Type]) -> Called:
         definition = self.resolved.checker.function(call.function)

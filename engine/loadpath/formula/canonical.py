@@ -48,7 +48,7 @@ def level(node: Node) -> int:
             return PRODUCT
         case Negative():
             return SIGN
-        case Shown(number=number, unit=unit) if number.startswith("-") and unit not in ("degC", "degF"):
+        case Shown(number=number) if number.startswith("-"):
             return SIGN
         case Quantity(parts=(Part(whole=whole), *_)) if whole.startswith("-"):
             return SIGN

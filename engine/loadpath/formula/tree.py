@@ -222,9 +222,12 @@ def children(node: Node | Branch) -> Iterator[Node | Branch]:
 
 def walk(node: Node | Branch) -> Iterator[Node | Branch]:
     """The node and everything below it, in reading order."""
-    yield node
-    for child in children(node):
-        yield from walk(child)
+    waiting = [node]
+    while waiting:
+        node = waiting.pop()
+        yield node
+        if type(node) in _CHILDREN:
+            waiting += reversed(tuple(children(node)))
 
 
 def span_of(node: Node) -> Span:

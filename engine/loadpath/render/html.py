@@ -14,7 +14,7 @@ from markupsafe import Markup, escape
 from loadpath.document.model import Block, Document, FigureBlock, Ref, TitleBlock
 from loadpath.formula.names import symbol
 from loadpath.formula.tree import Name, Node, Shown
-from loadpath.render.math.mathml import flow, mathml
+from loadpath.render.math import COLUMN, PAGE, flow, mathml, widest
 from loadpath.render.templates import environment, folder
 from loadpath.units.printing import quantity
 
@@ -38,8 +38,10 @@ def render(document: Document) -> str:
 def _environment() -> Any:
     return environment({
         "math": lambda node: Markup(mathml(node)),
+        "flat": lambda node: Markup(mathml(node, flat=True)),
         "flow": _flow,
-        "name_math": lambda name: Markup(mathml(Name(name))),
+        "are_wide": _are_wide,
+        "name_math": lambda name: _flow(Name(name)),
         "shown": printed,
         "symbol": symbol_html,
         "ref": ref_html,
@@ -137,8 +139,13 @@ def breaks(text: str) -> Markup:
     return Markup("_<wbr>").join(escape(part) for part in text.split("_"))
 
 
-def _flow(node: Node, sign: str = "") -> Markup:
-    return Markup("<wbr>").join(Markup(piece) for piece in flow(node, sign))
+def _flow(node: Node, sign: str = "", wide: bool = False) -> Markup:
+    return Markup("<wbr>").join(Markup(piece) for piece in flow(node, sign, most=PAGE if wide else COLUMN))
+
+
+def _are_wide(sides: tuple[Node, ...]) -> bool:
+    """True where a formula does not fit beside the results: the result then stands beneath it."""
+    return any(widest(side) > COLUMN for side in sides)
 
 
 def _figure(block: FigureBlock) -> str:

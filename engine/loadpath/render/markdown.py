@@ -12,7 +12,7 @@ from markupsafe import Markup
 from loadpath.document.model import CallLine, Document, FigureBlock, Line, ProseBlock, Ref, SectionHead
 from loadpath.formula.names import plain_symbol
 from loadpath.formula.tree import Name, Node, Shown
-from loadpath.render.math.latex import latex
+from loadpath.render.math import latex, latex_lines
 from loadpath.render.templates import environment
 from loadpath.units.printing import quantity
 
@@ -37,7 +37,8 @@ def render(document: Document, stem: str) -> tuple[str, dict[str, bytes]]:
 @lru_cache(maxsize=1)
 def _environment() -> Any:
     filters: dict[str, Callable[..., Any]] = {
-        "latex": lambda node: Markup(latex(node)),
+        "display": lambda node: Markup(f"$$\n{latex(node)}\n$$"),
+        "equation": lambda name, sides: Markup(f"$$\n{latex_lines(name, sides)}\n$$"),
         "inline": _inline_math,
         "shown": _shown,
         "ref": _ref,
@@ -74,7 +75,7 @@ def prose(block: ProseBlock, document: Document) -> Markup:
             parts += [_harmless(block.text[at - block.start : start - block.start]), str(_shown(value))]
             at = stop
     parts.append(_harmless(block.text[at - block.start :]))
-    return Markup("".join(parts).replace("\\{", "{"))
+    return Markup("".join(parts))
 
 
 def _harmless(text: str) -> str:

@@ -177,7 +177,7 @@ class Checker:
         if left.unknown or right.unknown:
             return UNKNOWN
         a, b = left.dimension, right.dimension
-        joined = held(a.times(b) if node.operator == "*" else a.over(b), node.at)
+        joined = held(a.times(b) if node.operator == "*" else a.over(b), node.at, self.system)
         return Type(joined, flavour=_flavour_of_product(node, left, right), mass=left.mass or right.mass)
 
     def _power(self, node: Binary, parameters: Parameters | None) -> Type:
@@ -204,7 +204,7 @@ class Checker:
     def root(self, base: Type, power: Fraction, at: Span) -> Type:
         """The type of a power; the root of stiffness over mass is a speed in rad/s."""
         turning: Flavour = "turning" if base.dimension == _SQUARE_RATE and power == Fraction(1, 2) else ""
-        return Type(held(base.dimension.power(power), at), flavour=turning, mass=base.mass)
+        return Type(held(base.dimension.power(power), at, self.system), flavour=turning, mass=base.mass)
 
     def _bracket(self, node: Bracket, parameters: Parameters | None) -> Type:
         inner = self.number(node.inner, parameters)
@@ -212,7 +212,7 @@ class Checker:
             raise no_multiple(node.span)
         if inner.unknown:
             return UNKNOWN
-        return Type(held(inner.dimension.power(Fraction(node.power)), node.span))
+        return Type(held(inner.dimension.power(Fraction(node.power)), node.span, self.system))
 
     def _as(self, node: As, parameters: Parameters | None) -> Type:
         inner = self.number(node.operand, parameters)

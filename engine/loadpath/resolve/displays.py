@@ -36,8 +36,8 @@ class Displays:
             return *self.checker.shown(found, asked, value), True
         if found.unknown:
             return found, ONE, False
-        # a bare 0 fits any dimension, but a name has one
-        found = replace(found, zero=False)
+        if found.zero:  # a bare 0 fits any dimension, but a name has one
+            found = replace(found, zero=False)
         if typed and (unit := typed_unit(value, found)) is not None:
             return found, unit, False
         return found, self._fitting(found), False

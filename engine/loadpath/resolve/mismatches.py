@@ -2,19 +2,17 @@
 
 from __future__ import annotations
 
-from fractions import Fraction
-
 from loadpath.findings import Remark
 from loadpath.formula.canonical import text
 from loadpath.formula.mistake import Mistake
 from loadpath.formula.tree import Binary, Negative, Node, Number
 from loadpath.resolve.model import UNKNOWN, Type
 from loadpath.text import Span
-from loadpath.units import Dimension, UnitSystem, say
+from loadpath.units import BadUnit, Dimension, UnitSystem, say
 from loadpath.units.dimension import ACCELERATION, TEMPERATURE
 
-LARGEST_POWER = 1000
-"""Numerator and denominator of an exponent in a dimension."""
+USUAL_POWER, USUAL_PARTS = 24, (1, 2, 3, 4, 6)
+"""Exponents within these, with these denominators, have a unit in every system."""
 MASS_UNITS = {"lb": "lbf", "kg": "kgf or N", "g": "N", "tonne": "kN", "slug": "lbf", "short_ton": "short_tonf"}
 """Units of mass, with the unit of force that is meant where one is used as a force."""
 _NO_ARTICLE = ("time", "temperature", "acceleration")
@@ -59,10 +57,15 @@ def _is_typed(node: Node) -> bool:
     return isinstance(node, Number) or (isinstance(node, Negative) and isinstance(node.operand, Number))
 
 
-def held(dimension: Dimension, at: Span) -> Dimension:
-    """The dimension, or a mistake where its exponents are beyond anything that is meant."""
-    if any(max(abs(p.numerator), p.denominator) > LARGEST_POWER for p in dimension if type(p) is Fraction):
-        raise Mistake("over-limit", at, "the powers of the units get out of hand here", "check the exponents")
+def held(dimension: Dimension, at: Span, system: UnitSystem) -> Dimension:
+    """The dimension, or a mistake where no unit can be written for it."""
+    if all(abs(power) <= USUAL_POWER and power.denominator in USUAL_PARTS for power in dimension):
+        return dimension
+    try:
+        system.unit_for(dimension)
+    except BadUnit:
+        mend = "check the exponents; an empirical power is taken of a plain number: `(f_c as MPa)`"
+        raise Mistake("over-limit", at, "no unit can be written for what comes out here", mend) from None
     return dimension
 
 
@@ -87,11 +90,11 @@ def no_bare_zero(at: Span) -> Mistake:
 
 def sum_of_temperatures(node: Binary, left: Type, right: Type) -> Type:
     """The type of a sum or difference in which an absolute temperature stands, or the mistake."""
+    if left.unknown or right.unknown:
+        return UNKNOWN
+    if left.zero or right.zero:
+        raise no_bare_zero(node.at)
     for found, other in ((left, right), (right, left)):
-        if found.unknown:
-            return UNKNOWN
-        if found.zero:
-            raise no_bare_zero(node.at)
         if found.absolute and other.dimension != TEMPERATURE:
             message = f"`{node.operator}` joins a temperature and {article(other.dimension)}"
             raise Mistake("unit-mismatch", node.at, message, factor_between(TEMPERATURE, other.dimension))

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from collections.abc import Iterable
 from difflib import get_close_matches
 
@@ -23,8 +24,8 @@ from loadpath.functions import FUNCTIONS, LATER
 from loadpath.resolve.parts import PI, Use, defined_by
 from loadpath.text import Source, Span
 
-MOST_SUGGESTIONS = 100
-"""On one sheet; each of them goes over all names."""
+MOST_COMPARED = 50_000
+"""Names that are held against misspelt ones on one sheet; beyond that nothing is suggested."""
 
 
 class Suggestions:
@@ -32,14 +33,14 @@ class Suggestions:
 
     def __init__(self) -> None:
         self.made: set[str] = set()
-        self._left = MOST_SUGGESTIONS
+        self._left = MOST_COMPARED
 
     def nearest(self, name: str, known: Iterable[str]) -> str:
         """The suggestion of the closest known name, "" where none is near."""
-        if not self._left:
+        if self._left <= 0:
             return ""
-        self._left -= 1
         names = sorted(k for k in known if abs(len(k) - len(name)) <= 3)
+        self._left -= len(names)
         folded = {k.casefold(): k for k in reversed(names)}
         same = folded.get(name.casefold())
         close = [same] if same else get_close_matches(name, names, 1, 0.6)
@@ -150,6 +151,8 @@ def step_id(statement: Statement) -> str:
             return "check: " + statement_text(statement).rsplit(" within ", 1)[0]
         case Faulty(criterion=(kind, own)):
             return f"{kind} {own}" if own else _first_words(statement)
+        case Faulty(text=typed) if re.match(r"\s*(use|take|unknown|beam|plot|tabulate|figure)\s+\w", typed):
+            return _first_words(statement)
         case Faulty(names=(name, *_)):
             return name
         case Faulty():

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Iterator
 from dataclasses import dataclass
+from functools import lru_cache
 
 from loadpath.formula.lines import without_notes
 from loadpath.formula.names import canonical, words_in
@@ -17,7 +18,7 @@ from loadpath.formula.statements import (
     Statement,
     Validity,
 )
-from loadpath.formula.tree import As, Call, Name, Node, Quantity, Relation, walk
+from loadpath.formula.tree import As, Branch, Call, Name, Node, Quantity, Relation, walk
 from loadpath.functions import FUNCTIONS, LATER
 from loadpath.resolve.model import Kind
 from loadpath.text import Span
@@ -49,6 +50,14 @@ def defined_by(statement: Statement) -> tuple[tuple[str, Span], ...]:
     return ()
 
 
+Nodes = tuple[Node | Branch, ...]
+
+
+def nodes_in(statement: Statement) -> Nodes:
+    """Every node of a statement's trees, in reading order."""
+    return tuple(node for tree in expressions(statement) for node in walk(tree))
+
+
 def expressions(statement: Statement) -> tuple[Node, ...]:
     """The trees that a statement holds."""
     match statement:
@@ -67,50 +76,53 @@ def relations_in(statement: Statement) -> tuple[Relation, ...]:
     """The relations that a judged statement compares, in reading order; () for other statements."""
     if not isinstance(statement, Criterion | Validity | Check):
         return ()
-    return tuple(node for tree in expressions(statement) for node in walk(tree) if isinstance(node, Relation))
+    return tuple(node for node in nodes_in(statement) if isinstance(node, Relation))
 
 
-def uses_in(statement: Statement) -> Iterator[Use]:
+def uses_in(statement: Statement, nodes: Nodes) -> Iterator[Use]:
     """Each use of a name that the sheet must bring, in reading order; parameters, `pi` and built-ins left out."""
-    own = {p.name for p in statement.parameters} if isinstance(statement, FunctionDefinition) else set()
-    for tree in expressions(statement):
-        bound = own | _bound_in(tree)
-        for node in walk(tree):
-            if isinstance(node, Name) and node.name not in bound and node.name != PI:
+    bound = _bound_in(nodes)
+    if isinstance(statement, FunctionDefinition):
+        bound |= {parameter.name for parameter in statement.parameters}
+    for node in nodes:
+        if isinstance(node, Name):
+            if node.name not in bound and node.name != PI:
                 yield Use(node.name, node.span, False)
-            elif isinstance(node, Call) and node.function not in FUNCTIONS:
-                yield Use(node.function, node.at, True)
+        elif isinstance(node, Call) and node.function not in FUNCTIONS:
+            yield Use(node.function, node.at, True)
     if isinstance(statement, Validity):
         for name, span in statement.names:
             yield Use(name, span, False)
 
 
-def _bound_in(tree: Node) -> set[str]:
+def _bound_in(nodes: Nodes) -> set[str]:
     """The names that live only within a call of a function that this version cannot work."""
-    return {
-        node.arguments[1].name
-        for node in walk(tree)
-        if isinstance(node, Call) and node.function in _BINDING and len(node.arguments) > 1
-        and isinstance(node.arguments[1], Name)
-    }  # fmt: skip
+    calls = [n for n in nodes if isinstance(n, Call) and n.function in _BINDING and len(n.arguments) > 1]
+    return {call.arguments[1].name for call in calls if isinstance(call.arguments[1], Name)}
 
 
-def mentioned_in(statement: Statement) -> Iterator[str]:
+def mentioned_in(statement: Statement, nodes: Nodes) -> Iterator[str]:
     """Words that may have been meant as names: parts of units, and whatever a faulty line holds."""
     if isinstance(statement, Faulty):
         yield from map(canonical, words_in(without_notes(statement.text)))
-    for tree in expressions(statement):
-        for node in walk(tree):
-            units = [p.unit for p in node.parts] if isinstance(node, Quantity) else []
-            for unit in [node.unit] if isinstance(node, As) else units:
-                yield from map(canonical, words_in(unit))
+    for node in nodes:
+        if isinstance(node, Quantity):
+            for part in node.parts:
+                yield from _words_in_unit(part.unit)
+        elif isinstance(node, As):
+            yield from _words_in_unit(node.unit)
 
 
-def kind_of(statement: Statement) -> Kind:
+@lru_cache(maxsize=4096)
+def _words_in_unit(unit: str) -> tuple[str, ...]:
+    return tuple(canonical(word) for word in words_in(unit))
+
+
+def kind_of(statement: Statement, nodes: Nodes) -> Kind:
     """What sort of step a statement is."""
     match statement:
-        case Definition(value=value):
-            return "result" if any(_is_named(node) for node in walk(value)) else "input"
+        case Definition():
+            return "result" if any(_is_named(node) for node in nodes) else "input"
         case Choice():
             return "choice"
         case FunctionDefinition():

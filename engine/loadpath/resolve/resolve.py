@@ -7,12 +7,12 @@ from dataclasses import dataclass
 from loadpath.findings import Finding, Remark, finding
 from loadpath.formula.mistake import Mistake
 from loadpath.formula.statements import Check, Choice, Criterion, Definition, FunctionDefinition, Statement, Validity
-from loadpath.formula.tree import Call, span_of, walk
+from loadpath.formula.tree import Call, span_of
 from loadpath.resolve.dimensions import Checker
 from loadpath.resolve.displays import Displays
 from loadpath.resolve.model import UNKNOWN, Entry, Kind, Resolved, Type
 from loadpath.resolve.names import Names, Suggestions, step_id
-from loadpath.resolve.parts import PI, defined_by, expressions, kind_of, mentioned_in, uses_in
+from loadpath.resolve.parts import PI, Nodes, defined_by, kind_of, mentioned_in, nodes_in, uses_in
 from loadpath.resolve.prose import values_in_prose
 from loadpath.resolve.units import read_unit
 from loadpath.sheet.model import Sheet
@@ -106,16 +106,17 @@ class _Resolver:
 
     def _statement(self, statement: Statement) -> None:
         self._citations(statement)
-        self.mentioned.update(word for word in mentioned_in(statement) if word in self.names)
-        kind = kind_of(statement)
+        nodes = nodes_in(statement)
+        self.mentioned.update(word for word in mentioned_in(statement, nodes) if word in self.names)
+        kind = kind_of(statement, nodes)
         refused = self._refused(statement) if kind != "faulty" else []
-        uses, hanging, unknown = self._uses(statement)
+        uses, hanging, unknown = self._uses(statement, nodes)
         mistakes, checked = refused + unknown, _Checked()
         try:
             if not hanging:
-                self._limit_work(statement)
+                self._limit_work(statement, nodes)
             if kind != "faulty":
-                checked = self._check(statement)
+                checked = self._check(statement, kind)
         except Mistake as mistake:
             if not unknown:
                 mistakes.append(mistake)
@@ -196,11 +197,11 @@ class _Resolver:
         refusals = (self.names.refused(name, span) for name, span in defined_by(statement))
         return [mistake for mistake in refusals if mistake is not None]
 
-    def _uses(self, statement: Statement) -> tuple[tuple[str, ...], int, list[Mistake]]:
+    def _uses(self, statement: Statement, nodes: Nodes) -> tuple[tuple[str, ...], int, list[Mistake]]:
         """Names used, each once; the line that blocks them (0 for none); what is wrong with them."""
         used: dict[str, None] = {}
         wrong: dict[str, Mistake] = {}
-        for use in uses_in(statement):
+        for use in uses_in(statement, nodes):
             owner = self.names.owner(use.name, self.faulty)
             if not owner:
                 wrong.setdefault(use.name, self.names.not_defined(use, statement))
@@ -228,14 +229,14 @@ class _Resolver:
 
     # --- dimensions ---
 
-    def _check(self, statement: Statement) -> _Checked:
+    def _check(self, statement: Statement, kind: Kind) -> _Checked:
         match statement:
             case Definition(value=value, unit=asked):
                 found = self.checker.type_of(value)
                 if found.words is not None:
                     message = "a choice cannot be given a second name"
                     raise Mistake("unknown-choice", span_of(value), message, "use the choice itself")
-                return _Checked(*self.displays.of_value(found, asked, value, kind_of(statement) == "input"))
+                return _Checked(*self.displays.of_value(found, asked, value, kind == "input"))
             case Choice():
                 return _Checked(_choice(statement))
             case FunctionDefinition():
@@ -249,11 +250,11 @@ class _Resolver:
 
     # --- how much work it is ---
 
-    def _limit_work(self, statement: Statement) -> None:
+    def _limit_work(self, statement: Statement, nodes: Nodes) -> None:
         """Functions of functions of functions can ask for more work than any machine has time for."""
-        work = sum(self._work_of(node) for tree in expressions(statement) for node in walk(tree))
-        calls = [n for tree in expressions(statement) for n in walk(tree) if isinstance(n, Call)]
-        depth = 1 + max((self.depth.get(call.function, 0) for call in calls), default=0)
+        called = [n.function for n in nodes if isinstance(n, Call)]
+        work = len(nodes) + sum(self.work.get(function, 0) for function in called)
+        depth = 1 + max((self.depth.get(function, 0) for function in called), default=0)
         if isinstance(statement, FunctionDefinition):
             self.work[statement.name], self.depth[statement.name] = work, depth
         else:
@@ -264,9 +265,6 @@ class _Resolver:
         if work > MOST_WORK or self.work_in_all > MOST_WORK_IN_ALL:
             message = "the functions that are called here ask for more work than the engine does"
             raise Mistake("over-limit", statement.span, message, "give what is worked often a name of its own")
-
-    def _work_of(self, node: object) -> int:
-        return 1 + (self.work.get(node.function, 0) if isinstance(node, Call) else 0)
 
 
 def _not_a_function(name: str, span: Span) -> Mistake:

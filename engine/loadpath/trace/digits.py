@@ -2,8 +2,9 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Sequence
-from itertools import pairwise
+from itertools import chain, pairwise
 
 from loadpath.formula.statements import Criterion
 from loadpath.formula.tree import Logic, Name, Negative, Node, Number, Quantity, Relation
@@ -36,9 +37,9 @@ def order_digits(values: Sequence[float], base: int) -> int:
 
     Fewer than `base` where so many would part values that count as equal.
     """
-    within = max(10.0 ** (2 - base), EQUAL)
+    within = max(math.pow(10, 2 - base), EQUAL)
     close = [(a, b) for a, b in pairwise(values) if abs(a - b) <= within * max(abs(a), abs(b))]
-    for digits in (*range(base, MOST_DIGITS + 1), *range(base - 1, 1, -1)):
+    for digits in chain(range(base, MOST_DIGITS + 1), range(base - 1, 1, -1)):
         if all(in_order(a, b, plain(a, digits), plain(b, digits)) for a, b in close):
             return digits
     return MOST_DIGITS

@@ -10,7 +10,7 @@ from typing import Any
 
 from loadpath.findings import Finding
 from loadpath.formula.canonical import text
-from loadpath.formula.statements import Criterion
+from loadpath.formula.statements import Check, Criterion, Validity
 from loadpath.resolve import expressions
 from loadpath.trace import texts
 from loadpath.trace.model import Step, Trace, criterion_kind
@@ -154,9 +154,17 @@ def verdict_words(step: Step, name: Callable[[str], str] = str) -> str:
     """The verdict of a judged step in words; "" for other steps. `name` says how names are written."""
     if step.verdict is None:
         return ""
-    if step.kind in ("valid", "check"):
-        return {True: "holds", False: "does not hold", None: f"not shown: {step.why}"}[step.verdict.satisfied]
+    if isinstance(step.statement, Validity | Check):
+        return _held(step.statement, step.verdict.satisfied, step.why, name)
     return step.verdict.words(step.why, name)
+
+
+def _held(statement: Validity | Check, held: bool | None, why: str, name: Callable[[str], str]) -> str:
+    if held is None:
+        return f"not shown: {why}" if why else "not shown"
+    if isinstance(statement, Check):
+        return "holds" if held else "does not hold"
+    return "within the range" if held else "outside the range of " + ", ".join(name(n) for n, _ in statement.names)
 
 
 def _criterion(step: Step) -> CriterionRecord:

@@ -12,7 +12,7 @@ from typing import Literal
 
 from loadpath.findings import Finding, ordered
 from loadpath.formula.canonical import text as formula_text
-from loadpath.formula.statements import Criterion, Statement
+from loadpath.formula.statements import Criterion, Faulty, Statement
 from loadpath.formula.tree import Branch, Call, Cases, Node
 from loadpath.resolve import Entry, Resolved
 from loadpath.sheet.model import Sheet
@@ -286,7 +286,7 @@ def criterion_kind(step: Step) -> str:
     statement = step.statement
     if isinstance(statement, Criterion):
         return statement.kind
-    return getattr(statement, "criterion", ("", ""))[0]
+    return _typed_criterion(statement)[0]
 
 
 def criterion_name(step: Step) -> str:
@@ -294,4 +294,9 @@ def criterion_name(step: Step) -> str:
     statement = step.statement
     if isinstance(statement, Criterion):
         return statement.name or formula_text(statement.relation)
-    return str(getattr(statement, "criterion", ("", ""))[1]) or step.id
+    return _typed_criterion(statement)[1] or step.id
+
+
+def _typed_criterion(statement: Statement) -> tuple[str, str]:
+    """Kind and name of a criterion that could not be read; two times "" for any other statement."""
+    return (statement.criterion if isinstance(statement, Faulty) else None) or ("", "")

@@ -5,6 +5,7 @@ All of it is trees and plain numbers: how they look (MathML, LaTeX, text) is up 
 
 from __future__ import annotations
 
+from contextlib import suppress
 from dataclasses import dataclass
 from itertools import pairwise
 
@@ -44,8 +45,9 @@ def display(step: Step, unit: Unit | None = None) -> Shown | None:
     own = operand(step)
     if own is None:
         return None
-    if unit is not None and unit.text != own.unit.text:
-        own = Operand(own.si, unit, own.digits)
+    if unit is not None and unit.text != own.unit.text and isinstance(own.si, float):
+        digits = exact_digits(unit.from_si(own.si), step.digits) if own.exact else own.digits
+        own = Operand(own.si, unit, digits)
     if isinstance(own.si, float) and own.unit.text.startswith("ft-in"):
         return Shown(feet_and_inches(own.unit.from_si(own.si), int(own.unit.text.partition("/")[2])).removesuffix(" in"), "in")
     return shown(own)
@@ -216,7 +218,9 @@ def conditions(trace: Trace, working: Working) -> tuple[Compared, ...]:
     out = []
     for node in walk(working.taken.branch.condition):
         if isinstance(node, Relation):
-            out.append(_condition(trace, working, node, scope))
+            # what the condition passes over (`when x = 0 or 1/x <= 3`) need not have a value
+            with suppress(ArithmeticError, ValueError):
+                out.append(_condition(trace, working, node, scope))
     return tuple(out)
 
 

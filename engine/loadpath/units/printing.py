@@ -121,11 +121,14 @@ _SHOWN = {
 }  # fmt: skip
 
 
+_POWER = re.compile(r"\^(?:\((-?\d+(?:\.\d+)?(?:/\d+)?)\)|(-?\d+(?:\.\d+)?))")
+
+
 @lru_cache(maxsize=4096)
 def unit_symbol(unit: str) -> str:
     """A typed unit as printed in running text: `kN⋅m`, `mm⁴`, `J/(kg⋅K)`, `°C`."""
     text = re.sub(r"[^\W\d]\w*", lambda match: _name_symbol(match.group()), unit)
-    text = re.sub(r"\^\(?(-?[\d./]+)\)?", lambda match: superscript(match.group(1)), text)
+    text = _POWER.sub(lambda m: superscript(m.group(1) or m.group(2)), text)
     return text.replace("*", "⋅")
 
 

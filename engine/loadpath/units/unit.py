@@ -17,6 +17,8 @@ PREFIXES = ("da", "n", "u", "µ", "μ", "m", "c", "d", "h", "k", "M", "G", "T")
 PREFIXED = ("m", "g", "N", "Pa", "J", "W", "s", "K", "Hz", "rad", "bar")
 """Units that take an SI prefix."""
 ABSOLUTE = ("degC", "degF")
+READING = 10
+"""Decimals of a reading on an absolute scale: finer than a float of so many kelvins can tell."""
 STEP_OF_DEGF = "delta_degF"
 """A difference in degrees Fahrenheit: what US results of that kind are shown in."""
 FEET_AND_INCHES = re.compile(r"ft-in +1/(2|4|8|16|32|64)")
@@ -75,7 +77,7 @@ class Unit:
     def from_si(self, si: float) -> float:
         """A coherent SI value as a number of this unit."""
         if self.absolute:
-            return float((Fraction(si) - self.offset) / self.factor) if isfinite(si) else si
+            return round(float((Fraction(si) - self.offset) / self.factor), READING) if isfinite(si) else si
         over, under = self._parts
         return si * under / over
 

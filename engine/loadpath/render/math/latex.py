@@ -241,8 +241,8 @@ def _subscript(text: str) -> str:
 
 
 def _subscript_part(part: str) -> str:
-    if part[:1] in _GREEK and part[1:].isdigit() | (len(part) == 1):
-        return f"\\{_GREEK[part[0]]}{f' {part[1:]}' if part[1:] else ''}"
+    if part[0] in _GREEK | _AS_LATIN and part[1:].isdigit() | (len(part) == 1):
+        return f"{_letter(part[0])} {part[1:]}".strip()
     return _upright(part)
 
 
