@@ -10,6 +10,7 @@ from dataclasses import dataclass
 from pathlib import Path
 
 from loadpath import __version__
+from loadpath.document import Document, build
 from loadpath.findings import finding
 from loadpath.project import SHEET_ENDING, MemoryWorld, write_atomically
 from loadpath.sheet import FrontMatter, Sheet, read_sheet, read_sheet_file
@@ -49,35 +50,34 @@ Files = dict[str, bytes]
 """Name of each file that a document consists of, and its bytes."""
 
 
-def _html(trace: Trace, stem: str) -> Files:
-    from loadpath.document import build
+def _html(_: Trace, document: Document, stem: str) -> Files:
     from loadpath.render.html import render
 
-    return {f"{stem}.html": render(build(trace, __version__)).encode()}
+    return {f"{stem}.html": render(document).encode()}
 
 
-def _markdown(trace: Trace, stem: str) -> Files:
-    from loadpath.document import build
+def _markdown(_: Trace, document: Document, stem: str) -> Files:
     from loadpath.render.markdown import render
 
-    text, images = render(build(trace, __version__), stem)
+    text, images = render(document, stem)
     return {f"{stem}.md": text.encode()} | images
 
 
-def _json(trace: Trace, stem: str) -> Files:
+def _json(trace: Trace, _: Document, stem: str) -> Files:
     from loadpath.trace.file import record
 
     return {f"{stem}.trace.json": record(trace, __version__).to_json().encode()}
 
 
-RENDERERS: dict[str, Callable[[Trace, str], Files]] = {"html": _html, "md": _markdown, "json": _json}
+RENDERERS: dict[str, Callable[[Trace, Document, str], Files]] = {"html": _html, "md": _markdown, "json": _json}
 
 
 def render(trace: Trace, stem: str, formats: Iterable[str] = FORMATS) -> Files:
     """The files of a document in the formats asked for. Raises KeyError for a format that there is none of."""
+    document = build(trace, __version__)
     files: Files = {}
     for name in formats:
-        files |= RENDERERS[name](trace, stem)
+        files |= RENDERERS[name](trace, document, stem)
     return files
 
 

@@ -55,7 +55,7 @@ def said(line: Line) -> str:
     return "".join(p if isinstance(p, str) else text(p) for p in line.parts)
 
 
-# --- conclusion first -------------------------------------------------------------------------------------------
+# --- conclusion first ---------------------------------------------------------------------------------------
 
 INPUTS = """
     x = 3 mm -- a
@@ -106,13 +106,16 @@ def test_the_first_line(outcomes: list[str], said: str) -> None:
     document = build(trace, "9.9.9")
     assert conclusion(trace) == said
     assert ", ".join(phrase for phrase, _ in document.summary.conclusion) == said
-    against = any(o in ("failed", "unshown", "unread", "sided") for o in outcomes) or not outcomes
-    strong = [phrase for phrase, strong in document.summary.conclusion if strong]
-    assert bool(strong) or outcomes == ["ok", "conditional"] or not against
+    weak = [phrase for phrase, strong in document.summary.conclusion if not strong]
+    all_satisfied = "conditional" in outcomes and set(outcomes) <= {"ok", "conditional"}
+    assert weak == ([said.partition(",")[0]] if all_satisfied else [])
 
 
 def test_every_doubt_is_listed_worst_first() -> None:
-    listed = built(sheet_of("ok", "conditional", "sided", "unread", "failed", "unshown", "conditional", "failed"), ASSUMED)
+    listed = built(
+        sheet_of("ok", "conditional", "sided", "unread", "failed", "unshown", "conditional", "failed"),
+        ASSUMED,
+    )
     names = [line.ref.name for line in listed.summary.listed if line.ref]
     assert names == ["failed8", "failed5", "unread4", "unshown6", "sided3", "conditional2", "conditional7"]
     strong = {line.ref.name for line in listed.summary.listed if line.ref and line.strong}
@@ -128,18 +131,26 @@ def test_every_doubt_is_listed_worst_first() -> None:
 def test_a_criterion_that_could_not_be_read_counts_as_not_shown() -> None:
     document = built("    x = 3 mm -- a\n    strength tension: x < = 5 mm\n")
     box = block(document, CriterionBox)
-    assert (box.criterion, box.title, box.relation, box.satisfied, box.shown) == ("strength", "tension", None, None, False)
+    assert (box.criterion, box.title, box.relation, box.satisfied, box.shown) == (
+        "strength",
+        "tension",
+        None,
+        None,
+        False,
+    )
     assert box.typed == "strength tension: x < = 5 mm"
     assert box.listed
-    assert [line.verdict for line in document.summary.governing][0] == "not shown: not computed because of line 6"
+    assert document.summary.governing[0].verdict == "not shown: not computed because of line 6"
     assert len(document.registers.criteria) == 1
 
 
-# --- what governs -----------------------------------------------------------------------------------------------
+# --- what governs -------------------------------------------------------------------------------------------
 
 
 def governing(lines: str, front: str = "") -> dict[str, tuple[str, str]]:
-    body = "    a = 9 mm -- a\n    b = 10 mm -- b\n    o = -1 mm -- o\n" + "".join(f"    {line}\n" for line in lines.splitlines())
+    body = "    a = 9 mm -- a\n    b = 10 mm -- b\n    o = -1 mm -- o\n" + "".join(
+        f"    {line}\n" for line in lines.splitlines()
+    )
     found = built(body, front).summary.governing
     assert [line.criterion for line in found] == ["strength", "stiffness", "stability"]
     return {line.criterion: (line.ref.name if line.ref else "", line.verdict) for line in found}
@@ -170,7 +181,7 @@ def test_a_kind_without_a_criterion() -> None:
     assert found["stiffness"] == ("", "no criterion and no reason given")
 
 
-# --- alerts -----------------------------------------------------------------------------------------------------
+# --- alerts -------------------------------------------------------------------------------------------------
 
 
 @pytest.mark.parametrize(
@@ -178,7 +189,11 @@ def test_a_kind_without_a_criterion() -> None:
     [
         ("", "", ("Not checked: no review on record.",)),
         ("    x = 1 +\n", "", ("Not for use: 1 error", "Not checked: no review on record.")),
-        ("    x = 1 +\n    y = 1 mm + 2 s\n", "", ("Not for use: 2 errors", "Not checked: no review on record.")),
+        (
+            "    x = 1 +\n    y = 1 mm + 2 s\n",
+            "",
+            ("Not for use: 2 errors", "Not checked: no review on record."),
+        ),
         ("", ASSUMED, ("Not checked: no review on record. 1 assumption to be confirmed.",)),
         (
             "",
@@ -193,7 +208,7 @@ def test_what_stands_against_use(body: str, front: str, alerts: tuple[str, ...])
 
 
 def test_assumptions_to_be_confirmed_name_what_hangs_on_them() -> None:
-    front = "assumptions: {A1: {text: The wall is dry, confirm: true}, A2: {text: Nobody knows, confirm: true}, A3: Known}\n"
+    front = ASSUMED.replace("}\n", ", A2: {text: Nobody knows, confirm: true}, A3: Known}\n")
     document = built(sheet_of("conditional", "ok", "conditional"), front)
     assert [(a.key, a.text, [r.name for r in a.criteria]) for a in document.summary.to_confirm] == [
         ("A1", "The wall is dry", ["limit conditional1", "limit conditional3"]),
@@ -201,11 +216,14 @@ def test_assumptions_to_be_confirmed_name_what_hangs_on_them() -> None:
     ]
 
 
-# --- prose of the front matter ----------------------------------------------------------------------------------
+# --- prose of the front matter ------------------------------------------------------------------------------
 
 
 def test_values_in_the_front_prose() -> None:
-    front = "objective: 'Show that {P} \\{P} and {P [lbf]} hold.'\nmethod: 'By {q}.'\nconclusion: '{s} is enough.'\n"
+    front = (
+        "objective: 'Show that {P} \\{P} and {P [lbf]} hold.'\nmethod: 'By {q}.'\n"
+        "conclusion: '{s} is enough.'\n"
+    )
     summary = built("    P = 20 kN -- p\n    s = P/(3 mm)^2\n    q = s + 1 kN\n", front).summary
     assert words(summary.objective) == "Show that {20 kN} {P} and {4496 lbf} hold."
     assert words(summary.method) == "By [q not computed because of line 10]."
@@ -226,15 +244,15 @@ def test_values_in_the_front_prose() -> None:
     ],
 )
 def test_a_value_in_prose(value: str, printed: Shown) -> None:
-    body = '    P = 20 kN -- p\n    r = P/3\n    L = 1600 mm -- l\n    t = 20 degC -- t\n    c = "b" of "a", "b" -- c\n'
+    body = (
+        "    P = 20 kN -- p\n    r = P/3\n    L = 1600 mm -- l\n    t = 20 degC -- t\n"
+        '    c = "b" of "a", "b" -- c\n'
+    )
     document = built(f"{body}\nIt is {value}.\n")
     assert list(document.values.values()) == [printed]
-    ((start, end, shown),) = document.value_spans
-    assert shown == printed
-    assert f"title: Lug\n---\n\n{body}\nIt is {value}.\n"[start - 4 : end - 4] == value
 
 
-# --- the body ---------------------------------------------------------------------------------------------------
+# --- the body -----------------------------------------------------------------------------------------------
 
 BODY = """
 # Lug
@@ -265,7 +283,12 @@ Some prose.
 def test_sections_are_the_headings_of_the_highest_level_used_after_the_title() -> None:
     document = built(BODY)
     heads = [b for b in document.blocks if isinstance(b, SectionHead)]
-    assert [(h.number, h.text) for h in heads] == [(1, "First"), (0, "Below"), (0, "Far below"), (2, "Second")]
+    assert [(h.number, h.text) for h in heads] == [
+        (1, "First"),
+        (0, "Below"),
+        (0, "Far below"),
+        (2, "Second"),
+    ]
     numbers = [b.head.number for b in document.blocks if hasattr(b, "head")]
     assert numbers == ["0.1", "1.1", "1.2", "2.1", "2.2"]
 
@@ -289,13 +312,19 @@ def test_heading_levels_never_skip_one(headings: list[str], levels: list[int]) -
 def test_blocks_stand_in_reading_order() -> None:
     kinds = [type(b) for b in built(BODY).blocks]
     assert kinds == [
-        ProseBlock, InputRow, SectionHead, InputRow, SectionHead, InputRow, ProseBlock, SectionHead, SectionHead,
-        ResultRow, CriterionBox,
+        ProseBlock, InputRow, SectionHead, InputRow, SectionHead, InputRow, ProseBlock, SectionHead,
+        SectionHead, ResultRow, CriterionBox,
     ]  # fmt: skip
 
 
 def test_an_input_row() -> None:
-    row = block(built("    b = 2*45 mm -- width [d], measured\n    c = 3 mm -- c\n    d_2 = b + c\n", "sources: {d: Drawing}\n"), InputRow)
+    row = block(
+        built(
+            "    b = 2*45 mm -- width [d], measured\n    c = 3 mm -- c\n    d_2 = b + c\n",
+            "sources: {d: Drawing}\n",
+        ),
+        InputRow,
+    )
     assert (row.name, text(row.typed), row.value) == ("b", "2 * 45 mm", Shown("90", "mm"))
     assert words(row.head.note) == "width {d}, measured"
     assert [(r.number, r.name, r.is_name) for r in row.head.used_in] == [("0.3", "d_2", True)]
@@ -319,7 +348,10 @@ def test_a_result_row() -> None:
 
 
 def test_a_result_by_branches() -> None:
-    body = "    a = 3 -- a\n    x = cases\n        2*a  when a <= 2 -- low\n        a/2  when a > 2 and a < 9\n        0 otherwise\n"
+    body = (
+        "    a = 3 -- a\n    x = cases\n        2*a  when a <= 2 -- low\n"
+        "        a/2  when a > 2 and a < 9\n        0 otherwise\n"
+    )
     row = block(built(body), ResultRow)
     assert [(text(b.value), b.taken, [text(n) for n in b.numbers]) for b in row.branches] == [
         ("2*a", False, []), ("a/2", True, ["3 > 2", "3 < 9"]), ("0", False, []),
@@ -343,7 +375,10 @@ def test_a_function_row() -> None:
 
 
 def test_a_criterion_box() -> None:
-    body = "    P = 20 kN -- p\n    A = 4 cm^2 -- a\n    f = 100 MPa -- f\n    strength tension: P/A <= f/1.1 -- clause 3 [ec]\n"
+    body = (
+        "    P = 20 kN -- p\n    A = 4 cm^2 -- a\n    f = 100 MPa -- f\n"
+        "    strength tension: P/A <= f/1.1 -- clause 3 [ec]\n"
+    )
     box = block(built(body, "sources: {ec: Code}\n"), CriterionBox)
     assert (box.criterion, box.title, text(box.relation)) == ("strength", "tension", "P/A <= f/1.1")
     assert [text(line) for line in box.lines] == ["20 kN / 4 cm^2 <= 100 MPa / 1.1", "50.00 MPa <= 90.91 MPa"]
@@ -363,7 +398,9 @@ def test_a_deflection_is_told_in_the_words_of_its_limit() -> None:
 
 
 def test_a_chain_and_an_excluded_band_tell_what_governs() -> None:
-    document = built("    x = 9 mm -- a\n    limit a: 2 mm <= x <= 10 mm\n    limit b: x <= 1 mm or x >= 3 mm\n")
+    document = built(
+        "    x = 9 mm -- a\n    limit a: 2 mm <= x <= 10 mm\n    limit b: x <= 1 mm or x >= 3 mm\n"
+    )
     asides = [block(document, CriterionBox, i).asides for i in (0, 1)]
     assert [said(lines[0]) for lines in asides] == ["governed by x <= 10 mm", "governed by x >= 3 mm"]
 
@@ -383,10 +420,10 @@ def test_a_judged_row(line: str, words_: str, verdict: str, holds: bool) -> None
 
 
 def test_a_line_that_could_not_be_read_stands_in_its_place_as_typed() -> None:
-    document = built("    x = 3 mm -- a\n    y = 2 x\n    z = y + x\n")
+    document = built("    x = 3 mm -- a\n    y = (2*x +\n        x\n    z = y + x\n")
     row = block(document, FaultyRow)
-    assert (row.head.number, row.typed) == ("0.2", "y = 2 x")
-    assert [f.slug for f in row.head.findings] == ["implied-multiplication"]
+    assert (row.head.number, row.typed) == ("0.2", "y = (2*x +\n    x")
+    assert [f.slug for f in row.head.findings] == ["unbalanced-bracket"]
     assert [(r.number, r.name) for r in row.head.used_in] == [("0.3", "z")]
     blocked = block(document, ResultRow)
     assert (blocked.value, blocked.head.why) == (None, "not computed because of line 6")
@@ -408,14 +445,18 @@ def test_figures_are_numbered_and_those_left_out_say_why() -> None:
     assert document.figures == (one, two)
 
 
-# --- findings in place ------------------------------------------------------------------------------------------
+# --- findings in place --------------------------------------------------------------------------------------
 
 
 def test_each_finding_stands_where_it_belongs_once() -> None:
-    body = "Prose with {nothing}.\n\n    x = 3 mm + 2 s\n    y = 3 mm -- a\n    z = (y +\n        2 mm\n\nx = 5 mm\n"
+    body = (
+        "Prose with {nothing}.\n\n    x = 3 mm + 2 s\n    y = 3 mm -- a\n    z = (y +\n"
+        "        2 mm\n\nx = 5 mm\n"
+    )
     document = built(body, "sources: {never: Cited}\n")
     assert [f.slug for f in block(document, ProseBlock).findings] == ["unknown-name"]
-    assert [f.slug for f in block(document, ProseBlock, 1).findings] == ["formula-in-prose"]
+    faulty = [b.head.findings[0].slug for b in document.blocks if isinstance(b, FaultyRow)]
+    assert faulty == ["unbalanced-bracket", "formula-in-prose"]
     placed = [f for b in document.blocks if hasattr(b, "head") for f in b.head.findings]
     placed += [f for b in document.blocks if hasattr(b, "findings") for f in b.findings]
     everywhere = [*document.front_findings, *placed]
@@ -431,7 +472,7 @@ def test_the_register_of_findings_points_to_steps() -> None:
     assert anchors["no-criterion"] == ""
 
 
-# --- registers --------------------------------------------------------------------------------------------------
+# --- registers ----------------------------------------------------------------------------------------------
 
 REGISTERED = """sources:
   d: Drawing SB-1
@@ -449,7 +490,10 @@ revisions:
 
 
 def test_registers() -> None:
-    body = "    P = 2*10 kN -- load [d] [A1]\n    q = 3 kN -- other\n    r = P + q -- both [h]\n    strength pull: r <= 30 kN -- [d]\n"
+    body = (
+        "    P = 2*10 kN -- load [d] [A1]\n    q = 3 kN -- other\n    r = P + q -- both [h]\n"
+        "    strength pull: r <= 30 kN -- [d]\n"
+    )
     registers = built(body, REGISTERED).registers
     assert [(i.ref.name, words(i.note), [c.key for c in i.sources], i.open) for i in registers.inputs] == [
         ("P", "load  ", ["d", "A1"], True), ("q", "other", [], False),
@@ -463,7 +507,11 @@ def test_registers() -> None:
         ("d", "Drawing SB-1", ["0.1", "0.4"]), ("h", "Hoist data sheet (data.pdf)", ["0.3"]),
     ]  # fmt: skip
     (criterion,) = registers.criteria
-    assert (criterion.line.criterion, criterion.line.ref, criterion.line.ratio) == ("strength", criterion.line.ref, "0.767")
+    assert (criterion.line.criterion, criterion.line.ref, criterion.line.ratio) == (
+        "strength",
+        criterion.line.ref,
+        "0.767",
+    )
     assert criterion.relation is not None and text(criterion.relation) == "r <= 30 kN"
     assert [(r.letter, r.date, r.by, r.change) for r in registers.revisions] == [
         ("A", "2026-01-02", "T.S.", "First issue"), ("B", "2026-02-03", "T.S.", "Load raised"),
@@ -471,7 +519,7 @@ def test_registers() -> None:
     assert (registers.codes, registers.drawings) == (("EN 1990", "EN 1991"), ("SB-201",))
 
 
-# --- title block ------------------------------------------------------------------------------------------------
+# --- title block --------------------------------------------------------------------------------------------
 
 FRONT = """subtitle: Plate and pin
 number: SB-107
@@ -493,14 +541,26 @@ language: de
 def test_the_title_block_and_the_names_that_nobody_bears_out() -> None:
     document = built("", FRONT)
     block_ = document.title_block
-    assert (block_.owner, block_.title, block_.subtitle, block_.number) == ("Tern Slip boatyard", "Lug", "Plate and pin", "SB-107")
+    assert (block_.owner, block_.title, block_.subtitle, block_.number) == (
+        "Tern Slip boatyard",
+        "Lug",
+        "Plate and pin",
+        "SB-107",
+    )
     assert block_.revision == "1.10, for review"
     assert (block_.created_by, block_.reviewed_by, block_.approved_by) == (
         "T.S.", "R.M. (typed, not on record)", "A.B. (typed, not on record)",
     )  # fmt: skip
     digest = traced("", FRONT).digest
-    assert block_.made == f"loadpath 9.9.9 · fingerprint {digest[:4]} {digest[4:8]} {digest[8:12]} {digest[12:16]}"
-    assert document.about == ("SB-107, revision 1.10, for review", "Slip renewal", "for The harbour, document H-7")
+    assert (
+        block_.made
+        == f"loadpath 9.9.9 · fingerprint {digest[:4]} {digest[4:8]} {digest[8:12]} {digest[12:16]}"
+    )
+    assert document.about == (
+        "SB-107, revision 1.10, for review",
+        "Slip renewal",
+        "for The harbour, document H-7",
+    )
     assert (document.page, document.language, document.caution) == ("Letter", "de", CAUTION)
 
 

@@ -19,7 +19,7 @@ def worked(*lines: str, front: str = "") -> Trace:
     return evaluate("\n".join("    " + line for line in lines), front)
 
 
-# --- values -----------------------------------------------------------------------------------------------------
+# --- values -------------------------------------------------------------------------------------------------
 
 
 def test_a_hand_calculation() -> None:
@@ -33,7 +33,9 @@ def test_a_hand_calculation() -> None:
 
 
 def test_a_choice_decides_a_branch() -> None:
-    trace = worked('w = "b" of "a", "b"', "k = cases", '    1  when w = "a"', '    2  when w = "b"', "    3  otherwise")
+    trace = worked(
+        'w = "b" of "a", "b"', "k = cases", '    1  when w = "a"', '    2  when w = "b"', "    3  otherwise"
+    )
     assert (trace["w"].value, trace["k"].value) == ("b", 2)
 
 
@@ -44,16 +46,23 @@ def test_a_function_has_no_value_of_its_own() -> None:
 
 
 def test_temperatures() -> None:
-    trace = worked("T = 20 degC", "d = T - (-20 degC)", "T_2 = T + 30 K", "T_K [K] = T", "r [1] = T_K/(100 K)")
+    trace = worked(
+        "T = 20 degC", "d = T - (-20 degC)", "T_2 = T + 30 K", "T_K [K] = T", "r [1] = T_K/(100 K)"
+    )
     assert [trace[i].value for i in ("d", "T_2", "T_K", "r")] == pytest.approx([40, 50, 293.15, 2.9315])
 
 
-# --- what cannot be computed ------------------------------------------------------------------------------------
+# --- what cannot be computed --------------------------------------------------------------------------------
 
 
 def test_what_hangs_on_a_failed_number_is_not_computed_and_the_rest_goes_on() -> None:
     trace = worked("a = 0", "b = 1/a", "c = 2*b", "limit x: c <= 3", "d = 2*a", "check: c = d within 1")
-    assert [s.why for s in trace] == ["", *["not computed because of line 7"] * 3, "", "not computed because of line 7"]
+    assert [s.why for s in trace] == [
+        "",
+        *["not computed because of line 7"] * 3,
+        "",
+        "not computed because of line 7",
+    ]
     assert trace["limit x"].verdict is not None
     assert trace["limit x"].verdict.words(trace["limit x"].why) == "not shown: not computed because of line 7"
     assert [f.slug for f in trace.findings] == ["division-by-zero"]
@@ -65,7 +74,7 @@ def test_a_criterion_that_cannot_be_read_counts_as_not_shown() -> None:
     assert step.id == "strength rod" and step.verdict is not None and step.verdict.satisfied is None
 
 
-# --- assumptions ------------------------------------------------------------------------------------------------
+# --- assumptions --------------------------------------------------------------------------------------------
 
 ASSUMED = "assumptions:\n  A1: {text: light, confirm: true}\n  A2: {text: dry, confirm: true}\n  A3: strong"
 
@@ -82,7 +91,9 @@ ASSUMED = "assumptions:\n  A1: {text: light, confirm: true}\n  A2: {text: dry, c
         (("a = 2", "c = 3 -- [A1]", "valid: c <= 4 for a", "limit x: a <= 3"), ("A1",)),
     ],
 )
-def test_a_verdict_is_conditional_on_the_open_assumptions_that_it_hangs_on(lines: tuple[str, ...], keys: tuple[str, ...]) -> None:
+def test_a_verdict_is_conditional_on_the_open_assumptions_that_it_hangs_on(
+    lines: tuple[str, ...], keys: tuple[str, ...]
+) -> None:
     trace = worked(*lines, front=ASSUMED)
     verdict = trace["limit x"].verdict
     assert verdict is not None and verdict.conditional_on == keys
@@ -90,7 +101,7 @@ def test_a_verdict_is_conditional_on_the_open_assumptions_that_it_hangs_on(lines
     assert verdict.words("") == expected
 
 
-# --- validity ---------------------------------------------------------------------------------------------------
+# --- validity -----------------------------------------------------------------------------------------------
 
 
 @pytest.mark.parametrize(
@@ -111,12 +122,19 @@ def test_outside_a_range_every_criterion_downstream_shows_nothing(lines: tuple[s
 
 
 def test_within_its_range_nothing_changes_and_others_are_left_alone() -> None:
-    trace = worked("chi = 2", "b = 3", "valid: chi >= 1 for chi", "valid: b >= 5 for b", "limit x: chi <= 3", "limit y: b <= 4")
+    trace = worked(
+        "chi = 2",
+        "b = 3",
+        "valid: chi >= 1 for chi",
+        "valid: b >= 5 for b",
+        "limit x: chi <= 3",
+        "limit y: b <= 4",
+    )
     assert trace["limit x"].verdict is not None and trace["limit x"].verdict.satisfied is True
     assert trace["limit y"].verdict is not None and trace["limit y"].verdict.satisfied is None
 
 
-# --- cross-checks -----------------------------------------------------------------------------------------------
+# --- cross-checks -------------------------------------------------------------------------------------------
 
 
 @pytest.mark.parametrize(
@@ -142,22 +160,33 @@ def test_a_cross_check_is_of_the_right_side_or_absolute(check: str, holds: bool)
     assert trace.criteria == ()
 
 
-# --- one-sided --------------------------------------------------------------------------------------------------
+# --- one-sided ----------------------------------------------------------------------------------------------
 
 
 def test_a_one_sided_criterion_is_a_warning() -> None:
-    trace = worked("s = 0 MPa - 50 MPa", "limit x: s <= 60 MPa", "limit y: s >= 60 MPa or s <= 5 MPa", "limit z: -60 MPa <= s <= 60 MPa")
-    assert [(f.slug, f.severity, f.line) for f in trace.findings] == [("one-sided", "warning", 7), ("one-sided", "warning", 8)]
+    trace = worked(
+        "s = 0 MPa - 50 MPa",
+        "limit x: s <= 60 MPa",
+        "limit y: s >= 60 MPa or s <= 5 MPa",
+        "limit z: -60 MPa <= s <= 60 MPa",
+    )
+    assert [(f.slug, f.severity, f.line) for f in trace.findings] == [
+        ("one-sided", "warning", 7),
+        ("one-sided", "warning", 8),
+    ]
     assert "`abs(s) <= 60 MPa`" in trace.findings[0].help
 
 
-# --- numbers of steps, trails -----------------------------------------------------------------------------------
+# --- numbers of steps, trails -------------------------------------------------------------------------------
 
 
 @pytest.mark.parametrize(
     ("body", "numbers"),
     [
-        ("    a = 1\n\n## One\n\n    b = 2\n    c = 3\n\n### Part\n\n    d = 4\n\n## Two\n\n    e = 5", "0.1 1.1 1.2 1.3 2.1"),
+        (
+            "    a = 1\n\n## One\n\n    b = 2\n    c = 3\n\n### Part\n\n    d = 4\n\n## Two\n\n    e = 5",
+            "0.1 1.1 1.2 1.3 2.1",
+        ),
         ("# A sheet\n\n    a = 1\n\n## One\n\n    b = 2", "0.1 1.1"),
         ("# One\n\n    a = 1\n\n## Part\n\n    b = 2", "1.1 1.2"),
         ("    a = 1\n\ntext\n\n    b = 2", "0.1 0.2"),
@@ -165,7 +194,7 @@ def test_a_one_sided_criterion_is_a_warning() -> None:
     ],
 )
 def test_step_numbers(body: str, numbers: str) -> None:
-    """Sections are the headings of the highest level used after the title; steps before the first are `0.n`."""
+    """Sections are the headings of the highest level after the title; steps before the first are `0.n`."""
     assert " ".join(step.number for step in evaluate(body)) == numbers
 
 
@@ -184,7 +213,7 @@ def test_citations_are_kept_in_order_and_once() -> None:
     assert trace["a"].note == "one [k] two [m] [k]"
 
 
-# --- digits -----------------------------------------------------------------------------------------------------
+# --- digits -------------------------------------------------------------------------------------------------
 
 
 def test_a_result_shows_the_digits_that_its_verdict_needs() -> None:
@@ -193,7 +222,7 @@ def test_a_result_shows_the_digits_that_its_verdict_needs() -> None:
     assert f"{trace['b'].value:.{trace['b'].digits - 1}f}" != "1.0000"
 
 
-# --- digest -----------------------------------------------------------------------------------------------------
+# --- digest -------------------------------------------------------------------------------------------------
 
 
 def test_the_digest_is_of_the_text() -> None:
@@ -202,10 +231,12 @@ def test_the_digest_is_of_the_text() -> None:
     assert len(worked("a = 1").digest) == 64
 
 
-# --- sheets that say nothing ------------------------------------------------------------------------------------
+# --- sheets that say nothing --------------------------------------------------------------------------------
 
 
-@pytest.mark.parametrize("text", ["", "---\n", "---\ntitle: x\n---\n", "\0", "text", "    a = 1", "---\ntitle: [\n---\n    a"])
+@pytest.mark.parametrize(
+    "text", ["", "---\n", "---\ntitle: x\n---\n", "\0", "text", "    a = 1", "---\ntitle: [\n---\n    a"]
+)
 def test_any_text_has_a_trace(text: str) -> None:
     trace = loadpath.evaluate(loadpath.read_text(text))
     assert all(math.isfinite(s.si) for s in trace if isinstance(s.si, float))

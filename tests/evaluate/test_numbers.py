@@ -36,7 +36,11 @@ FUNCTIONS = functions("f(x) = 2*x", "g(x, y) = f(x) + y*n", "h(x) = 1/x")
 def value(text: str, **own: object) -> object:
     compiler = Compiler(FUNCTIONS)
     reader = Reader(Item(text, 0, ()))
-    node = reader.condition() if any(sign in text for sign in "<>=") and "<x" not in text else reader.expression()
+    node = (
+        reader.condition()
+        if any(sign in text for sign in "<>=") and "<x" not in text
+        else reader.expression()
+    )
     return run(compiler.compile_tree(node, frozenset(own)), node, VALUES, own, compiler)
 
 
@@ -82,7 +86,7 @@ def test_the_parameters_of_a_function_hide_nothing_of_the_sheet() -> None:
     assert value("x + n", x=5.0) == 7
 
 
-# --- exact arithmetic, worked in another way --------------------------------------------------------------------
+# --- exact arithmetic, worked in another way ----------------------------------------------------------------
 
 
 def exact(node: Node) -> Fraction:
@@ -119,7 +123,7 @@ def test_arithmetic_against_exact_fractions(tree: Node) -> None:
     assert float(compiler.compile_tree(tree)({}, {})) == pytest.approx(expected, rel=1e-9, abs=1e-6)
 
 
-# --- relations --------------------------------------------------------------------------------------------------
+# --- relations ----------------------------------------------------------------------------------------------
 
 
 @pytest.mark.parametrize(
@@ -149,7 +153,7 @@ def test_of_two_values_one_relation_holds(a: float, b: float) -> None:
     assert holds("<=", a, b) == (holds("<", a, b) or nearly(a, b)) == holds(">=", b, a)
 
 
-# --- Macaulay brackets ------------------------------------------------------------------------------------------
+# --- Macaulay brackets --------------------------------------------------------------------------------------
 
 
 @pytest.mark.parametrize(
@@ -162,14 +166,14 @@ def test_a_macaulay_bracket(x: float, power: int, expected: float) -> None:
 
 
 def test_within_a_bracket_a_difference_within_rounding_is_zero() -> None:
-    third = 0.1 + 0.2
-    assert third < 0.30000000000000005 and third != 0.3
-    assert value("<x - y>^0", x=0.3, y=third) == 1
-    assert value("<x - y>^1", x=third, y=0.3) == 0
+    other = 0.1 + 0.2
+    assert other > 0.3
+    assert value("<x - y>^0", x=0.3, y=other) == 1
+    assert value("<x - y>^1", x=other, y=0.3) == 0
     assert value("<x - y>^0", x=0.3, y=0.3 + 1e-9) == 0
 
 
-# --- failures ---------------------------------------------------------------------------------------------------
+# --- failures -----------------------------------------------------------------------------------------------
 
 
 def failure(*lines: str) -> tuple[str, str, str]:
@@ -184,7 +188,7 @@ def failure(*lines: str) -> tuple[str, str, str]:
     ("expression", "slug", "place", "says"),
     [
         ("P/(t - t)", "division-by-zero", "/", ("`t - t` is 0", "`P` (20 kN)")),
-        ("1/h(t)", "division-by-zero", "/", ("`t - x`", "20 kN")),
+        ("1/h(t)", "division-by-zero", "/", ("`h(t)` is 0",)),
         ("(t - t)^-1", "division-by-zero", "^", ("`t - t` is 0",)),
         ("sqrt(t - 2*t)", "root-of-negative", "sqrt", ("`t - 2*t` is -6 mm",)),
         ("(n - 3)^0.5", "root-of-negative", "^", ("-1", "0.5")),
@@ -203,7 +207,7 @@ def test_a_number_that_cannot_be_had(expression: str, slug: str, place: str, say
     got = failure(*given_, f"r = {expression}")
     assert got[:2] == (slug, place)
     for words in says:
-        assert words in got[2] or words == "`t - x`"
+        assert words in got[2]
 
 
 def test_the_first_operation_that_fails_is_named() -> None:
@@ -221,7 +225,9 @@ def test_a_failure_within_a_function_says_for_which_line_it_was_worked() -> None
 
 
 def test_no_branch_holds() -> None:
-    slug, place, message = failure("r = 6", 'w = "a" of "a"', "c = cases", "    1  when r < 3", "    2  when r > 9 and w = \"a\"")
+    slug, place, message = failure(
+        "r = 6", 'w = "a" of "a"', "c = cases", "    1  when r < 3", '    2  when r > 9 and w = "a"'
+    )
     assert (slug, place) == ("no-branch", "cases")
     assert "`r` is 6" in message and '`w` is "a"' in message
 

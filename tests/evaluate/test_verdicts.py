@@ -36,7 +36,9 @@ def chain(low: float, value: float, high: float, signs: tuple[Sign, Sign] = ("<=
     return judge(Relation((a, b, c), signs), ((low, value, high),))
 
 
-def either(first: tuple[float, float], second: tuple[float, float], signs: tuple[Sign, Sign] = ("<=", ">=")) -> Verdict:
+def either(
+    first: tuple[float, float], second: tuple[float, float], signs: tuple[Sign, Sign] = ("<=", ">=")
+) -> Verdict:
     relations = tuple(Relation((a, b), (sign,)) for sign in signs)
     return judge(Logic("or", relations), (first, second))
 
@@ -46,7 +48,7 @@ def typed(text: str, *values: float) -> Verdict:
     return judge(relation(text), (values,))
 
 
-# --- sides, and what counts as equal ----------------------------------------------------------------------------
+# --- sides, and what counts as equal ------------------------------------------------------------------------
 
 
 @pytest.mark.parametrize("apart", [0, 1e-10, -1e-10, 0.999e-9, -0.999e-9])
@@ -73,12 +75,18 @@ def test_unrounded_values_are_judged() -> None:
     assert read_plain(plain(1.0002, digits)) > read_plain(plain(1, digits))
 
 
-# --- utilisation ------------------------------------------------------------------------------------------------
+# --- utilisation --------------------------------------------------------------------------------------------
 
 
 @pytest.mark.parametrize(
     ("left", "sign", "right", "ratio"),
-    [(50, "<=", 100, 0.5), (50, "<", 100, 0.5), (100, ">=", 50, 0.5), (100, ">", 50, 0.5), (150, "<=", 100, 1.5)],
+    [
+        (50, "<=", 100, 0.5),
+        (50, "<", 100, 0.5),
+        (100, ">=", 50, 0.5),
+        (100, ">", 50, 0.5),
+        (150, "<=", 100, 1.5),
+    ],
 )
 def test_utilisation_is_demand_over_limit(left: float, sign: Sign, right: float, ratio: float) -> None:
     """Left over right for `<=`, right over left for `>=`."""
@@ -100,9 +108,18 @@ def test_where_both_sides_are_negative_both_signs_are_turned() -> None:
 
 @pytest.mark.parametrize(
     ("left", "sign", "right", "margin"),
-    [(5, "<=", 0, -5), (-5, "<=", 0, 5), (0, "<=", 0, 0), (5, "<=", -3, -8), (0, "<=", -60, -60), (-3, ">=", 5, -8)],
+    [
+        (5, "<=", 0, -5),
+        (-5, "<=", 0, 5),
+        (0, "<=", 0, 0),
+        (5, "<=", -3, -8),
+        (0, "<=", -60, -60),
+        (-3, ">=", 5, -8),
+    ],
 )
-def test_where_there_is_no_such_ratio_the_margin_is_shown(left: float, sign: Sign, right: float, margin: float) -> None:
+def test_where_there_is_no_such_ratio_the_margin_is_shown(
+    left: float, sign: Sign, right: float, margin: float
+) -> None:
     """A limit of zero, a negative resistance."""
     verdict = single(left, sign, right)
     assert verdict.utilisation is None and verdict.margin == margin
@@ -110,7 +127,9 @@ def test_where_there_is_no_such_ratio_the_margin_is_shown(left: float, sign: Sig
     assert not verdict.one_sided
 
 
-@pytest.mark.parametrize(("text", "values"), [("x >= 0", (5.0, 0.0)), ("0 <= x", (0.0, 5.0)), ("x >= 0 mm", (5.0, 0.0))])
+@pytest.mark.parametrize(
+    ("text", "values"), [("x >= 0", (5.0, 0.0)), ("0 <= x", (0.0, 5.0)), ("x >= 0 mm", (5.0, 0.0))]
+)
 def test_a_typed_bound_of_zero_has_no_ratio_on_either_side(text: str, values: tuple[float, float]) -> None:
     verdict = typed(text, *values)
     assert (verdict.satisfied, verdict.utilisation, verdict.margin) == (True, None, 5)
@@ -128,10 +147,12 @@ def test_a_relation_of_absolute_temperatures_has_no_utilisation() -> None:
     assert (verdict.satisfied, verdict.utilisation) == (True, None)
 
 
-# --- one-sided --------------------------------------------------------------------------------------------------
+# --- one-sided ----------------------------------------------------------------------------------------------
 
 
-@pytest.mark.parametrize(("left", "sign", "right"), [(-5, "<=", 10), (10, ">=", -5), (5, ">=", -10), (-10, "<=", 5)])
+@pytest.mark.parametrize(
+    ("left", "sign", "right"), [(-5, "<=", 10), (10, ">=", -5), (5, ">=", -10), (-10, "<=", 5)]
+)
 def test_a_negative_demand_against_one_positive_limit(left: float, sign: Sign, right: float) -> None:
     """It reads "satisfied on one side only", has no utilisation, and `satisfied` is true."""
     verdict = single(left, sign, right)
@@ -157,7 +178,7 @@ def test_a_chain_is_never_one_sided() -> None:
     assert not chain(-10, -20, 10).one_sided
 
 
-# --- chains -----------------------------------------------------------------------------------------------------
+# --- chains -------------------------------------------------------------------------------------------------
 
 
 @pytest.mark.parametrize(
@@ -173,7 +194,9 @@ def test_a_chain_is_never_one_sided() -> None:
         (-50, -10, -20, 2.0, 1),
     ],
 )
-def test_in_a_chain_the_governing_part_counts(low: float, value: float, high: float, ratio: float, part: int) -> None:
+def test_in_a_chain_the_governing_part_counts(
+    low: float, value: float, high: float, ratio: float, part: int
+) -> None:
     verdict = chain(low, value, high)
     assert verdict.utilisation == pytest.approx(ratio)
     assert verdict.part == part and verdict.satisfied == (ratio <= 1)
@@ -223,7 +246,7 @@ def test_a_chain_with_strict_signs() -> None:
     assert chain(-50, 50, 50, ("<", "<")).satisfied is False
 
 
-# --- or ---------------------------------------------------------------------------------------------------------
+# --- or -----------------------------------------------------------------------------------------------------
 
 
 @pytest.mark.parametrize(
@@ -250,7 +273,7 @@ def test_with_or_a_side_without_ratio_does_not_hide_one_that_is_satisfied() -> N
     assert either((-5, 0), (-5, 3)).satisfied is True
 
 
-# --- properties -------------------------------------------------------------------------------------------------
+# --- properties ---------------------------------------------------------------------------------------------
 
 signs: st.SearchStrategy[Sign] = st.sampled_from(("<=", "<", ">=", ">"))
 sizes = st.sampled_from((0.0, 1.0, -1.0, 235e6, -235e6, 1e-6, 0.9996, 1.0002, 123.4567)) | st.floats(
@@ -309,7 +332,7 @@ def test_satisfied_is_what_the_signs_say(case: tuple[Node, Verdict]) -> None:
 
 @given(judged())
 def test_a_ratio_never_contradicts_the_verdict(case: tuple[Node, Verdict]) -> None:
-    """A ratio above 1 never stands beside "satisfied", one below 1 never beside "not satisfied", printed or not."""
+    """A ratio above 1 never stands beside "satisfied", one below 1 never beside "not satisfied"."""
     _, verdict = case
     if verdict.utilisation is None:
         assert ratio_text(verdict) == ""
@@ -323,7 +346,7 @@ def test_a_ratio_never_contradicts_the_verdict(case: tuple[Node, Verdict]) -> No
 
 
 def printed_ratio(verdict: Verdict) -> float:
-    """The utilisation as a reader reads it; one of a thousand and more is set in powers of ten, with narrow spaces."""
+    """The utilisation as a reader reads it; one of a thousand and more is set in powers of ten."""
     text = re.sub(r"\s", "", ratio_text(verdict))
     return float(re.sub(r"×10(.+)", lambda m: "e" + m.group(1).translate(PLAIN_DIGITS), text))
 
@@ -359,7 +382,7 @@ def test_printed_sides_never_contradict_the_order_found(values: tuple[float, ...
         assert (first < second) == (left < right) and first != second
 
 
-# --- words ------------------------------------------------------------------------------------------------------
+# --- words --------------------------------------------------------------------------------------------------
 
 
 @pytest.mark.parametrize(
@@ -368,7 +391,11 @@ def test_printed_sides_never_contradict_the_order_found(values: tuple[float, ...
         (Verdict(True), "", "satisfied"),
         (Verdict(False), "", "not satisfied"),
         (Verdict(True, conditional_on=("A1", "A2")), "", "satisfied, conditional on A1, A2"),
-        (Verdict(True, one_sided=True, conditional_on=("A1",)), "", "satisfied on one side only, conditional on A1"),
+        (
+            Verdict(True, one_sided=True, conditional_on=("A1",)),
+            "",
+            "satisfied on one side only, conditional on A1",
+        ),
         (Verdict(None), "not computed because of line 12", "not shown: not computed because of line 12"),
         (Verdict(None, outside=("chi",)), "", "not shown: outside the range of chi"),
     ],

@@ -37,7 +37,9 @@ def test_a_plain_formula_is_its_own_working() -> None:
 
 @pytest.mark.parametrize(("r", "index", "tree"), [("1", 0, "a*r"), ("3", 1, "a/r"), ("9", 2, "a")])
 def test_the_branch_taken(r: str, index: int, tree: str) -> None:
-    trace = worked("a = 2", f"r = {r}", "b = cases", "    a*r  when r <= 1", "    a/r  when r <= 4", "    a    otherwise")
+    trace = worked(
+        "a = 2", f"r = {r}", "b = cases", "    a*r  when r <= 1", "    a/r  when r <= 4", "    a    otherwise"
+    )
     found = working(trace, "b")
     assert found.taken is not None and found.taken.index == index
     assert text(found.tree) == tree
@@ -65,7 +67,8 @@ def test_an_argument_stands_as_typed_where_it_can(argument: str, typed: str, uni
 
 def test_calls_within_calls_and_within_branches() -> None:
     trace = worked(
-        "a = 2", "f(x) = 2*x", "g(x) = cases", "    f(x)    when f(x) <= 3", "    f(2*x)  otherwise", "r = g(a) + g(a) + f(a)",
+        "a = 2", "f(x) = 2*x", "g(x) = cases", "    f(x)    when f(x) <= 3", "    f(2*x)  otherwise",
+        "r = g(a) + g(a) + f(a)",
     )  # fmt: skip
     g, f = working(trace, "r").calls
     assert (text(g.call), text(f.call)) == ("g(a)", "f(a)")

@@ -27,6 +27,7 @@ from loadpath.resolve import expressions
 from loadpath.sheet.model import Formulas
 from loadpath.text import Source, Span
 from loadpath.units import BadUnit, parse_unit
+from loadpath.units.unit import FEET_AND_INCHES
 
 GRAMMAR = (files("loadpath.formula") / "grammar.lark").read_text("utf-8")
 ROOT = Path(__file__).parents[2]
@@ -99,12 +100,12 @@ def units_of(statement: Statement) -> list[str]:
 
 def is_well_formed(unit: str) -> bool:
     """With each name in it taken for a metre: whether a unit is known is not for the grammar to say."""
-    if unit.startswith("ft-in"):
+    if FEET_AND_INCHES.fullmatch(unit):
         return True
     try:
-        parse_unit(re.sub(r"[^\W\d]\w*|%", "m", unit))
+        parse_unit(re.sub(r"[^\W\d²³¹][^\W²³¹]*", "m", unit))
     except BadUnit as bad:
-        return "well formed" not in bad.message and "/" not in bad.message and "power" not in bad.message
+        return "too large" in bad.message or "out of range" in bad.message
     return True
 
 

@@ -98,8 +98,9 @@ def test_every_character_stands_at_its_own_offset(typed: list[str]) -> None:
         for note in group.whole.notes:
             seen |= set(range(note.span.start, note.span.end))
         for item in (group.head, *group.deeper):
-            assert item.text == source.text[item.start : item.start + len(item.text)].replace("\t", " ") or "\n" in (
-                source.text[item.start : item.start + len(item.text)]
+            assert (
+                item.text == source.text[item.start : item.start + len(item.text)].replace("\t", " ")
+                or "\n" in (source.text[item.start : item.start + len(item.text)])
             )
     lost = [at for at, c in enumerate(source.text) if not c.isspace() and at not in seen]
     assert all(source.text[at] == "-" for at in lost), "only the hyphens of the notes are left out"

@@ -65,7 +65,7 @@ def test_canonical_text_is_its_own(name: str) -> None:
     ],
 )
 def test_symbols(name: str, printed: str) -> None:
-    """As section 3 of the language says: `sigma_b` is σ with subscript b, `M_Ed_y` has the subscript `Ed,y`."""
+    """As section 3 of the language says: `sigma_b` is σ with subscript b, `M_Ed_y` has subscript `Ed,y`."""
     assert plain_symbol(name) == printed
 
 
@@ -77,7 +77,9 @@ def test_names_that_print_alike(a: str, b: str) -> None:
     assert look(canonical(a)) == look(canonical(b))
 
 
-@pytest.mark.parametrize(("a", "b"), [("F_1", "F1"), ("F_1", "f_1"), ("x", "x'"), ("b.I", "c.I"), ("M_1_2", "M_12")])
+@pytest.mark.parametrize(
+    ("a", "b"), [("F_1", "F1"), ("F_1", "f_1"), ("x", "x'"), ("b.I", "c.I"), ("M_1_2", "M_12")]
+)
 def test_names_that_differ_in_print(a: str, b: str) -> None:
     assert look(a) != look(b)
 
@@ -91,7 +93,13 @@ def test_what_a_name_is_made_of() -> None:
 
 @pytest.mark.parametrize(
     ("text", "words"),
-    [("P/A + 2*b.I_y", ["P", "A", "b", "I_y"]), ("d²/4", ["d"]), ("12 kN/m", ["kN", "m"]), ("", []), ("2x", ["x"])],
+    [
+        ("P/A + 2*b.I_y", ["P", "A", "b", "I_y"]),
+        ("d²/4", ["d"]),
+        ("12 kN/m", ["kN", "m"]),
+        ("", []),
+        ("2x", ["x"]),
+    ],
 )
 def test_words_in(text: str, words: list[str]) -> None:
     assert list(words_in(text)) == words
@@ -99,5 +107,7 @@ def test_words_in(text: str, words: list[str]) -> None:
 
 def test_the_reserved_words_are_those_of_the_language() -> None:
     """source: the contract of the language, section 3, list of reserved words."""
-    listed = "cases when otherwise solve unknown use take beam plot tabulate figure for from to at as of by and or "
-    assert set((listed + "over between within steps").split()) == RESERVED
+    listed = (
+        "cases when otherwise solve unknown use take beam plot tabulate figure for from to at as of by and "
+    )
+    assert set((listed + "or over between within steps").split()) == RESERVED

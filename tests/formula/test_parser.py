@@ -44,7 +44,7 @@ def refused(*lines: str) -> tuple[Faulty, Finding]:
     return faulty, found
 
 
-# --- what each line is ------------------------------------------------------------------------------------------
+# --- what each line is --------------------------------------------------------------------------------------
 
 
 def test_a_definition() -> None:
@@ -125,7 +125,7 @@ def test_a_word_that_only_begins_statements_may_be_a_name(word: str) -> None:
     assert isinstance(statement, Definition) and statement.name == word
 
 
-# --- what a line is not -----------------------------------------------------------------------------------------
+# --- what a line is not -------------------------------------------------------------------------------------
 
 
 @ID(
@@ -246,7 +246,7 @@ def test_a_statement_that_is_too_long() -> None:
     assert finding.slug == "over-limit"
 
 
-# --- prose ------------------------------------------------------------------------------------------------------
+# --- prose --------------------------------------------------------------------------------------------------
 
 
 @ID(
@@ -285,12 +285,13 @@ def test_lines_of_prose_that_are_none(line: str) -> None:
     assert not is_statement(line)
 
 
-# --- anything ---------------------------------------------------------------------------------------------------
+# --- anything -----------------------------------------------------------------------------------------------
 
-words = st.sampled_from(
-    "a b strength valid check cases when otherwise use for within or and of as = <= < >= > ( ) [ ] \" : , + - * / ^ "
-    "12 0.5 kN mm^2 1/2 in -- [k] \n \n      \n\t é σ ² ×".split(" ")
+WORDS = (
+    'a b strength valid check cases when otherwise use for within or and of as = <= < >= > ( ) [ ] " '
+    ": , + - * / ^ 12 0.5 kN mm^2 1/2 in -- [k] é σ ² ×"
 )
+words = st.sampled_from([*WORDS.split(), "\n", "\n    ", "\n\t", "  "])
 
 
 @given(st.lists(words, max_size=14).map(" ".join))

@@ -27,7 +27,11 @@ names = st.sampled_from(NAMES).map(Name)
 numbers = st.sampled_from(("0", "2", "12_000", "0.5", "1.2e6", "3e-4", "0.1")).map(Number)
 fractions = st.sampled_from((("1", "2"), ("5", "8")))
 quantities = st.one_of(
-    st.builds(lambda w, u: Quantity((Part(w, None, u),)), st.sampled_from(("0", "20", "1.5")), st.sampled_from(UNITS)),
+    st.builds(
+        lambda w, u: Quantity((Part(w, None, u),)),
+        st.sampled_from(("0", "20", "1.5")),
+        st.sampled_from(UNITS),
+    ),
     st.builds(lambda o: Quantity((Part("", o, "in"),)), fractions),
     st.builds(lambda w, o: Quantity((Part(w, o, "in"),)), st.sampled_from(("2", "12")), fractions),
     st.builds(lambda o: Quantity((Part("12", None, "ft"), Part("6", o, "in"))), st.none() | fractions),
@@ -52,7 +56,12 @@ trees: st.SearchStrategy[Node] = st.recursive(leaves, _grown, max_leaves=12)
 
 _operands = trees | st.just(Word("b"))
 relations: st.SearchStrategy[Node] = st.one_of(
-    st.builds(lambda a, s, b: Relation((a, b), (s,)), _operands, st.sampled_from(("<=", "<", ">=", ">", "=")), _operands),
+    st.builds(
+        lambda a, s, b: Relation((a, b), (s,)),
+        _operands,
+        st.sampled_from(("<=", "<", ">=", ">", "=")),
+        _operands,
+    ),
     st.builds(lambda a, b, c: Relation((a, b, c), ("<", "<=")), trees, trees, trees),
 )
 conditions: st.SearchStrategy[Node] = st.recursive(

@@ -11,8 +11,8 @@ from loadpath.units import parse_unit
 from loadpath.units.dimension import FORCE, LENGTH, PLAIN, STRESS, TEMPERATURE
 
 GIVEN = (
-    "P = 20 kN", "L = 3 m", "A = 400 mm^2", "f = 355 MPa", "n = 2", "T = 60 degC", "dT = 20 K", 'w = "a" of "a", "b"',
-    "g(x [m]) [kN] = P*x/L", "h(x) = 2*x", "G = 2000 kg", "k = 3 kN/mm", "p = 3 bar",
+    "P = 20 kN", "L = 3 m", "A = 400 mm^2", "f = 355 MPa", "n = 2", "T = 60 degC", "dT = 20 K",
+    'w = "a" of "a", "b"', "g(x [m]) [kN] = P*x/L", "h(x) = 2*x", "G = 2000 kg", "k = 3 kN/mm", "p = 3 bar",
 )  # fmt: skip
 
 
@@ -139,7 +139,8 @@ def test_relations_that_compare_nothing(relation: str, slug: str) -> None:
 
 
 @pytest.mark.parametrize(
-    "relation", ["P <= 3 kN", "0 <= P", "0 <= P <= 3 kN", "T <= 80 degC", "T - 20 degC <= 60 K", "P/A <= f or n >= 3"]
+    "relation",
+    ["P <= 3 kN", "0 <= P", "0 <= P <= 3 kN", "T <= 80 degC", "T - 20 degC <= 60 K", "P/A <= f or n >= 3"],
 )
 def test_relations_that_hold_together(relation: str) -> None:
     assert slugs(*GIVEN, f"limit: {relation}") == []
@@ -161,7 +162,7 @@ def test_conditions_on_words_and_whole_numbers() -> None:
     assert slugs(*GIVEN, "r = cases", "    P  when P = 3 kN", "    P  otherwise") == ["bad-syntax"]
 
 
-# --- units shown ------------------------------------------------------------------------------------------------
+# --- units shown --------------------------------------------------------------------------------------------
 
 
 def test_a_result_asks_for_its_unit() -> None:
@@ -195,11 +196,13 @@ def test_a_difference_of_temperatures_has_no_place_on_a_scale() -> None:
 
 
 def test_both_sides_of_a_relation_are_shown_in_one_unit() -> None:
-    resolved = resolve(*GIVEN, "s [N/mm^2] = P/A", "limit a: s <= f", "limit b: 3 kN <= 2*P", "check: P = 2e4 N within 0.1 %")
+    resolved = resolve(
+        *GIVEN, "s [N/mm^2] = P/A", "limit a: s <= f", "limit b: 3 kN <= 2*P", "check: P = 2e4 N within 0.1 %"
+    )
     assert [e.side_units[0].text for e in resolved.entries[-3:]] == ["N/mm^2", "kN", "kN"]
 
 
-# --- frequencies and names in units -----------------------------------------------------------------------------
+# --- frequencies and names in units -------------------------------------------------------------------------
 
 
 @pytest.mark.parametrize(

@@ -18,7 +18,7 @@ def blocked(*lines: str, **more: str) -> dict[str, int]:
     return {e.id: max(e.blocked_by - first + 1, 0) for e in resolved.entries}
 
 
-# --- names ------------------------------------------------------------------------------------------------------
+# --- names --------------------------------------------------------------------------------------------------
 
 
 @pytest.mark.parametrize(
@@ -74,7 +74,7 @@ def test_units_and_words_are_no_names() -> None:
     assert slugs('c = "a" of "a", "b"', "r = cases", '    3 kN  when c = "a"', "    0  otherwise") == []
 
 
-# --- what hangs on what -----------------------------------------------------------------------------------------
+# --- what hangs on what -------------------------------------------------------------------------------------
 
 
 def test_what_hangs_on_a_mistake_names_its_line_down_the_whole_chain() -> None:
@@ -112,7 +112,7 @@ def test_uses_are_listed_once_in_the_order_typed() -> None:
     assert entry(resolved, "f").uses == ("a",)
 
 
-# --- what counts as used or cited -------------------------------------------------------------------------------
+# --- what counts as used or cited ---------------------------------------------------------------------------
 
 
 @pytest.mark.parametrize(
@@ -143,13 +143,13 @@ def test_citations() -> None:
     assert slugs("a = 2 -- load [hoist]", front="sources: Data sheet") == ["front-matter-value"]
 
 
-# --- ids --------------------------------------------------------------------------------------------------------
+# --- ids ----------------------------------------------------------------------------------------------------
 
 
 def test_ids_are_names_and_never_counters() -> None:
     lines = (
-        "a = 2", "f(x) = x", "strength bending: a<=3", "limit: a <=  3", "valid: 1<=a for f", "check: a=2 within 1",
-        "check: a=2 within 2",
+        "a = 2", "f(x) = x", "strength bending: a<=3", "limit: a <=  3", "valid: 1<=a for f",
+        "check: a=2 within 1", "check: a=2 within 2",
     )  # fmt: skip
     assert [e.id for e in resolve(*lines).entries] == [
         "a", "f", "strength bending", "limit: a <= 3", "valid: 1 <= a", "check: a = 2", "check: a = 2#2",
@@ -168,7 +168,7 @@ def test_kinds() -> None:
     ]  # fmt: skip
 
 
-# --- prose ------------------------------------------------------------------------------------------------------
+# --- prose --------------------------------------------------------------------------------------------------
 
 
 @pytest.mark.parametrize(
@@ -193,7 +193,7 @@ def test_values_in_prose_may_stand_above_the_definition_and_ask_for_a_unit() -> 
     assert resolved.findings == ()
 
 
-# --- units of the sheet -----------------------------------------------------------------------------------------
+# --- units of the sheet -------------------------------------------------------------------------------------
 
 
 def test_units_by_kind() -> None:
@@ -203,7 +203,7 @@ def test_units_by_kind() -> None:
     assert slugs("a = 2", front="units: {stress: foo}") == ["front-matter-value"]
 
 
-# --- limits -----------------------------------------------------------------------------------------------------
+# --- limits -------------------------------------------------------------------------------------------------
 
 
 def test_functions_of_functions_that_ask_for_too_much_are_refused() -> None:
@@ -229,7 +229,9 @@ def chain(count: int) -> list[str]:
 
 
 def seconds(lines: list[str]) -> float:
-    sheet = loadpath.read_text("---\ntitle: t\nsources: {s: a}\n---\n\n" + "\n".join("    " + x for x in lines))
+    sheet = loadpath.read_text(
+        "---\ntitle: t\nsources: {s: a}\n---\n\n" + "\n".join("    " + x for x in lines)
+    )
     assert sheet.findings == ()
     start = time.process_time()
     trace = loadpath.evaluate(sheet)
@@ -245,7 +247,9 @@ def test_the_work_is_linear_in_the_steps() -> None:
     assert many < 16 * few
 
 
-@pytest.mark.parametrize("line", ["a_{i} = b_{i}", "a_{i} = 2 -- x [c_{i}]", "a = {i}", "limit x: 1 <= {i}", "m = 3 kN/m"])
+@pytest.mark.parametrize(
+    "line", ["a_{i} = b_{i}", "a_{i} = 2 -- x [c_{i}]", "a = {i}", "limit x: 1 <= {i}", "m = 3 kN/m"]
+)
 def test_a_sheet_of_mistakes_alone_ends_soon(line: str) -> None:
     resolved_in = time.process_time()
     resolve(*(line.format(i=i) for i in range(2000)))

@@ -77,7 +77,8 @@ def test_an_unknown_key_names_the_nearest() -> None:
 
 
 def test_a_misspelt_key_is_taken_for_the_one_it_is_near_to() -> None:
-    front, _ = read("titel: Hoist beam\nsource: {hoist: HD-7}\nassumptions: {A1: {text: light, confrim: true}}")
+    assumed = "assumptions: {A1: {text: light, confrim: true}}"
+    front, _ = read("titel: Hoist beam\nsource: {hoist: HD-7}\n" + assumed)
     assert (front.title, [s.key for s in front.sources]) == ("Hoist beam", ["hoist"])
     assert front.assumptions[0].confirm
     assert read("not_applicable: {strenght: none}")[0].not_applicable == (("strength", "none"),)

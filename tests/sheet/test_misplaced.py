@@ -145,7 +145,8 @@ def test_what_misplaced_lines_would_have_defined_names_the_line_of_the_finding()
     ):
         source = Source("a.sheet.md", text)
         blocks, found = read_blocks(source, 0, MemoryWorld())
-        statements = [s for b in blocks if isinstance(b, Formulas) for s in b.statements if isinstance(s, Faulty)]
+        formulas = [block for block in blocks if isinstance(block, Formulas)]
+        statements = [s for block in formulas for s in block.statements if isinstance(s, Faulty)]
         assert [s.names for s in statements] == [("P",), ("Q",)]
         assert {source.line_number(s.trouble.start) for s in statements} == {line} == {f.line for f in found}
 

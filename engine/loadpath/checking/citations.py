@@ -55,8 +55,12 @@ def _annex(trace: Trace) -> Iterator[Finding]:
     help = "name it in `codes`: `EN 1993-1-1:2005 with its national annex`"
     for entry in front.sources:
         if (match := _EUROCODE.search(entry.text)) is not None:
-            message = f"the source `{entry.key}` is a Eurocode ({match.group()}), and `codes` names no national annex"
-            yield finding("no-national-annex", message, entry.source or trace.sheet.source, entry.span, help=help)
+            message = (
+                f"the source `{entry.key}` is a Eurocode, {match.group()}, and `codes` names no annex to it"
+            )
+            yield finding(
+                "no-national-annex", message, entry.source or trace.sheet.source, entry.span, help=help
+            )
             return
     for code in front.codes:
         if _EUROCODE.search(code):

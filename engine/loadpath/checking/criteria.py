@@ -21,9 +21,16 @@ def criterion_findings(trace: Trace) -> Iterator[Finding]:
         statement = step.statement
         if isinstance(statement, Criterion):
             yield from _cannot_fail(trace, statement)
-            if not step.sources and not all(_has_source(trace, limit) for limit in _limits(statement)):
+            sourced = bool(step.sources) or all(_has_source(trace, limit) for limit in _limits(statement))
+            if not sourced and not _has_mistake(trace, step):
                 yield _without_source(trace, step, statement)
     yield from _missing_kinds(trace)
+
+
+def _has_mistake(trace: Trace, step: Step) -> bool:
+    """True where the line itself has a finding already."""
+    span, source = step.statement.span, trace.sheet.source
+    return source.line_number(span.start) <= step.entry.blocked_by <= source.line_number(span.end)
 
 
 def _relations(statement: Criterion) -> list[Relation]:
@@ -36,13 +43,14 @@ def _cannot_fail(trace: Trace, statement: Criterion) -> Iterator[Finding]:
         return
     yield finding(
         "cannot-fail", "both sides are typed numbers, so that this always comes to the same",
-        trace.sheet.source, relations[0].at[0], help="compare a value of the sheet, by its name, with its limit",
+        trace.sheet.source, relations[0].at[0], help="compare a value of the sheet with its limit",
     )  # fmt: skip
 
 
 def _is_named(node: Node) -> bool:
     return any(
-        (isinstance(n, Name) and n.name != PI) or (isinstance(n, Call) and n.function not in FUNCTIONS) for n in walk(node)
+        (isinstance(n, Name) and n.name != PI) or (isinstance(n, Call) and n.function not in FUNCTIONS)
+        for n in walk(node)
     )
 
 
@@ -70,7 +78,9 @@ def _without_source(trace: Trace, step: Step, statement: Criterion) -> Finding:
 def _missing_kinds(trace: Trace) -> Iterator[Finding]:
     if "not_applicable" in trace.sheet.front.unread:
         return
-    shown = {criterion_kind(step) for step in trace.criteria} | {kind for kind, _ in trace.sheet.front.not_applicable}
+    shown = {criterion_kind(step) for step in trace.criteria} | {
+        kind for kind, _ in trace.sheet.front.not_applicable
+    }
     for kind in KINDS:
         if kind not in shown:
             yield finding(

@@ -1,4 +1,4 @@
-"""Design inputs: does each say what it is and where it comes from, is it used, is an angle in degrees by mistake?"""
+"""Design inputs: does each say what it is and where it comes from, is it used, has an angle its unit?"""
 
 from __future__ import annotations
 
@@ -31,8 +31,9 @@ def input_findings(trace: Trace) -> Iterator[Finding]:
             yield from _origin(trace, step, statement.name, statement.name_span)
         if step.entry.blocked_by == 0 and not step.used_by and statement.name not in trace.resolved.meant:
             yield finding(
-                "unused-input", f"nothing uses the input `{statement.name}`", trace.sheet.source, statement.name_span,
-                help="delete it, or use it where it belongs; a value that is only told is written in the text",
+                "unused-input", f"nothing uses the input `{statement.name}`",
+                trace.sheet.source, statement.name_span,
+                help="delete it, or use it where it belongs; what is only told is written in the text",
             )  # fmt: skip
         if isinstance(statement, Definition) and (typed := _plain_number(statement.value)) is not None:
             named = canonical(statement.name).split("_")[0].lower() in ANGLE_NAMES
@@ -51,11 +52,12 @@ def _origin(trace: Trace, step: Step, name: str, place: Span) -> Iterator[Findin
     elif not step.sources:
         yield finding(
             "no-source", f"the note of the input `{name}` cites no source and no assumption",
-            trace.sheet.source, place, help="cite one in the note, `[key]`, and say in the front matter what it is",
+            trace.sheet.source, place,
+            help="cite one in the note, `[key]`, and say in the front matter what it is",
         )  # fmt: skip
 
 
-# --- angles -----------------------------------------------------------------------------------------------------
+# --- angles -------------------------------------------------------------------------------------------------
 
 
 def _typed_as_angles(trace: Trace) -> frozenset[str]:
@@ -64,7 +66,7 @@ def _typed_as_angles(trace: Trace) -> frozenset[str]:
 
 
 def _numbers_in_calls(trace: Trace) -> Iterator[Number]:
-    """Typed plain numbers that stand as the argument of a trigonometric function and are too large for radians."""
+    """Typed plain numbers within a trigonometric function that are too large for radians."""
     for leaf in _leaves_of_calls(trace):
         if isinstance(leaf, Number) and abs(_value(leaf)) > FULL_TURN:
             yield leaf
@@ -113,5 +115,6 @@ def _value(number: Number) -> float:
 def _angle(trace: Trace, typed: Number) -> Finding:
     return finding(
         "angle-without-unit", f"the angle {typed.text} has no unit and is taken as radians",
-        trace.sheet.source, span_of(typed), help=f"write `{typed.text} deg` for degrees, `{typed.text} rad` for radians",
+        trace.sheet.source, span_of(typed),
+        help=f"write `{typed.text} deg` for degrees, `{typed.text} rad` for radians",
     )  # fmt: skip

@@ -22,7 +22,7 @@ _SPACES = " \u00a0\u2009\u202f"
 _NUMBER = re.compile(
     rf"(?<![\w.,/−-])[-−]?\d[\d_]*(?:[{_SPACES[1:]}]\d{{3}})*(?:\.\d+)?(?:e-?\d+)?(?!\w|[-/.,:]\d)"
 )
-_UNIT = re.compile(rf"[*_]*(?:[{_SPACES}]|\n[ >]*)?([^\W\d_%°]\S*|%|°\S*)")
+_UNIT = re.compile(rf"[*_]*(?:[{_SPACES}]|\n[ >]*)?([^\W\d_%°][^\s\0]*|%|°[^\s\0]*)")
 _FENCE = re.compile(r"^[ >]*(`{3,}|~{3,})[^\n]*\n.*?(?:^[ >]*\1[`~]*[ ]*$|\Z)", re.MULTILINE | re.DOTALL)
 _NO_PROSE = re.compile(r"(`+)(?!`).*?(?<!`)\1(?!`)|\{[^{}]*\}|\]\([^)\s]*\)|<[^>\s]*>", re.DOTALL)
 _NUMBERING = re.compile(r"#+\s*[\d.]+")
@@ -32,7 +32,7 @@ _SIGNS = str.maketrans({
 
 
 def prose_findings(trace: Trace) -> Iterator[Finding]:
-    """`stale-number`: a number with its unit, or a plain one of several digits, that is the printed value of a result."""
+    """`stale-number`: a number with its unit, or a plain one of several digits, that a result prints."""
     results = _Results(trace)
     if not results.by_dimension:
         return
@@ -43,7 +43,11 @@ def prose_findings(trace: Trace) -> Iterator[Finding]:
                 at = block.span.start + typed.at
                 yield _finding(trace, typed, step, Span(at, at + len(typed.number)))
     front = trace.sheet.front
-    for key, words in (("objective", front.objective), ("method", front.method), ("conclusion", front.conclusion)):
+    for key, words in (
+        ("objective", front.objective),
+        ("method", front.method),
+        ("conclusion", front.conclusion),
+    ):
         for typed, step in results.repeated_in(_masked(words.text)):
             yield _finding(trace, typed, step, _in_front_matter(trace, key, words, typed))
 
@@ -70,12 +74,13 @@ def _in_front_matter(trace: Trace, key: str, words: Words, typed: _Typed) -> Spa
 def _finding(trace: Trace, typed: _Typed, step: Step, span: Span | None) -> Finding:
     asked = "" if typed.unit in (ONE, step.unit) else f" [{typed.unit.text}]"
     return finding(
-        "stale-number", f"`{typed.said}` is the result `{step.id}`, typed by hand: it will not follow a change",
+        "stale-number",
+        f"`{typed.said}` is the result `{step.id}`, typed by hand: it will not follow a change",
         trace.sheet.source, span, help=f"write `{{{step.entry.name}{asked}}}`, which prints the value",
     )  # fmt: skip
 
 
-# --- numbers ----------------------------------------------------------------------------------------------------
+# --- numbers ------------------------------------------------------------------------------------------------
 
 
 @dataclass(frozen=True, slots=True)

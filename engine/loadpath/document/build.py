@@ -60,36 +60,26 @@ class _Builder:
         """Anchor of the place where each finding stands, by its index."""
 
     def run(self) -> Document:
-        values, spans = self._values()
-        self.values = values
+        self.values = self._values()
         blocks = self._blocks()
         front = self.front
         loose = tuple(f for i, f in enumerate(self.trace.findings) if i not in self.placed and f.severity != "note")
         return Document(
             front.language or "en", front.page, front.title or "Untitled", front.subtitle, self._about(), self._alerts(),
-            self._summary(), blocks, loose, self._registers(blocks), self._title_block(), values, spans,
-            tuple(b for b in blocks if isinstance(b, FigureBlock)),
+            self._summary(), blocks, loose, self._registers(blocks), self._title_block(), self.values,
+            tuple(b for b in blocks if isinstance(b, FigureBlock)), self.trace.sheet.source,
         )  # fmt: skip
 
     # --- values in prose ---
 
-    def _values(self) -> tuple[dict[Any, Shown | str], tuple[tuple[int, int, Shown | str], ...]]:
-        values: dict[Any, Shown | str] = {}
-        spans: list[tuple[int, int, Shown | str]] = []
-        for value, printed in self._each_value():
-            values[value] = printed
-            if value.source is self.trace.sheet.source:
-                spans.append((value.span.start, value.span.end, printed))
-        return values, tuple(sorted(spans, key=lambda s: s[0]))
-
-    def _each_value(self) -> list[tuple[Value, Shown | str]]:
+    def _values(self) -> dict[Any, Shown | str]:
         found = [*self.front.objective.values, *self.front.method.values, *self.front.conclusion.values]
         for block in self.trace.sheet.blocks:
             if isinstance(block, SheetProse):
                 found += block.values
             elif isinstance(block, Heading):
                 found += [t.meta["value"] for t in (block.tokens.children or ()) if t.type == "value"]
-        return [(value, self._print_value(value)) for value in found]
+        return {value: self._print_value(value) for value in found}
 
     def _print_value(self, value: Value) -> Shown | str:
         unit = self.trace.resolved.values.get(value)
@@ -169,7 +159,7 @@ class _Builder:
             elif isinstance(block, Image):
                 blocks.append(FigureBlock(block.number, block.caption, block.media_type, block.data, by_block[index]))
             else:
-                blocks.append(ProseBlock(block.tokens, block.text, block.span.start, by_block[index]))
+                blocks.append(ProseBlock(block.tokens, by_block[index]))
         return tuple(blocks)
 
     def _place_findings(self) -> dict[int, tuple[Finding, ...]]:

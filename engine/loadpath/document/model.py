@@ -11,6 +11,7 @@ from typing import Any
 from loadpath.findings import Finding
 from loadpath.formula.statements import CriterionKind
 from loadpath.formula.tree import Node, Shown
+from loadpath.text import Source
 
 CAUTION = (
     "This calculation is to be checked by a competent person before anything is built, lifted or loaded on its strength. "
@@ -206,12 +207,9 @@ class SectionHead:
 
 @dataclass(frozen=True, slots=True)
 class ProseBlock:
-    """A run of prose: markdown-it tokens for pages, source text for Markdown."""
+    """A run of prose, as markdown-it tokens."""
 
     tokens: tuple[Any, ...]
-    text: str
-    start: int
-    """Offset of `text` in the source."""
     findings: tuple[Finding, ...] = ()
 
 
@@ -378,7 +376,7 @@ class Document:
     title_block: TitleBlock
     values: dict[Any, Shown | str] = field(repr=False)
     """What each `{name}` of the prose prints, by `Value`."""
-    value_spans: tuple[tuple[int, int, Shown | str], ...] = field(repr=False)
-    """The same by place in the source, for Markdown."""
     figures: tuple[FigureBlock, ...]
+    source: Source = field(repr=False)
+    """The sheet's own text; a finding may stand in another file."""
     caution: str = CAUTION

@@ -15,7 +15,7 @@ from loadpath.evaluate.working import Observer
 from loadpath.findings import Finding, Remark, finding, ordered
 from loadpath.formula.canonical import text
 from loadpath.formula.statements import Check, Choice, Criterion, Definition, Faulty, Validity
-from loadpath.formula.tree import Logic, Node, Quantity
+from loadpath.formula.tree import Node
 from loadpath.resolve import Resolved, is_relative, relations_in
 from loadpath.sheet import Image, Sheet
 from loadpath.trace.digits import digits_of_verdict, exact_digits
@@ -57,7 +57,14 @@ class _Run:
         found = self.found
         if sheet.findings or self.plan.resolved.findings:
             found = [*sheet.findings, *self.plan.resolved.findings, *found]
-        return Trace(self.plan.resolved, tuple(self.steps), self.plan.sections, ordered(found), digest(sheet), self._work_printed)
+        return Trace(
+            self.plan.resolved,
+            tuple(self.steps),
+            self.plan.sections,
+            ordered(found),
+            digest(sheet),
+            self._work_printed,
+        )
 
     def _work_printed(self, node: Node) -> float:
         return float(self.plan.compiler.compile_tree(node)(self.values, _NO_PARAMETERS))
@@ -127,7 +134,14 @@ class _Run:
         here = planned.outline.entry.statement.span
         inside = here.start <= failure.span.start < here.end
         remarks = () if inside else (Remark(f"worked for line {planned.outline.entry.line}", here),)
-        new = finding(failure.slug, failure.tell(shower(self.plan.resolved)), source, failure.span, help=failure.help, remarks=remarks)
+        new = finding(
+            failure.slug,
+            failure.tell(shower(self.plan.resolved)),
+            source,
+            failure.span,
+            help=failure.help,
+            remarks=remarks,
+        )
         self.found.append(new)
         return new.line
 
@@ -136,13 +150,16 @@ class _Run:
     def _sides(self, planned: Planned) -> tuple[tuple[Any, ...], ...]:
         compiler = self.plan.compiler
         return tuple(
-            tuple(run(work, node, self.values, _NO_PARAMETERS, compiler) for node, work in side) for side in planned.sides
+            tuple(run(work, node, self.values, _NO_PARAMETERS, compiler) for node, work in side)
+            for side in planned.sides
         )
 
     def _criterion(self, planned: Planned) -> Verdict:
         entry = planned.outline.entry
         assert planned.tree is not None
-        verdict = judge(planned.tree, self._sides(planned), ratios=not any(u.absolute for u in entry.side_units))
+        verdict = judge(
+            planned.tree, self._sides(planned), ratios=not any(u.absolute for u in entry.side_units)
+        )
         return replace(verdict, conditional_on=planned.assumed) if planned.assumed else verdict
 
     def _validity(self, planned: Planned) -> Verdict:
@@ -154,12 +171,22 @@ class _Run:
     def _check(self, planned: Planned, statement: Check) -> Verdict:
         ((left, right),) = self._sides(planned)
         compiler = self.plan.compiler
-        tolerance = float(run(compiler.compile_tree(statement.tolerance), statement.tolerance, self.values, _NO_PARAMETERS, compiler))
+        tolerance = float(
+            run(
+                compiler.compile_tree(statement.tolerance),
+                statement.tolerance,
+                self.values,
+                _NO_PARAMETERS,
+                compiler,
+            )
+        )
         allowed = tolerance * abs(right) if is_relative(statement.tolerance) else tolerance
         held = abs(left - right) <= allowed * (1 + 1e-9)
         if not held:
             self.found.append(self._failed_check(planned, statement, left, right))
-        return Verdict(held, sides=((left, right),), within=tolerance, demand=abs(left - right), limit=allowed)
+        return Verdict(
+            held, sides=((left, right),), within=tolerance, demand=abs(left - right), limit=allowed
+        )
 
     def _failed_check(self, planned: Planned, statement: Check, left: float, right: float) -> Finding:
         unit = planned.outline.entry.side_units[0]
@@ -188,7 +215,9 @@ class _Run:
             if verdict is None or not isinstance(step.statement, Criterion):
                 continue
             if missed := tuple(sorted(planned.ranged & outside)):
-                verdict = replace(verdict, satisfied=None, utilisation=None, one_sided=False, margin=None, outside=missed)
+                verdict = replace(
+                    verdict, satisfied=None, utilisation=None, one_sided=False, margin=None, outside=missed
+                )
                 self.steps[index] = replace(step, verdict=verdict)
             elif verdict.one_sided:
                 self.found.append(self._one_sided(step.statement, step.id, verdict))
@@ -196,8 +225,10 @@ class _Run:
     def _one_sided(self, statement: Criterion, id: str, verdict: Verdict) -> Finding:
         relation = relations_in(statement)[verdict.part]
         return finding(
-            "one-sided", f"`{id}` holds a negative value against one positive limit, so that only one side is looked at",
-            self.plan.resolved.sheet.source, relation.at[0], help=both_sides(relation, verdict.sides[verdict.part]),
+            "one-sided",
+            f"`{id}` holds a negative value against one positive limit, so that only one side is looked at",
+            self.plan.resolved.sheet.source, relation.at[0],
+            help=both_sides(relation, verdict.sides[verdict.part]),
         )  # fmt: skip
 
     def _bring_in_digits(self) -> None:
@@ -210,7 +241,10 @@ class _Run:
                     needed |= {name: max(digits, needed.get(name, 0)) for name in names}
         if needed:
             self.steps = [
-                replace(s, digits=needed[s.entry.name]) if s.kind == "result" and s.entry.name in needed else s for s in self.steps
+                replace(s, digits=needed[s.entry.name])
+                if s.kind == "result" and s.entry.name in needed
+                else s
+                for s in self.steps
             ]
 
 
@@ -222,7 +256,7 @@ def _is_judged(planned: Planned) -> bool:
 
 
 def digest(sheet: Sheet) -> str:
-    """SHA-256 of all that a sheet is issued from: its text, each `project.yaml`, each image, each with its length."""
+    """SHA-256 of all that a sheet is issued from: text, each `project.yaml`, each image, with its length."""
     total = hashlib.sha256()
     parts = [sheet.source.text.encode(), *(text.encode() for text in sheet.project_texts)]
     parts += [block.data for block in sheet.blocks if isinstance(block, Image)]

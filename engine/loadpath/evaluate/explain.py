@@ -131,7 +131,7 @@ class _Explanation:
                 yield part, self._leaf(part, parameters)
 
 
-# --- what is said -----------------------------------------------------------------------------------------------
+# --- what is said -------------------------------------------------------------------------------------------
 
 Known = tuple[tuple[Node, Any], ...]
 """Parts of a formula with their values."""
@@ -139,7 +139,9 @@ Known = tuple[tuple[Node, Any], ...]
 
 def _list(show: Show, known: Known) -> str:
     """`P` is 20 kN and `A` is 0 mm^2; what is typed there says itself."""
-    told = [f"`{short(n)}` is {_shown(show, n, v)}" for n, v in known if any(isinstance(p, Name) for p in walk(n))]
+    told = [
+        f"`{short(n)}` is {_shown(show, n, v)}" for n, v in known if any(isinstance(p, Name) for p in walk(n))
+    ]
     return " and ".join(told) or " and ".join(f"`{short(n)}`" for n, _ in known)
 
 
@@ -149,7 +151,9 @@ def _shown(show: Show, node: Node, value: Any) -> str:
 
 def _zero(node: Binary, left: float) -> Failure:
     def tell(show: Show) -> str:
-        return f"`{short(node.right)}` is 0, and `{short(node.left)}` ({show(node.left, left)}) is divided by it"
+        return (
+            f"`{short(node.right)}` is 0, and `{short(node.left)}` ({show(node.left, left)}) is divided by it"
+        )
 
     return Failure("division-by-zero", tell, node.at, _CHECK)
 
@@ -158,7 +162,8 @@ def _check_power(node: Binary, left: float, right: float) -> None:
     """A power that has no real value."""
     if left == 0 and right < 0:
         raise Failure(
-            "division-by-zero", lambda show: f"`{short(node.left)}` is 0 and is raised to {show(node.right, right)}",
+            "division-by-zero",
+            lambda show: f"`{short(node.left)}` is 0 and is raised to {show(node.right, right)}",
             node.at, _CHECK,
         )  # fmt: skip
     if left < 0 and right != int(right):

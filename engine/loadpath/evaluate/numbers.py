@@ -1,7 +1,7 @@
 """The compiled plan: a formula tree becomes a chain of closures over bare SI floats.
 
-`compile_tree` is bound to the scalar functions of `math`; a binding to columns can be made the same way. The closures
-check nothing: where one fails, `explain` goes over the tree once more and finds the operation that failed.
+`compile_tree` is bound to the scalar functions of `math`; a binding to columns can be made the same way. The
+closures check nothing: where one fails, `explain` goes over the tree once more and finds the operation.
 """
 
 from __future__ import annotations
@@ -191,7 +191,10 @@ class Compiler:
 
     def _cases(self, node: Cases, parameters: frozenset[str]) -> Work:
         branches = [
-            (None if b.condition is None else self.compile_tree(b.condition, parameters), self.compile_tree(b.value, parameters))
+            (
+                None if b.condition is None else self.compile_tree(b.condition, parameters),
+                self.compile_tree(b.value, parameters),
+            )
             for b in node.branches
         ]
 

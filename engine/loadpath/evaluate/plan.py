@@ -6,7 +6,6 @@ from collections import defaultdict
 from collections.abc import Iterator
 from dataclasses import dataclass
 
-
 from loadpath.evaluate.numbers import Compiler, Work
 from loadpath.formula.statements import (
     Check,
@@ -64,7 +63,9 @@ def make_plan(resolved: Resolved) -> Plan:
     return Plan(resolved, compiler, steps, sections)
 
 
-def _planned(outline: Outline, compiler: Compiler, assumed: tuple[str, ...], ranged: frozenset[str]) -> Planned:
+def _planned(
+    outline: Outline, compiler: Compiler, assumed: tuple[str, ...], ranged: frozenset[str]
+) -> Planned:
     entry = outline.entry
     tree = tree_of(entry.statement)
     if tree is None or entry.blocked_by:
@@ -89,7 +90,7 @@ def _sides(tree: Node, compiler: Compiler) -> Sides:
     return tuple(tuple((o, compiler.compile_tree(o)) for o in r.operands) for r in relations)
 
 
-# --- trails -----------------------------------------------------------------------------------------------------
+# --- trails -------------------------------------------------------------------------------------------------
 
 
 def _outlines(resolved: Resolved, numbers: Iterator[str]) -> tuple[Outline, ...]:
@@ -128,7 +129,9 @@ class _Reach:
     def __init__(self, resolved: Resolved) -> None:
         self.assumptions = [a.key for a in resolved.sheet.front.assumptions if a.confirm]
         self.open = frozenset(self.assumptions)
-        self.ranged = {n for e in resolved.entries if isinstance(e.statement, Validity) for n, _ in e.statement.names}
+        self.ranged = {
+            n for e in resolved.entries if isinstance(e.statement, Validity) for n, _ in e.statement.names
+        }
         self.known: dict[str, tuple[frozenset[str], frozenset[str]]] = {}
         self.by_id: dict[str, tuple[frozenset[str], frozenset[str]]] = {}
         self.behind: dict[str, frozenset[str]] = defaultdict(frozenset)
@@ -153,7 +156,7 @@ class _Reach:
         return tuple(key for key in self.assumptions if key in assumed), ranged
 
 
-# --- numbers of sections and steps ------------------------------------------------------------------------------
+# --- numbers of sections and steps --------------------------------------------------------------------------
 
 
 def _numbering(sheet: Sheet) -> tuple[tuple[tuple[int, str], ...], Iterator[str]]:
@@ -179,5 +182,3 @@ def _numbering(sheet: Sheet) -> tuple[tuple[tuple[int, str], ...], Iterator[str]
 def is_title(heading: Heading, sheet: Sheet) -> bool:
     """True for a heading that only repeats the sheet's title."""
     return heading.level == 1 and heading.text.strip() == sheet.front.title.strip()
-
-

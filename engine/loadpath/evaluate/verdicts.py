@@ -34,7 +34,8 @@ class _Part:
 def judge(relation: Node, sides: tuple[Sides, ...], ratios: bool = True) -> Verdict:
     """The verdict on a criterion.
 
-    `sides` holds the SI values of each relation's operands; `ratios` is False for absolute temperatures, which have none.
+    `sides` holds the SI values of each relation's operands; `ratios` is False for absolute temperatures: they
+    have none.
     """
     if isinstance(relation, Logic):
         relations = [r for r in relation.operands if isinstance(r, Relation)]
@@ -75,7 +76,7 @@ def _turned(sign: str) -> str:
 
 
 def _single(relation: Relation, left: float, right: float, ratios: bool) -> _Part:
-    """What is on the right is the bound, unless only the left side is typed; a typed bound of zero has no ratio."""
+    """The bound is on the right, unless only the left side is typed; a typed bound of zero has no ratio."""
     first, second = relation.operands
     at_most = relation.signs[0][0] == "<"
     typed_left = not _is_named(first) and _is_named(second)
@@ -87,7 +88,7 @@ def _single(relation: Relation, left: float, right: float, ratios: bool) -> _Par
 
 
 def _against(satisfied: bool, demand: float, limit: float, ratios: bool, *, limit_is_bound: bool) -> _Part:
-    """Demand against limit, with both signs turned where both are negative, or the bound is and the value is zero."""
+    """Demand against limit; both signs turned where both are negative, or the bound is and the value zero."""
     if not ratios:
         return _Part(satisfied, demand, limit, None)
     if demand < 0 and (limit < 0 or (limit == 0 and not limit_is_bound)):
@@ -122,14 +123,14 @@ def _chain(first: str, second: str, low: float, value: float, high: float, ratio
 
 
 def _opposite(satisfied: bool, low: float, value: float, high: float, ratios: bool) -> tuple[_Part, int]:
-    """Bounds of opposite sign: the demand over the bound on its own side; no demand, over the bound that is not zero."""
+    """Bounds of opposite sign: the demand over the bound on its own side, or over one that is not zero."""
     upper = value > 0 or (value == 0 and high > 0)
     demand, limit = (value, high) if upper else (0 - value, 0 - low)
     ratio = _ratio(satisfied, demand, limit) if ratios else None
     return _Part(satisfied, demand, limit, ratio), 1 if upper else 0
 
 
-# --- how to look at both sides ----------------------------------------------------------------------------------
+# --- how to look at both sides ------------------------------------------------------------------------------
 
 
 def both_sides(relation: Relation, values: tuple[float | str, ...]) -> str:

@@ -7,10 +7,10 @@ from dataclasses import dataclass
 from typing import Any
 
 from loadpath.evaluate.numbers import Compiler, Values
-from loadpath.formula.statements import FunctionDefinition, Parameter
+from loadpath.formula.statements import Definition, FunctionDefinition, Parameter
 from loadpath.formula.tree import As, Call, Cases, Name, Node, Number, Quantity, walk
 from loadpath.functions import FUNCTIONS
-from loadpath.resolve import Resolved, Type
+from loadpath.resolve import Entry, Resolved, Type
 from loadpath.trace.digits import exact_digits, typed_number
 from loadpath.trace.model import Aside, Called, Operand, Taken, Working
 from loadpath.units import ONE, Unit, parse_unit
@@ -29,7 +29,9 @@ class Observer:
     left: int = MOST_CALLS
     """Calls that may still be shown beneath the step at hand."""
 
-    def working(self, tree: Node, given: Mapping[str, Operand] | None = None, types: dict[str, Type] | None = None) -> Working:
+    def working(
+        self, tree: Node, given: Mapping[str, Operand] | None = None, types: dict[str, Type] | None = None
+    ) -> Working:
         """How the value of a tree came about; `given` are the parameters of the enclosing function."""
         if given is None:
             self.left = MOST_CALLS
@@ -54,21 +56,24 @@ class Observer:
 
     # --- calls of the sheet's own functions ---
 
-    def _calls(self, trees: list[Node], parameters: Values, scope: Mapping[str, Operand], types: dict[str, Type]) -> Iterator[Called]:
-        done: set[Call] = set()
-        for tree in trees:
-            for node in walk(tree):
-                if isinstance(node, Call) and node.function not in FUNCTIONS and node not in done and self.left > 0:
-                    done.add(node)
-                    self.left -= 1
-                    try:
-                        called = self._called(node, parameters, scope, types)
-                    except (ArithmeticError, ValueError):
-                        # what a condition passes over (`when x = 0 or f(x) <= 3`) need not have a value
-                        continue
-                    yield called
+    def _calls(
+        self, trees: list[Node], parameters: Values, scope: Mapping[str, Operand], types: dict[str, Type]
+    ) -> Iterator[Called]:
+        found = (node for tree in trees for node in walk(tree) if isinstance(node, Call))
+        for call in dict.fromkeys(call for call in found if call.function not in FUNCTIONS):
+            if self.left <= 0:
+                return
+            self.left -= 1
+            try:
+                called = self._called(call, parameters, scope, types)
+            except (ArithmeticError, ValueError):
+                # what a condition passes over (`when x = 0 or f(x) <= 3`) need not have a value
+                continue
+            yield called
 
-    def _called(self, call: Call, parameters: Values, scope: Mapping[str, Operand], types: dict[str, Type]) -> Called:
+    def _called(
+        self, call: Call, parameters: Values, scope: Mapping[str, Operand], types: dict[str, Type]
+    ) -> Called:
         definition = self.resolved.checker.function(call.function)
         assert definition is not None
         arguments: dict[str, Operand] = {}
@@ -80,9 +85,13 @@ class Observer:
         working = self.working(definition.body, arguments, inner_types)
         value = self._value(call, parameters)
         unit = self._unit_of_call(definition, inner_types)
-        return Called(call, tuple(arguments.items()), working, Operand(value, unit, self.resolved.sheet.front.digits))
+        return Called(
+            call, tuple(arguments.items()), working, Operand(value, unit, self.resolved.sheet.front.digits)
+        )
 
-    def _argument(self, parameter: Parameter, node: Node, found: Type, parameters: Values, scope: Mapping[str, Operand]) -> Operand:
+    def _argument(
+        self, parameter: Parameter, node: Node, found: Type, parameters: Values, scope: Mapping[str, Operand]
+    ) -> Operand:
         si = float(self._value(node, parameters))
         operand = self.operand(node, si, found, scope)
         if parameter.unit is None or operand.unit.text == parameter.unit.text:
@@ -90,7 +99,13 @@ class Observer:
         unit = parse_unit(parameter.unit.text)
         if operand.unit.dimension == unit.dimension and operand.typed and not isinstance(node, Name):
             return operand
-        return Operand(si, unit, exact_digits(unit.from_si(si), self.resolved.sheet.front.digits) if operand.typed else operand.digits)
+        return Operand(
+            si,
+            unit,
+            exact_digits(unit.from_si(si), self.resolved.sheet.front.digits)
+            if operand.typed
+            else operand.digits,
+        )
 
     def operand(self, node: Node, si: float, found: Type, scope: Mapping[str, Operand]) -> Operand:
         """How the value of an argument is printed."""
@@ -101,8 +116,7 @@ class Observer:
             index = self.resolved.by_name.get(node.name)
             if index is not None:
                 entry = self.resolved.entries[index]
-                typed = typed_number(entry.statement.value, entry.unit) if entry.kind == "input" else ""  # type: ignore[attr-defined]
-                return Operand(si, entry.unit, digits, typed)
+                return Operand(si, entry.unit, digits, _typed(entry))
         unit = _unit_typed(node) or self.resolved.system.unit_for(found.dimension, found.absolute)
         return Operand(si, unit, digits, typed_number(node, unit))
 
@@ -126,6 +140,13 @@ class Observer:
                 value, step = (self._value(a, parameters) for a in node.arguments)
                 times = round(FUNCTIONS[node.function].work(value, step) / step)
                 yield Aside(f"{node.function}: {times} steps of", node.arguments[1], "")
+
+
+def _typed(entry: Entry) -> str:
+    """The number of an input as typed, "" where it was not typed as one."""
+    if entry.kind != "input" or not isinstance(entry.statement, Definition):
+        return ""
+    return typed_number(entry.statement.value, entry.unit)
 
 
 def _type_of(parameter: Parameter, found: Type) -> Type:

@@ -111,7 +111,11 @@ def text(node: Node) -> str:
         case Shown(number=number, unit=unit):
             return f"{number} {unit}" if unit else number
         case Factor(body=body, number=number, unit=unit, divided=divided):
-            return f"{_child(body, node)} / ({number} {unit})" if divided else f"{_child(body, node)} * {number} {unit}"
+            return (
+                f"{_child(body, node)} / ({number} {unit})"
+                if divided
+                else f"{_child(body, node)} * {number} {unit}"
+            )
         case Negative(operand=operand):
             return "-" + _child(operand, node)
         case Binary():

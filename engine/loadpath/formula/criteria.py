@@ -47,7 +47,9 @@ def _either(reader: Reader) -> Node:
     second = reader.relation()
     if reader.word() == "or":
         message = "more than two relations are joined by `or`"
-        raise Mistake("bad-syntax", reader.here(2), message, "an excluded band has two sides; write two criteria")
+        raise Mistake(
+            "bad-syntax", reader.here(2), message, "an excluded band has two sides; write two criteria"
+        )
     reader.expect_end()
     return Logic("or", (first, second), reader.span(start))
 
@@ -57,7 +59,7 @@ def _refuse_equals(relation: Relation) -> None:
         if sign == "=":
             raise Mistake(
                 "no-relation", place, "a criterion needs `<=`, `<`, `>=` or `>`, not `=`",
-                "write `<=` or `>=`; what is worked out in two ways is compared by `check: a = b within 0.1 %`",
+                "write `<=` or `>=`; two ways of working are compared by `check: a = b within 0.1 %`",
             )  # fmt: skip
 
 
@@ -77,7 +79,9 @@ def read_validity(group: Group, reader: Reader) -> Validity:
     _refuse_empty(reader, place, form)
     relation = reader.condition()
     if not reader.takes_word("for"):
-        raise _no_ending(reader, place, "a validity says which names it is for", f"end it with `for` and names: {form}")
+        raise _no_ending(
+            reader, place, "a validity says which names it is for", f"end it with `for` and names: {form}"
+        )
     names = [reader.name()]
     while reader.takes(","):
         names.append(reader.name())
@@ -93,7 +97,9 @@ def read_check(group: Group, reader: Reader) -> Check:
     relation = reader.relation()
     if relation.signs != ("=",):
         message = "a cross-check compares with one `=`"
-        raise Mistake("no-relation", relation.at[0], message, f"write {form}; a requirement begins with `limit:`")
+        raise Mistake(
+            "no-relation", relation.at[0], message, f"write {form}; a requirement begins with `limit:`"
+        )
     if not reader.takes_word("within"):
         message = "a cross-check says within what the two must agree"
         raise _no_ending(reader, place, message, f"end it with a tolerance: {form}")

@@ -58,7 +58,7 @@ class Cursor:
         return self.text[index] if index < len(self.text) else ""
 
     def word(self) -> str:
-        """The name-like run of characters at the next place, "" where there is none; takes only white space."""
+        """The name-like run of characters that comes next, "" where there is none; takes white space only."""
         self.skip()
         end = self.at
         while end < len(self.text) and (
@@ -123,9 +123,7 @@ class Cursor:
         start = self.at
         if not word:
             help = "a name begins with a letter: `sigma_b`"
-            raise Mistake(
-                "bad-syntax", self.here(), f"expected {what}, but {self.found()} stands here", help
-            )
+            raise Mistake("bad-syntax", self.here(), f"expected {what}, but {self.found()} stands here", help)
         self.at += len(word)
         while self.peek() == "." and is_letter(self.peek(1)):
             self.at += 1
@@ -181,7 +179,7 @@ class Cursor:
     def _no_operator(self, shown: str) -> Mistake:
         return Mistake(
             "implied-multiplication", self.here(len(shown)), f"no operator stands before `{shown}`",
-            f"a product is typed with `*`: `{self.before()}*{shown}`; a unit stands behind a typed number only",
+            f"a product is typed with `*`: `{self.before()}*{shown}`; a unit stands behind a number only",
         )  # fmt: skip
 
     def _stray_bracket(self) -> Mistake:
@@ -189,7 +187,9 @@ class Cursor:
         if number[:1].isdigit() and unit:
             mend = f"a unit stands behind its number without brackets: `{number} {unit}`"
         else:
-            mend = "the unit of a result stands after its name: `sigma [MPa] = ...`; a citation stands in a note"
+            mend = (
+                "the unit of a result stands after its name: `sigma [MPa] = ...`; a citation stands in a note"
+            )
         return Mistake("bad-syntax", self.here(), "`[` cannot stand here", mend)
 
     def _decimal_comma(self) -> Mistake:
@@ -199,7 +199,8 @@ class Cursor:
         head = self.before()
         groups = tail.group().partition(".")[0].split(",")[1:]
         if all(len(group) == 3 for group in groups) and not head.startswith("0"):
-            mend = f"digits are grouped by `_`: `{head}{tail.group().replace(',', '_')}`; a decimal takes a point"
+            grouped = head + tail.group().replace(",", "_")
+            mend = f"digits are grouped by `_`: `{grouped}`; a decimal takes a point"
         else:
             mend = f"a decimal takes a point: `{head}{tail.group().replace(',', '.', 1)}`"
         return Mistake("decimal-comma", self.here(), "a comma stands inside a number", mend)

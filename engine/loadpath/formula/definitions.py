@@ -9,7 +9,14 @@ from loadpath.formula.lines import Group, Item
 from loadpath.formula.mistake import Mistake
 from loadpath.formula.names import RESERVED
 from loadpath.formula.reader import Reader
-from loadpath.formula.statements import AskedUnit, Choice, Definition, FunctionDefinition, Parameter, Statement
+from loadpath.formula.statements import (
+    AskedUnit,
+    Choice,
+    Definition,
+    FunctionDefinition,
+    Parameter,
+    Statement,
+)
 from loadpath.formula.tree import Branch, Cases, Node
 from loadpath.functions import NAMES as FUNCTION_NAMES
 from loadpath.text import Span
@@ -57,7 +64,7 @@ def _expect_equals(reader: Reader, name: str) -> None:
     message = f"expected `=` after `{name}`, but {reader.found()} stands here"
     mend = _FORM
     if unit := _UNIT_IN_PLACE.match(reader.text, reader.at):
-        mend = f"the unit of a result stands in brackets: `{name} [{unit.group(1)}] = ...`; a name holds no spaces"
+        mend = f"the unit of a result stands in brackets: `{name} [{unit.group(1)}] = ...`"
     raise Mistake("bad-syntax", reader.here(), message, mend)
 
 
@@ -66,7 +73,7 @@ def _unit(reader: Reader) -> AskedUnit | None:
     return AskedUnit(*reader.bracketed_unit()) if reader.peek() == "[" else None
 
 
-# --- choices ----------------------------------------------------------------------------------------------------
+# --- choices ------------------------------------------------------------------------------------------------
 
 
 def _choice(group: Group, reader: Reader, name: str, place: Span, unit: AskedUnit | None) -> Choice:
@@ -86,7 +93,7 @@ def _choice(group: Group, reader: Reader, name: str, place: Span, unit: AskedUni
     return Choice(group.span, group.whole.notes, name, place, word.text, word.span, words)
 
 
-# --- cases ------------------------------------------------------------------------------------------------------
+# --- cases --------------------------------------------------------------------------------------------------
 
 
 def _cases(group: Group, reader: Reader) -> Cases:
@@ -131,7 +138,7 @@ def _no_condition(reader: Reader, item: Item) -> Mistake:
     return Mistake("bad-syntax", where, message, mend)
 
 
-# --- functions --------------------------------------------------------------------------------------------------
+# --- functions ----------------------------------------------------------------------------------------------
 
 
 def _function(group: Group, reader: Reader, name: str, place: Span) -> FunctionDefinition:
@@ -163,7 +170,9 @@ def _parameter(reader: Reader) -> Parameter:
     word = reader.word()
     if word in RESERVED or word in FUNCTION_NAMES:
         message = f"`{word}` is a word of the language and cannot be a parameter"
-        raise Mistake("reserved-word", reader.here(len(word)), message, f"choose another name, such as `{word}_1`")
+        raise Mistake(
+            "reserved-word", reader.here(len(word)), message, f"choose another name, such as `{word}_1`"
+        )
     name, place = reader.name("the name of a parameter")
     if "." in name:
         raise Mistake("bad-syntax", place, f"the parameter `{name}` holds a dot", "write `_` instead")

@@ -1,7 +1,7 @@
-"""From the lines of a formula block to one text a statement, with every character at its own offset in the source.
+"""From the lines of a formula block to one text a statement, every character at its own offset in the source.
 
-A statement that runs over several lines is read as one text: line ends, notes and indents become spaces of the same
-length, so that a position in the text is a position in the source and no map is needed.
+A statement that runs over several lines is read as one text: line ends, notes and indents become spaces of
+the same length, so that a position in the text is a position in the source and no map is needed.
 """
 
 from __future__ import annotations
@@ -128,7 +128,7 @@ def _group(lines: list[_Line]) -> Group:
 
 
 def groups(source: Source, span: Span) -> tuple[Group, ...]:
-    """The statements of a block: a line indented deeper than the one that starts a statement belongs to it."""
+    """The statements of a block: a line that is deeper than the one that starts a statement belongs to it."""
     found: list[list[_Line]] = []
     for line in _lines(source, span):
         if found and line.indent > found[-1][0].indent:

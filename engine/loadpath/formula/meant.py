@@ -71,14 +71,16 @@ def _nearest_beginning(word: str) -> str:
     return close[0] if close else ""
 
 
-# --- lines that begin like no statement -------------------------------------------------------------------------
+# --- lines that begin like no statement ---------------------------------------------------------------------
 
 
 def no_such_beginning(reader: Reader) -> Mistake:
     """`strengh rod: ...`, or another word with a colon."""
     word = reader.word()
     near = _nearest_beginning(word)
-    mend = "a criterion begins with `strength:`, `stiffness:`, `stability:` or `limit:`, a definition is `name = ...`"
+    mend = (
+        "a criterion begins with `strength:`, `stiffness:`, `stability:` or `limit:`; a definition takes `=`"
+    )
     return Mistake(
         "bad-syntax", reader.here(len(word)), f"`{word}` with a colon begins no statement of the language",
         f"did you mean `{near}`?" if near else mend,

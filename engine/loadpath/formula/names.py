@@ -11,21 +11,25 @@ from dataclasses import dataclass
 from functools import lru_cache
 
 GREEK = {
-    "alpha": "α", "beta": "β", "gamma": "γ", "delta": "δ", "epsilon": "ε", "zeta": "ζ", "eta": "η", "theta": "θ",
-    "iota": "ι", "kappa": "κ", "lambda": "λ", "mu": "μ", "nu": "ν", "xi": "ξ", "omicron": "ο", "pi": "π", "rho": "ρ",
-    "sigma": "σ", "tau": "τ", "upsilon": "υ", "phi": "φ", "chi": "χ", "psi": "ψ", "omega": "ω",
-    "Alpha": "Α", "Beta": "Β", "Gamma": "Γ", "Delta": "Δ", "Epsilon": "Ε", "Zeta": "Ζ", "Eta": "Η", "Theta": "Θ",
-    "Iota": "Ι", "Kappa": "Κ", "Lambda": "Λ", "Mu": "Μ", "Nu": "Ν", "Xi": "Ξ", "Omicron": "Ο", "Pi": "Π", "Rho": "Ρ",
-    "Sigma": "Σ", "Tau": "Τ", "Upsilon": "Υ", "Phi": "Φ", "Chi": "Χ", "Psi": "Ψ", "Omega": "Ω",
+    "alpha": "α", "beta": "β", "gamma": "γ", "delta": "δ", "epsilon": "ε", "zeta": "ζ", "eta": "η",
+    "theta": "θ", "iota": "ι", "kappa": "κ", "lambda": "λ", "mu": "μ", "nu": "ν", "xi": "ξ",
+    "omicron": "ο", "pi": "π", "rho": "ρ", "sigma": "σ", "tau": "τ", "upsilon": "υ", "phi": "φ",
+    "chi": "χ", "psi": "ψ", "omega": "ω",
+    "Alpha": "Α", "Beta": "Β", "Gamma": "Γ", "Delta": "Δ", "Epsilon": "Ε", "Zeta": "Ζ", "Eta": "Η",
+    "Theta": "Θ", "Iota": "Ι", "Kappa": "Κ", "Lambda": "Λ", "Mu": "Μ", "Nu": "Ν", "Xi": "Ξ",
+    "Omicron": "Ο", "Pi": "Π", "Rho": "Ρ", "Sigma": "Σ", "Tau": "Τ", "Upsilon": "Υ", "Phi": "Φ",
+    "Chi": "Χ", "Psi": "Ψ", "Omega": "Ω",
 }  # fmt: skip
 _SPELLED = {letter: word for word, letter in GREEK.items()} | {
     "µ": "mu", "ϑ": "theta", "ϕ": "phi", "ϵ": "epsilon", "ς": "sigma", "ϱ": "rho", "ϰ": "kappa",
 }  # fmt: skip
 
 RESERVED = frozenset(
-    "cases when otherwise solve unknown use take beam plot tabulate figure for from to at as of by and or over "
-    "between within steps".split()
-)
+    [
+        "cases", "when", "otherwise", "solve", "unknown", "use", "take", "beam", "plot", "tabulate", "figure",
+        "for", "from", "to", "at", "as", "of", "by", "and", "or", "over", "between", "within", "steps",
+    ]
+)  # fmt: skip
 """Words of the language that are never names (function names are reserved besides)."""
 
 KINDS = ("strength", "stiffness", "stability", "limit")
@@ -115,6 +119,6 @@ _LOOK = str.maketrans("ΑΒΕΖΗΙΚΜΝΟΡΤΥΧοАВЕЗКМНОРСТУХ�
 
 
 def look(name: str) -> tuple[str, str, str, int]:
-    """What a reader sees of a name: equal for two names that print alike (Greek `Α` against Latin `A` included)."""
+    """What a reader sees of a name: equal for two names that print alike, as Greek `Α` and Latin `A` do."""
     s = symbol(name)
     return s.prefix.translate(_LOOK), s.base.translate(_LOOK), s.subscript.translate(_LOOK), s.primes

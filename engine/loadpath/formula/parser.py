@@ -1,4 +1,4 @@
-"""Statements: which one a line is, and its parts. Parsing always succeeds: a bad line becomes `Faulty` and a finding."""
+"""Statements: which one a line is. Parsing always succeeds: a bad line becomes `Faulty` and a finding."""
 
 from __future__ import annotations
 
@@ -17,7 +17,9 @@ from loadpath.text import Source, Span
 LONGEST_STATEMENT = 20_000
 """Characters of one statement with its deeper lines."""
 
-_UNWORKED = re.compile(r"(use\s+\w+\s.*\sas\s+\w+|beam\s+\w+\s+over\s|solve\s+for\s+\w|take\s+\w.*\sfrom\s+\w)")
+_UNWORKED = re.compile(
+    r"(use\s+\w+\s.*\sas\s+\w+|beam\s+\w+\s+over\s|solve\s+for\s+\w|take\s+\w.*\sfrom\s+\w)"
+)
 
 
 def parse_block(source: Source, span: Span) -> tuple[tuple[Statement, ...], tuple[Finding, ...]]:
@@ -77,7 +79,9 @@ def _read(group: Group) -> Statement:
         raise meant.no_such_beginning(reader)
     if word in meant.LATER:
         raise meant.not_available(reader, word)
-    if word in RESERVED or (word in FUNCTION_NAMES and not meant.FUNCTION.match(text) and meant.DEFINES.match(text)):
+    if word in RESERVED or (
+        word in FUNCTION_NAMES and not meant.FUNCTION.match(text) and meant.DEFINES.match(text)
+    ):
         raise meant.reserved(reader, word)
     return definitions.read_definition(group, reader)
 
@@ -92,7 +96,8 @@ def _refuse_stray_lines(group: Group) -> None:
     except Mistake:
         return
     raise Mistake(
-        "stray-line", stray.span, "this line is indented deeper than the statement above, so that it goes on it",
+        "stray-line", stray.span,
+        "this line is indented deeper than the statement above, so that it goes on it",
         "indent it as far as the line above",
     )  # fmt: skip
 

@@ -116,7 +116,10 @@ class Quantities(Cursor):
             )  # fmt: skip
         if follows == "." and not self.peek(1).isdigit():
             raise Mistake(
-                "bad-syntax", self.here(), "a decimal point takes a digit after it", f"write `{text}` or `{text}.0`"
+                "bad-syntax",
+                self.here(),
+                "a decimal point takes a digit after it",
+                f"write `{text}` or `{text}.0`",
             )
 
     # --- units ---
@@ -140,7 +143,7 @@ class Quantities(Cursor):
         return self.unit_text()
 
     def unit_text(self) -> tuple[str, Span]:
-        """A unit: up to a space, a comma, a relation sign, a bracket, or a parenthesis not opened within it."""
+        """A unit: up to a space, a comma, a relation sign, a bracket, a parenthesis not opened within it."""
         start, opened = self.at, 0
         while self.at < len(self.text):
             character = self.text[self.at]
@@ -220,5 +223,5 @@ class Quantities(Cursor):
         raise Mistake(
             "mixed-number", self.span(match.start(), fraction.end()),
             f"`{whole}-{fraction.group()} {unit}` would subtract",
-            f"write `{whole} {fraction.group()} {unit}` for the mixed number, spaces round the `-` for a difference",
+            f"write `{whole} {fraction.group()} {unit}` for the mixed number, else put spaces round the `-`",
         )  # fmt: skip

@@ -1,7 +1,7 @@
 """Reading expressions and relations: one pass over the text, each position an offset into the source.
 
-Written by hand rather than handed to a parser generator: whether `12 kN/m * L` holds a unit, `5/8 in` a fraction or
-`<x - a>^1` a bracket depends on what stands around it, and every message says what was meant at that place.
+Written by hand rather than handed to a parser generator: whether `12 kN/m * L` holds a unit, `5/8 in` a
+fraction or `<x - a>^1` a bracket depends on what stands around it, and a message says what was meant there.
 `grammar.lark` states the same language for readers; a test holds the two together.
 """
 
@@ -238,7 +238,9 @@ class Reader(Quantities):
             return Mistake("unknown-choice", self.here(), message, mend)
         if character == ")":
             message = "this `)` closes nothing, or nothing stands before it"
-            return Mistake("unbalanced-bracket", self.here(), message, "delete it, or write what belongs before it")
+            return Mistake(
+                "unbalanced-bracket", self.here(), message, "delete it, or write what belongs before it"
+            )
         if character == ".":
             return Mistake("bad-syntax", self.here(), "a number begins with a digit", "write `0.5`, not `.5`")
         message = f"expected a number, a name or `(`, but {self.found()} stands here"
@@ -280,7 +282,9 @@ class Reader(Quantities):
         if not self.done():
             raise self.leftover()
         message = f"this `{self.text[start]}` is never closed"
-        raise Mistake("unbalanced-bracket", self.span(start, start + 1), message, f"close it with `{closing}`")
+        raise Mistake(
+            "unbalanced-bracket", self.span(start, start + 1), message, f"close it with `{closing}`"
+        )
 
     def _macaulay(self) -> Bracket:
         start = self.at
@@ -303,7 +307,9 @@ class Reader(Quantities):
         word = self.word()
         if word in RESERVED:
             message = f"`{word}` is a word of the language and stands where a value is needed"
-            raise Mistake("reserved-word", self.here(len(word)), message, f"choose another name, such as `{word}_1`")
+            raise Mistake(
+                "reserved-word", self.here(len(word)), message, f"choose another name, such as `{word}_1`"
+            )
         name, place = self.name()
         if self.peek() != "(":
             return Name(name, place)

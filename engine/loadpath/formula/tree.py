@@ -1,8 +1,9 @@
 """The formula tree: what a formula line means, as typed, in about twenty kinds of frozen node.
 
-Every node carries the span it was read from; spans stay out of equality, so two trees are equal when they mean the same.
+Every node carries the span it was read from; spans stay out of equality, so that two trees are equal when
+they mean the same.
 Names hold their canonical text (`formula.names`): Greek spelled out, Unicode NFC.
-Everything that is done with formulas (printing, substitution, dimensions, numbers) is a function over these nodes.
+Whatever is done with formulas (printing, substitution, dimensions, numbers) is a function over these nodes.
 """
 
 from __future__ import annotations
@@ -21,7 +22,7 @@ class Node:
     """Anything in a formula."""
 
 
-# --- values -----------------------------------------------------------------------------------------------------
+# --- values -------------------------------------------------------------------------------------------------
 
 
 @dataclass(frozen=True, slots=True)
@@ -38,7 +39,7 @@ class Part:
     """One number with its unit inside a quantity: `12 ft` of `12 ft 6 1/2 in`."""
 
     whole: str
-    """Decimal or whole number as typed; "" where there is only a fraction. A leading `-` only before degC or degF."""
+    """Number as typed, "" where there is only a fraction; a leading `-` only before degC or degF."""
     over: tuple[str, str] | None
     """Numerator and denominator of a typed fraction, or None."""
     unit: str
@@ -71,7 +72,7 @@ class Name(Node):
     span: Span = field(default=NOWHERE, compare=False)
 
 
-# --- operations -------------------------------------------------------------------------------------------------
+# --- operations ---------------------------------------------------------------------------------------------
 
 Operator = Literal["+", "-", "*", "/", "^"]
 
@@ -126,7 +127,7 @@ class As(Node):
     unit_span: Span = field(default=NOWHERE, compare=False)
 
 
-# --- relations --------------------------------------------------------------------------------------------------
+# --- relations ----------------------------------------------------------------------------------------------
 
 Sign = Literal["<=", "<", ">=", ">", "="]
 
@@ -169,7 +170,7 @@ class Cases(Node):
     span: Span = field(default=NOWHERE, compare=False)
 
 
-# --- what printing puts in place of names -----------------------------------------------------------------------
+# --- what printing puts in place of names -------------------------------------------------------------------
 
 
 @dataclass(frozen=True, slots=True)

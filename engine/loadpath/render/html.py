@@ -15,7 +15,7 @@ from loadpath.document.model import Block, Document, FigureBlock, Ref, TitleBloc
 from loadpath.formula.names import symbol
 from loadpath.formula.tree import Name, Node, Shown
 from loadpath.render.math import COLUMN, PAGE, flow, mathml, widest
-from loadpath.render.templates import environment, folder
+from loadpath.render.templates import environment, folder, without_turns
 from loadpath.units.printing import quantity
 
 CELL = 17
@@ -24,14 +24,13 @@ CELL = 17
 
 def render(document: Document) -> str:
     """The page of a document."""
-    return str(
-        _environment().get_template("document.html.j2").render(
-            d=document, s=document.summary, r=document.registers, t=document.title_block, style=Markup(style()),
-            block_strings=Markup(title_block_strings(document.title_block, document.alerts)),
-            inline=lambda tokens: _inline(tokens, document), prose=lambda tokens: _prose(tokens, document),
-            figure=_figure, kind=lambda block: type(block).__name__, contents=_contents(document.blocks),
-        )
+    page = _environment().get_template("document.html.j2").render(
+        d=document, s=document.summary, r=document.registers, t=document.title_block, style=Markup(style()),
+        block_strings=Markup(title_block_strings(document.title_block, document.alerts)),
+        inline=lambda tokens: _inline(tokens, document), prose=lambda tokens: _prose(tokens, document),
+        figure=_figure, kind=lambda block: type(block).__name__, contents=_contents(document.blocks),
     )  # fmt: skip
+    return without_turns(str(page))
 
 
 @lru_cache(maxsize=1)
@@ -69,7 +68,7 @@ def style() -> str:
 def css_string(text: str) -> str:
     """A text as a CSS string that no text can end: all but plain letters, digits and spaces as escapes."""
     out = []
-    for character in text:
+    for character in without_turns(text):
         plain = character.isalnum() or character in " .,;:()+*=_·–-/"
         out.append(character if plain else f"\\{ord(character):x} ")
     return '"' + "".join(out) + '"'

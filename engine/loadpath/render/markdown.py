@@ -5,33 +5,40 @@ from __future__ import annotations
 import re
 from collections.abc import Callable
 from functools import lru_cache
+from itertools import chain
 from typing import Any
+from urllib.parse import quote
 
 from markupsafe import Markup
 
 from loadpath.document.model import CallLine, Document, FigureBlock, Line, ProseBlock, Ref, SectionHead
 from loadpath.formula.names import plain_symbol
 from loadpath.formula.tree import Name, Node, Shown
+from loadpath.render.markdown_prose import escape as plain
+from loadpath.render.markdown_prose import inline, prose
 from loadpath.render.math import latex, latex_lines
-from loadpath.render.templates import environment
+from loadpath.render.templates import environment, without_turns
 from loadpath.units.printing import quantity
 
 ENDINGS = {"image/png": "png", "image/jpeg": "jpg", "image/svg+xml": "svg"}
-_SPECIAL = re.compile(r"([\\`*_{}\[\]|$~#])")
-_CODE = re.compile(r"(^(?P<fence>`{3,}|~{3,})[^\n]*\n.*?^(?P=fence)[`~]*[ \t]*$)|(?P<ticks>`+)(?!`)(?:.*?[^`])(?P=ticks)(?!`)", re.S | re.M)
-_TAG = re.compile(r"<(?!(?:https?|mailto):[^\s<>]*>)")
-_LINK = re.compile(r"\](?=\(\s*<?\s*(?!https?:|mailto:)[a-zA-Z][a-zA-Z0-9+.-]*:)|\](?=:\s*<?\s*(?!https?:|mailto:)[a-zA-Z][a-zA-Z0-9+.-]*:)")
 
 
 def render(document: Document, stem: str) -> tuple[str, dict[str, bytes]]:
     """The text of a document, and the images that stand beside it, by file name."""
     images = {_image_name(b, stem): b.data for b in document.figures if b.data}
+    values, written = _values(document), []
+
+    def keep(block: ProseBlock) -> Markup:
+        written.append(prose(block.tokens, values))
+        return Markup("\0")
+
     text = _environment().get_template("document.md.j2").render(
         d=document, s=document.summary, r=document.registers, t=document.title_block,
-        kind=lambda block: type(block).__name__, prose=lambda b: prose(b, document), heading=lambda b: _heading(b, document),
-        image=lambda b: _image_name(b, stem),
+        kind=lambda block: type(block).__name__, prose=keep, heading=lambda b: _heading(b, document),
+        image=lambda b: quote(_image_name(b, stem)),
     )  # fmt: skip
-    return re.sub(r"\n{3,}", "\n\n", str(text)).strip() + "\n", images
+    parts = re.sub(r"\n{3,}", "\n\n", str(text)).strip().split("\0")
+    return without_turns("".join(chain.from_iterable(zip(parts, [*written, ""], strict=True))) + "\n"), images
 
 
 @lru_cache(maxsize=1)
@@ -55,43 +62,13 @@ def _environment() -> Any:
 
 def escape(text: str) -> Markup:
     """Plain text that Markdown shows as it stands: no markup, no tags, no math."""
-    safe = _SPECIAL.sub(r"\\\1", text).replace("&", "&amp;").replace("<", "&lt;").replace(">", "&gt;")
-    safe = re.sub(r"^(\s*)([-+]|\d+[.)])(?=\s)", lambda m: f"{m[1]}{m[2][:-1]}\\{m[2][-1]}", safe, flags=re.M)
-    return Markup(safe)
+    return Markup(plain(text))
 
 
 def _escape(value: Any) -> Any:
     if isinstance(value, Markup):
         return value
     return escape(value) if isinstance(value, str) else value
-
-
-def prose(block: ProseBlock, document: Document) -> Markup:
-    """Prose as typed, with values in place, and nothing in it that a host would take for HTML or a live link of another scheme."""
-    parts, at = [], block.start
-    end = block.start + len(block.text)
-    for start, stop, value in document.value_spans:
-        if block.start <= start and stop <= end:
-            parts += [_harmless(block.text[at - block.start : start - block.start]), str(_shown(value))]
-            at = stop
-    parts.append(_harmless(block.text[at - block.start :]))
-    return Markup("".join(parts))
-
-
-def _harmless(text: str) -> str:
-    """Source text outside code: tags shown as text, dollars no math."""
-    out, at = [], 0
-    for code in _CODE.finditer(text):
-        out += [_defused(text[at : code.start()]), code.group()]
-        at = code.end()
-    return "".join([*out, _defused(text[at:])])
-
-
-def _defused(text: str) -> str:
-    text = _TAG.sub("&lt;", text)
-    text = re.sub(r"&(?=#?\w+;)(?!lt;)", "&amp;", text)
-    text = _LINK.sub(r"\\]", text)
-    return re.sub(r"(?<!\\)\$", r"\\$", text)
 
 
 # --- pieces -----------------------------------------------------------------------------------------------------
@@ -122,16 +99,12 @@ def _call(call: CallLine) -> Markup:
 
 
 def _heading(block: SectionHead, document: Document) -> Markup:
-    words = []
-    for token in block.tokens.children or ():
-        if token.type == "value":
-            words.append(str(_shown(document.values.get(token.meta["value"], token.content))))
-        elif token.type == "code_inline":
-            words.append(f"`{token.content}`")
-        else:
-            words.append(str(escape(token.content)))
     number = f"{block.number} " if block.number else ""
-    return Markup("#" * min(block.level, 6) + " " + number + "".join(words).replace("\n", " "))
+    return Markup(f"{'#' * block.level} {number}{inline(block.tokens, _values(document))}")
+
+
+def _values(document: Document) -> Callable[[Any], str]:
+    return lambda value: str(_shown(document.values.get(value, value.typed)))
 
 
 def _image_name(block: FigureBlock, stem: str) -> str:

@@ -2,10 +2,18 @@
 
 from __future__ import annotations
 
+import re
 from collections.abc import Callable
 from functools import lru_cache
 from pathlib import Path
 from typing import Any
+
+_TURNS = re.compile("[\u202a-\u202e\u2066-\u2069]")
+
+
+def without_turns(text: str) -> str:
+    """The text with a replacement character for each sign that turns the direction of writing: none reorders what stands by."""
+    return _TURNS.sub("\ufffd", text)
 
 
 @lru_cache(maxsize=1)

@@ -5,4 +5,14 @@ from loadpath.resolve.model import UNKNOWN, Entry, Resolved, Type
 from loadpath.resolve.parts import PI, expressions, relations_in
 from loadpath.resolve.resolve import resolve
 
-__all__ = ["PI", "UNKNOWN", "Entry", "Resolved", "Type", "expressions", "is_relative", "relations_in", "resolve"]
+__all__ = [
+    "PI",
+    "UNKNOWN",
+    "Entry",
+    "Resolved",
+    "Type",
+    "expressions",
+    "is_relative",
+    "relations_in",
+    "resolve",
+]

@@ -49,7 +49,7 @@ def _wrong_count(node: Call, need: str, form: str) -> Mistake:
     return Mistake("wrong-arguments", node.at, message.replace("1 stand ", "1 stands "), f"write `{form}`")
 
 
-# --- built-in functions -----------------------------------------------------------------------------------------
+# --- built-in functions -------------------------------------------------------------------------------------
 
 
 def _built_in(checker: Checker, node: Call, function: Function, arguments: list[Type]) -> Type:
@@ -80,7 +80,7 @@ def _need_plain(function: str, argument: Node, found: Type) -> None:
     raise Mistake("needs-plain-number", span_of(argument), message, help)
 
 
-# --- functions of the sheet -------------------------------------------------------------------------------------
+# --- functions of the sheet ---------------------------------------------------------------------------------
 
 
 def _own(checker: Checker, node: Call, definition: FunctionDefinition, arguments: list[Type]) -> Type:
@@ -109,7 +109,9 @@ def _argument(node: Call, name: str, asked: AskedUnit | None, argument: Node, fo
         help = factor_between(unit.dimension, found.dimension)
         raise mismatch(found, Type(unit.dimension), span_of(argument), message, help)
     if found.absolute != unit.absolute:
-        message = f"`{name}` of `{node.function}` is in {unit.text}, and `{text(argument)}` is on another scale"
+        message = (
+            f"`{name}` of `{node.function}` is in {unit.text}, and `{text(argument)}` is on another scale"
+        )
         help = "`degC` and `degF` are absolute temperatures, `K` is for differences"
         raise Mistake("absolute-temperature", span_of(argument), message, help)
     return Type(unit.dimension, unit.absolute, flavour=found.flavour, mass=found.mass)

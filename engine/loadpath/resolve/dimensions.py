@@ -106,7 +106,9 @@ class Checker:
                 return relations.type_of_cases(self, node, parameters)
             case Word():
                 message = "a word in quotes stands where a number is needed"
-                raise Mistake("unknown-choice", node.span, message, 'words stand in conditions: `when curve = "b"`')
+                raise Mistake(
+                    "unknown-choice", node.span, message, 'words stand in conditions: `when curve = "b"`'
+                )
         raise TypeError(type(node).__name__)
 
     def number(self, node: Node, parameters: Parameters | None) -> Type:
@@ -114,7 +116,8 @@ class Checker:
         found = self.type_of(node, parameters)
         if found.words is not None:
             raise Mistake(
-                "unknown-choice", span_of(node), f"`{text(node)}` is a choice between words and cannot be computed with",
+                "unknown-choice", span_of(node),
+                f"`{text(node)}` is a choice between words and cannot be computed with",
                 f'a choice is used in a condition: `when {text(node)} = "{found.words[0]}"`',
             )  # fmt: skip
         return found
@@ -156,8 +159,9 @@ class Checker:
             raise mismatch(left, right, at, f"{doing} {both}", mend(left, right, a, b, self.system))
         if left.absolute != right.absolute:
             raise Mistake(
-                "absolute-temperature", at, f"{doing} an absolute temperature and a difference of temperatures",
-                "a difference is typed in K: `20 K`; show an absolute temperature with `[K]` to compute with kelvins",
+                "absolute-temperature", at,
+                f"{doing} an absolute temperature and a difference of temperatures",
+                "a difference is typed in K: `20 K`; show an absolute one with `[K]` to compute with kelvins",
             )  # fmt: skip
         if {left.flavour, right.flavour} == {"cycles", "turning"}:
             self.warn_frequency(at, f"{doing} Hz and rpm or rad/s")
@@ -185,7 +189,9 @@ class Checker:
         if base.absolute or exponent.absolute:
             raise no_multiple(node.at)
         if not exponent.unknown and not exponent.dimension.is_plain:
-            message = f"an exponent is a plain number, but `{text(node.right)}` is {article(exponent.dimension)}"
+            message = (
+                f"an exponent is a plain number, but `{text(node.right)}` is {article(exponent.dimension)}"
+            )
             help = "divide it by a quantity of the same kind"
             raise Mistake("needs-plain-number", span_of(node.right), message, help)
         if base.unknown:
@@ -196,7 +202,8 @@ class Checker:
         if power is None:
             raise Mistake(
                 "dimension-exponent", span_of(node.right),
-                f"`{text(node.left)}` is {article(base.dimension)}, so its exponent must be typed, not `{text(node.right)}`",
+                f"`{text(node.left)}` is {article(base.dimension)}, so its exponent must be typed, "
+                f"not `{text(node.right)}`",
                 "type the number (`2`, `-1`, `0.5`, `(1/3)`), or raise a ratio of two quantities",
             )  # fmt: skip
         return self.root(base, power, node.at)
@@ -248,7 +255,8 @@ class Checker:
                 raise no_bare_zero(asked.span)
             return Type(unit.dimension), unit
         if found.dimension != unit.dimension:
-            message = f"`{text(value)}` is {article(found.dimension)}, but `[{asked.text}]` is {article(unit.dimension)}"
+            message = f"`{text(value)}` is {article(found.dimension)}"
+            message += f", but `[{asked.text}]` is {article(unit.dimension)}"
             fitting = self.system.unit_for(found.dimension).text or "1"
             help = f"ask for a unit such as `[{fitting}]`, or check the formula: "
             help += factor_between(found.dimension, unit.dimension)

@@ -81,7 +81,7 @@ class Displays:
     def common_unit(self, relation: Relation) -> Unit:
         """That of a side that is a name, else that of a typed quantity, else the system's.
 
-        Where the system has no unit of its own for the kind, the first name in the relation that is of it decides.
+        Where the system has no unit for the kind, the first name in the relation that is of it decides.
         """
         types = [self.checker.type_of(o) for o in relation.operands if not isinstance(o, Word)]
         found = next((t for t in types if not t.zero and not t.unknown), None)
@@ -91,7 +91,9 @@ class Displays:
         typed = next((t for o in relation.operands if (t := typed_unit(o, found)) is not None), None)
         if alone or typed or self.checker.system.knows(found.dimension):
             return alone or typed or self._fitting(found)
-        return self._unit_of_names((n for n in walk(relation) if isinstance(n, Name)), found) or self._fitting(found)
+        return self._unit_of_names(
+            (n for n in walk(relation) if isinstance(n, Name)), found
+        ) or self._fitting(found)
 
     def _unit_of_names(self, names: Iterable[Name], found: Type) -> Unit | None:
         for name in names:
@@ -113,7 +115,7 @@ class Displays:
         if tolerance.absolute or (tolerance.dimension != common.dimension and not common.zero):
             raise Mistake(
                 "unit-mismatch", span_of(statement.tolerance),
-                f"the tolerance is {article(tolerance.dimension)}, but the sides are {article(common.dimension)}",
+                f"the tolerance is {article(tolerance.dimension)}, the sides are {article(common.dimension)}",
                 "give it in the unit of the sides, or as a share of the right side: `within 0.1 %`; "
                 + factor_between(tolerance.dimension, common.dimension),
             )  # fmt: skip

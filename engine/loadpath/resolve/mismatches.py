@@ -13,7 +13,14 @@ from loadpath.units.dimension import ACCELERATION, TEMPERATURE
 
 USUAL_POWER, USUAL_PARTS = 24, (1, 2, 3, 4, 6)
 """Exponents within these, with these denominators, have a unit in every system."""
-MASS_UNITS = {"lb": "lbf", "kg": "kgf or N", "g": "N", "tonne": "kN", "slug": "lbf", "short_ton": "short_tonf"}
+MASS_UNITS = {
+    "lb": "lbf",
+    "kg": "kgf or N",
+    "g": "N",
+    "tonne": "kN",
+    "slug": "lbf",
+    "short_ton": "short_tonf",
+}
 """Units of mass, with the unit of force that is meant where one is used as a force."""
 _NO_ARTICLE = ("time", "temperature", "acceleration")
 
@@ -69,13 +76,14 @@ def held(dimension: Dimension, at: Span, system: UnitSystem) -> Dimension:
     return dimension
 
 
-# --- temperatures -----------------------------------------------------------------------------------------------
+# --- temperatures -------------------------------------------------------------------------------------------
 
 
 def no_multiple(at: Span) -> Mistake:
     """An absolute temperature in a product or a power."""
     return Mistake(
-        "absolute-temperature", at, "an absolute temperature cannot be multiplied, divided, negated or raised",
+        "absolute-temperature", at,
+        "an absolute temperature cannot be multiplied, divided, negated or raised",
         "take a difference of two of them, or show it in absolute kelvins first: `T_K [K] = T`",
     )  # fmt: skip
 

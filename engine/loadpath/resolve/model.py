@@ -32,7 +32,7 @@ class Type:
     words: tuple[str, ...] | None = None
     """The options of a choice."""
     flavour: Flavour = field(default="", compare=False)
-    """`cycles` from Hz, `turning` from rpm, rad/s or a root of stiffness over mass, `bar` from what is typed in bar."""
+    """`cycles` from Hz; `turning` from rpm, rad/s or a root of stiffness over mass; `bar` from bar."""
     mass: tuple[Span, str] | None = field(default=None, compare=False)
     """A typed mass unit that went into it: its place and its name."""
 
@@ -80,8 +80,8 @@ class Resolved:
     """The unit that each readable value in prose is printed in."""
     findings: tuple[Finding, ...]
     meant: frozenset[str] = frozenset()
-    """Names and keys that count as used or cited: printed in prose, suggested for one that is unknown, part of a unit,
-    or anywhere on a line that could not be read."""
+    """Names and keys that count as used or cited: printed in prose, suggested for one that is unknown, part
+    of a unit, or anywhere on a line that could not be read."""
 
 
 __all__ = ["ONE", "UNKNOWN", "Entry", "Flavour", "Kind", "Resolved", "Type"]

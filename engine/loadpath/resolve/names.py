@@ -81,7 +81,9 @@ class Names:
     def refused(self, name: str, span: Span) -> Mistake | None:
         """Why a name cannot be defined at a place, None where it can."""
         if name == PI:
-            return Mistake("reserved-word", span, "`pi` stands defined and cannot be a name", "choose another name")
+            return Mistake(
+                "reserved-word", span, "`pi` stands defined and cannot be a name", "choose another name"
+            )
         if name in self.by_name:
             first = self.first[name]
             line = self._source.line_number(first.start)
@@ -110,7 +112,9 @@ class Names:
         """What is wrong with the use of a name that nothing above defines."""
         name, span = use.name, use.span
         if use.called and name in LATER:
-            message = f"`{name}` is a function of the language, but this version of loadpath cannot work it yet"
+            message = (
+                f"`{name}` is a function of the language, but this version of loadpath cannot work it yet"
+            )
             return Mistake("not-available", span, message, "write the working out in plain formulas for now")
         if name in FUNCTIONS or name in LATER:
             message = f"`{name}` is a function and is called with its arguments"
@@ -135,7 +139,7 @@ class Names:
         return Mistake("used-before-defined", span, message, "move the definition above its first use")
 
 
-# --- step ids ---------------------------------------------------------------------------------------------------
+# --- step ids -----------------------------------------------------------------------------------------------
 
 
 def step_id(statement: Statement) -> str:

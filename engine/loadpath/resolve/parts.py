@@ -80,7 +80,7 @@ def relations_in(statement: Statement) -> tuple[Relation, ...]:
 
 
 def uses_in(statement: Statement, nodes: Nodes) -> Iterator[Use]:
-    """Each use of a name that the sheet must bring, in reading order; parameters, `pi` and built-ins left out."""
+    """Each use of a name that the sheet must bring, in reading order; no parameters, `pi` or built-ins."""
     bound = _bound_in(nodes)
     if isinstance(statement, FunctionDefinition):
         bound |= {parameter.name for parameter in statement.parameters}

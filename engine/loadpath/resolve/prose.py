@@ -45,7 +45,9 @@ def _unit(
     if not value.name:
         return ONE
     if value.name not in names.by_name:
-        help = suggestions.nearest(value.name, names.by_name) or "define it on a formula line; `\\{` is a brace"
+        help = (
+            suggestions.nearest(value.name, names.by_name) or "define it on a formula line; `\\{` is a brace"
+        )
         message = f"`{value.name}` is defined nowhere on this sheet"
         raise Mistake("unknown-name", value.name_span, message, help)
     entry = entries[names.by_name[value.name]]

@@ -21,7 +21,10 @@ def check_relation(checker: Checker, node: Node, parameters: Parameters | None) 
             check_relation(checker, operand, parameters)
         return
     assert isinstance(node, Relation)
-    types = [None if isinstance(operand, Word) else checker.type_of(operand, parameters) for operand in node.operands]
+    types = [
+        None if isinstance(operand, Word) else checker.type_of(operand, parameters)
+        for operand in node.operands
+    ]
     pairs = zip(node.operands, node.operands[1:], types, types[1:], node.signs, node.at, strict=False)
     for a, b, left, right, sign, at in pairs:
         if left is None or right is None or left.words is not None or right.words is not None:
@@ -79,6 +82,8 @@ def type_of_cases(checker: Checker, node: Cases, parameters: Parameters | None) 
         if common is None:
             common = found
         else:
-            common = checker.same(common, found, span_of(branch.value), "the branches give", first, branch.value)
+            common = checker.same(
+                common, found, span_of(branch.value), "the branches give", first, branch.value
+            )
     assert common is not None
     return common

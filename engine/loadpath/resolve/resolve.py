@@ -6,7 +6,15 @@ from dataclasses import dataclass
 
 from loadpath.findings import Finding, Remark, finding
 from loadpath.formula.mistake import Mistake
-from loadpath.formula.statements import Check, Choice, Criterion, Definition, FunctionDefinition, Statement, Validity
+from loadpath.formula.statements import (
+    Check,
+    Choice,
+    Criterion,
+    Definition,
+    FunctionDefinition,
+    Statement,
+    Validity,
+)
 from loadpath.formula.tree import Call, span_of
 from loadpath.resolve.dimensions import Checker
 from loadpath.resolve.displays import Displays
@@ -145,12 +153,10 @@ class _Resolver:
         self.names.add(statement, len(self.entries))
         if kind == "faulty":
             self.faulty.update(name for name, _ in defined_by(statement))
-        self.entries.append(
-            Entry(
-                statement, self._unique_id(statement), kind, line, name, type_, checked.unit, sides, checked.asked,
-                uses, blocked,
-            )  # fmt: skip
-        )
+        id = self._unique_id(statement)
+        unit, asked = checked.unit, checked.asked
+        entry = Entry(statement, id, kind, line, name, type_, unit, sides, asked, uses, blocked)
+        self.entries.append(entry)
 
     def _report(self, mistake: Mistake) -> None:
         self.found.append(mistake.as_finding(self.source))
@@ -171,13 +177,11 @@ class _Resolver:
         if isinstance(statement, Criterion):
             first = self.criteria.setdefault(id, statement.span)
             if first is not statement.span:
-                self._report(
-                    Mistake(
-                        "duplicate-criterion", statement.kind_span, f"`{id}` is here a second time",
-                        "give each criterion a name of its own: `strength bending: ...`",
-                        remarks=(Remark("the first one stands here", first),),
-                    )  # fmt: skip
-                )
+                help = "give each criterion a name of its own: `strength bending: ...`"
+                remark = Remark("the first one stands here", first)
+                message = f"`{id}` is here a second time"
+                place = statement.kind_span
+                self._report(Mistake("duplicate-criterion", place, message, help, remarks=(remark,)))
         return id if count == 1 else f"{id}#{count}"
 
     # --- names and citations ---
@@ -264,7 +268,9 @@ class _Resolver:
             raise Mistake("over-limit", statement.span, message, "write some of them as one")
         if work > MOST_WORK or self.work_in_all > MOST_WORK_IN_ALL:
             message = "the functions that are called here ask for more work than the engine does"
-            raise Mistake("over-limit", statement.span, message, "give what is worked often a name of its own")
+            raise Mistake(
+                "over-limit", statement.span, message, "give what is worked often a name of its own"
+            )
 
 
 def _not_a_function(name: str, span: Span) -> Mistake:
@@ -280,6 +286,3 @@ def _choice(statement: Choice) -> Type:
         message = f'"{statement.word}" is not one of the words to choose from'
         raise Mistake("unknown-choice", statement.word_span, message, f"it is one of {listed}")
     return Type(words=statement.options)
-
-
-

@@ -20,7 +20,9 @@ _TURNING = ("rpm", "rad")
 def read_unit(unit: str, place: Span, is_name: Callable[[str], bool] = lambda _: False) -> Unit:
     """The unit, or the mistake at the part of it that is wrong."""
     if len(unit) > LONGEST_UNIT:
-        raise Mistake("over-limit", place, f"a unit of more than {LONGEST_UNIT} characters", "write it shorter")
+        raise Mistake(
+            "over-limit", place, f"a unit of more than {LONGEST_UNIT} characters", "write it shorter"
+        )
     try:
         return parse_unit(unit)
     except BadUnit as bad:
@@ -41,7 +43,9 @@ def _name_in_unit(unit: str, bad: BadUnit, span: Span) -> Mistake:
         message = f"no operator stands before `{name}`, which is a name of this sheet and no unit"
         return Mistake("implied-multiplication", span, message, f"a product is typed with `*`: `2*{name}`")
     before, sign = unit[: bad.at].rstrip("*/"), unit[bad.at - 1 : bad.at]
-    help = f"`{name}` is a name of this sheet: put spaces round the `{sign}`, as in `12 {before} {sign} {name}`"
+    help = (
+        f"`{name}` is a name of this sheet: put spaces round the `{sign}`, as in `12 {before} {sign} {name}`"
+    )
     return Mistake(bad.slug, span, bad.message, help)
 
 

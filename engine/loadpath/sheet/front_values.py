@@ -104,7 +104,7 @@ class Values:
         return ()
 
     def known(self, entries: Sequence[Entry], keys: Sequence[str], where: str = "here") -> tuple[Entry, ...]:
-        """Those with a known key; a misspelt one is taken for the key it is near to, where that is not given."""
+        """Those with a known key; a misspelt one counts as the key it is near to, where that is not given."""
         given = {entry.key.text for entry in entries}
         kept = []
         for entry in entries:

@@ -158,8 +158,8 @@ def lost_in_quotation(content: str, source: Source, first_line: int, trouble: Sp
     lost = []
     for faulty in lost_statements(typed, Span(0, len(content)), trouble):
         span = source.line_span(first_line + typed.line_number(faulty.span.start) - 1)
-        notes = tuple(Note(n.text, tuple((key, trouble) for key, _ in n.citations), trouble) for n in faulty.notes)
-        lost.append(replace(faulty, span=span, notes=notes))
+        notes = [Note(n.text, tuple((key, trouble) for key, _ in n.citations), trouble) for n in faulty.notes]
+        lost.append(replace(faulty, span=span, notes=tuple(notes)))
     return lost
 
 

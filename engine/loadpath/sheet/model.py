@@ -11,7 +11,7 @@ from loadpath.formula.statements import Statement
 from loadpath.formula.tree import NOWHERE
 from loadpath.text import Source, Span
 
-# --- front matter -----------------------------------------------------------------------------------------------
+# --- front matter -------------------------------------------------------------------------------------------
 
 
 @dataclass(frozen=True, slots=True)
@@ -88,7 +88,7 @@ class Revision:
 
 @dataclass(frozen=True, slots=True)
 class FrontMatter:
-    """The keys of section 1 of the language, with the project's defaults filled in. Scalars are text as typed."""
+    """The keys of section 1 of the language, the project's defaults filled in. Scalars are text as typed."""
 
     format: int = 1
     title: str = ""
@@ -122,10 +122,10 @@ class FrontMatter:
     sources: tuple[SourceEntry, ...] = ()
     assumptions: tuple[Assumption, ...] = ()
     unread: frozenset[str] = field(default=frozenset(), compare=False)
-    """Keys that may have been given, but could not be read (a finding says why): nothing can be said of them."""
+    """Keys that may be given, but could not be read (a finding says why): nothing can be said of them."""
 
 
-# --- blocks -----------------------------------------------------------------------------------------------------
+# --- blocks -------------------------------------------------------------------------------------------------
 
 
 @dataclass(frozen=True, slots=True)
@@ -146,7 +146,7 @@ class Prose:
     """Paragraphs, lists, quotations, tables and fenced code: a run of CommonMark without formula lines."""
 
     tokens: tuple[Any, ...]
-    """markdown-it tokens; a `{name}` is an inline token of type `value` whose `meta["value"]` is a `Value`."""
+    """markdown-it tokens; `{name}` is an inline token of type `value` whose `meta["value"]` is a `Value`."""
     values: tuple[Value, ...]
     text: str
     """The source lines as typed, for Markdown output."""

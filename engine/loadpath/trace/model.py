@@ -8,7 +8,7 @@ from __future__ import annotations
 from collections.abc import Callable, Iterator
 from dataclasses import dataclass, field, replace
 from functools import cached_property
-from typing import Literal
+from typing import Any, Literal
 
 from loadpath.findings import Finding, ordered
 from loadpath.formula.canonical import text as formula_text
@@ -225,6 +225,8 @@ class Trace:
     """Of the sheet's text and of all that it is issued from: 64 hexadecimal digits."""
     work: Callable[[Node], float] = field(repr=False, compare=False)
     """Works a tree of printed values; what digits are checked with."""
+    made: dict[tuple[str, str], Any] = field(default_factory=dict, repr=False, compare=False)
+    """Texts already made (`trace.texts`), by what they are and the step's id: several formats ask for the same ones."""
 
     @property
     def sheet(self) -> Sheet:

@@ -111,7 +111,11 @@ def step_substitution(trace: Trace, step: Step) -> Substitution | None:
     result = operand(step)
     if step.kind != "result" or step.working is None or result is None:
         return None
-    return substitution(trace, step.working, result)
+    key = ("substitution", step.id)
+    if key not in trace.made:
+        trace.made[key] = substitution(trace, step.working, result)
+    made: Substitution | None = trace.made[key]
+    return made
 
 
 def call_substitution(trace: Trace, called: Called) -> Substitution | None:
@@ -140,11 +144,13 @@ def compared(trace: Trace, step: Step) -> tuple[Compared, ...]:
     statement, verdict = step.statement, step.verdict
     if verdict is None or not verdict.sides or step.working is None or not isinstance(statement, Criterion | Validity | Check):
         return ()
-    relations = [n for n in walk(expressions(statement)[0]) if isinstance(n, Relation)]
-    out = []
-    for relation, values, unit in zip(relations, verdict.sides, step.entry.side_units, strict=False):
-        out.append(_compared(trace, step.working, relation, values, unit, step.digits))
-    return tuple(out)
+    key = ("compared", step.id)
+    if key not in trace.made:
+        relations = [n for n in walk(expressions(statement)[0]) if isinstance(n, Relation)]
+        worked = zip(relations, verdict.sides, step.entry.side_units, strict=False)
+        trace.made[key] = tuple(_compared(trace, step.working, *each, step.digits) for each in worked)
+    made: tuple[Compared, ...] = trace.made[key]
+    return made
 
 
 def _compared(trace: Trace, working: Working, relation: Relation, values: tuple[float | str, ...], unit: Unit, base: int) -> Compared:

@@ -8,6 +8,7 @@ from __future__ import annotations
 
 import re
 from dataclasses import dataclass, replace
+from functools import lru_cache
 
 from loadpath.formula.canonical import POWER, SIGN, is_measured, level, needs_brackets
 from loadpath.formula.names import symbol
@@ -95,6 +96,7 @@ class Place:
         return replace(self, signed=False, flat=True)
 
 
+@lru_cache(maxsize=1024)
 def lay_out(node: Node, flat: bool = False, chosen: int | None = None) -> Box:
     """The boxes of a formula.
 

@@ -1,0 +1,344 @@
+"""Sheets that nobody would type on purpose, through every stage: no exception, no hang, no markup let through.
+
+The quick part of it is tests/test_fuzz.py. The long part is a program:
+
+    python tests/campaigns/fuzz.py SECONDS [SEED]
+
+It prints how many sheets of each kind went through, the slowest of each, and, for each fault found, the smallest text
+that still gives it.
+"""
+
+from __future__ import annotations
+
+import faulthandler
+import re
+import sys
+import time
+import traceback
+from collections import Counter
+from collections.abc import Callable, Iterator
+from dataclasses import dataclass, field
+from pathlib import Path
+from random import Random
+
+import loadpath
+from loadpath.pipeline import render
+
+ROOT = Path(__file__).parents[2]
+HEAD = "---\ntitle: Hostile\n---\n\n"
+SCRIPT = "<script>alert(1)</script>"
+STYLE = "\"}</style><b>'"
+
+
+class Fault(AssertionError):
+    """What must not happen, other than an exception."""
+
+
+# --- one sheet --------------------------------------------------------------------------------------------------
+
+
+def audited(text: str) -> loadpath.Trace:  # type: ignore[name-defined]
+    """The trace with all findings. Raises Fault for a finding that points outside the text."""
+    trace = loadpath.evaluate(loadpath.read_text(text))
+    findings = loadpath.audit(trace)
+    for finding in findings:
+        if finding.slug == "engine-fault":
+            raise Fault(f"engine-fault: {finding.message}")
+        span = finding.span
+        if span is not None and not 0 <= span.start <= span.end <= len(finding.source.text):
+            raise Fault(f"{finding.slug} stands at {span}, the text has {len(finding.source.text)} characters")
+    return trace.with_findings(findings)
+
+
+def through(text: str) -> dict[str, bytes]:
+    """The documents of a sheet. Raises Fault where markup of the sheet stands in one as markup."""
+    files = render(audited(text), "fuzz")
+    html = files["fuzz.html"].decode()
+    if "<script>alert" in html or "</style><b>" in html or html.count("</style>") != html.count("<style"):
+        raise Fault("markup of the sheet in the document")
+    return files
+
+
+# --- hostile sheets ---------------------------------------------------------------------------------------------
+
+
+def block(*lines: str) -> str:
+    return HEAD + "\n".join("    " + line for line in lines) + "\n"
+
+
+def in_every_field(what: str) -> str:
+    """A text as the value of each key, and wherever else a sheet has text."""
+    quoted = "'" + what.replace("'", "''") + "'"
+    keys = ("title subtitle number revision owner project client client_document date language created_by reviewed_by "
+            "approved_by objective method conclusion").split()  # fmt: skip
+    lines = [f"{key}: {quoted}" for key in keys]
+    lines += [f"codes: [{quoted}]", f"drawings: [{quoted}]", f"not_applicable: {{stiffness: {quoted}}}"]
+    lines += [f"sources: {{a: {quoted}, {quoted}: b}}", f"assumptions: {{A1: {{text: {quoted}, confirm: true}}}}"]
+    lines += [f"revisions: {{A: {{date: {quoted}, by: {quoted}, change: {quoted}}}}}"]
+    body = f"# {what}\n\n{what} {{P}} {{{what}}}\n\n![{what}]({what})\n\n| {what} |\n|---|\n| {what} |\n\n```{what}\n{what}\n```\n"
+    formulas = f'    P = 2 kN -- {what} [a]\n    c = "{what}" of "{what}", "b"\n    strength {what}: P <= 3 kN -- [{what}]\n'
+    return "---\n" + "\n".join(lines) + f"\n---\n\n{body}\n{formulas}\n    {what} = {what}\n"
+
+
+def aliases() -> str:
+    levels = [f"l{n}: &l{n} [{', '.join([f'*l{n - 1}'] * 9)}]" for n in range(1, 12)]
+    return "---\ntitle: Bomb\nl0: &l0 [x, x, x]\n" + "\n".join(levels) + "\nowner: *l11\n---\n"
+
+
+HOSTILE: dict[str, str] = {
+    # the front matter
+    "nothing": "",
+    "dashes only": "---",
+    "never closed": "---\n" + "title: x\n" * 1000,
+    "aliases that explode": aliases(),
+    "an alias of itself": "---\ntitle: &a [*a]\n---\n",
+    "merge keys": "---\na: &a {b: c}\ntitle: {<<: *a}\n---\n",
+    "tags": "---\ntitle: !!python/object/apply:os.system ['true']\n---\n",
+    "a binary tag": "---\ntitle: !!binary aGVsbG8=\n---\n",
+    "deep lists in YAML": "---\ntitle: " + "[" * 10_000 + "\n---\n",
+    "deep closed lists in YAML": "---\ntitle: " + "[" * 5000 + "]" * 5000 + "\n---\n",
+    "deep mappings in YAML": "---\n" + "".join(" " * n + "a:\n" for n in range(1000)) + "---\n",
+    "deep dashes in YAML": "---\ntitle:\n " + "- " * 5000 + "x\n---\n",
+    "question marks in YAML": "---\n" + "? " * 5000 + "\n---\n",
+    "many keys": "---\ntitle: x\n" + "".join(f"k{n}: v\n" for n in range(20_000)) + "---\n",
+    "one key many times": "---\n" + "title: x\n" * 20_000 + "---\n",
+    "many sources": "---\ntitle: x\nsources:\n" + "".join(f"  s{n}: text\n" for n in range(20_000)) + "---\n",
+    "a long scalar": "---\ntitle: " + "x" * 1_000_000 + "\n---\n",
+    "a long folded scalar": "---\ntitle: >\n" + "  word\n\n" * 30_000 + "---\n",
+    "open quotes in YAML": "---\ntitle: '" + "\n" * 50_000 + "---\n",
+    "directives": "---\n%YAML 9.9\n%TAG ! tag:x\n---\ntitle: x\n---\n",
+    "script in every field": in_every_field(SCRIPT),
+    "style in every field": in_every_field(STYLE),
+    "braces in every field": in_every_field("{{ 7*7 }}{% for x in y %}${P}"),
+    "signs of markup in every field": in_every_field("*_`[x](javascript:x)&#x3c;&lt;$$\\frac|~~<!--]]>"),
+    "conclusion full of values": "---\ntitle: x\nconclusion: " + "{a}" * 20_000 + "\n---\n\n    a = 1 -- x\n",
+    "ends in a backslash": "---\ntitle: x\n---\n\n\\",
+    # prose
+    "deep quotations": HEAD + ">" * 20_000 + " x\n",
+    "deep lists": HEAD + "- " * 10_000 + "x\n",
+    "stairs of lists": HEAD + "".join("  " * n + "- x\n" for n in range(500)),
+    "many brackets": HEAD + "[" * 50_000 + "\n",
+    "many images": HEAD + "![" * 30_000 + "\n",
+    "many open links": HEAD + "[a](" * 20_000 + "\n",
+    "many stars": HEAD + "*a **b " * 20_000 + "\n",
+    "many backticks": HEAD + "".join("`" * n + " " for n in range(1, 800)) + "\n",
+    "many link definitions": HEAD + "".join(f"[a{n}]: b\n" for n in range(20_000)),
+    "many entities": HEAD + "&amp;" * 50_000 + "\n",
+    "a wide table": HEAD + "|a" * 10_000 + "|\n" + "|-" * 10_000 + "|\n" + "|b" * 10_000 + "|\n",
+    "a long table": HEAD + "|a|b|\n|-|-|\n" + "|1|2|\n" * 20_000,
+    "many braces": HEAD + "{" * 50_000 + "\n",
+    "many empty values": HEAD + "{}" * 50_000 + "\n",
+    "many values of one name": block("a = 1 -- x") + "\n" + "{a} " * 20_000 + "\n",
+    "many headings": HEAD + "# h\n\n" * 10_000,
+    "one long line": HEAD + "x" * 1_000_000 + "\n",
+    "one long line of words": HEAD + "sigma = x " * 100_000 + "\n",
+    "many short lines": HEAD + "\n" * 400_000,
+    "a line of statements in prose": HEAD + "a = b\n" * 5000,
+    "angle brackets": HEAD + "<" * 50_000 + "\n",
+    "comments of HTML": HEAD + "<!--" * 20_000 + "\n",
+    "fences that never close": HEAD + "```\n" * 9_999,
+    "links out of the folder": HEAD + "![a](../../../etc/passwd)\n![b](/etc/passwd)\n![c](file:///etc/passwd)\n![d](a\0b)\n",
+    "line ends of all kinds": "---\r\ntitle: x\r---\n\r\n    a = 1\u2028    b = 2\x0b    c = 3\x0c\x85    d = 4\r",
+    "control characters": HEAD + "".join(map(chr, range(32))) + "\n    a = 1" + "".join(map(chr, range(32))) + "\n",
+    "marks that combine": HEAD + "a" + "\u0301" * 50_000 + "\n\n    a" + "\u0301" * 5000 + " = 1\n",
+    "text of two directions": block("\u202ea = 1 -- \u202e", "\u2066b\u2069 = a"),
+    "half a surrogate": block("a = 1 -- \ud800", "\udfff = 2"),
+    "a byte order mark": "\ufeff" + HEAD,
+    # formulas
+    "nested parentheses": block("x = " + "(" * 10_000 + "1" + ")" * 10_000),
+    "nested parentheses in a line that is read": block("x = " + "(" * 9000 + "1" + ")" * 9000),
+    "parentheses never closed": block("x = " + "(" * 19_000),
+    "nested calls": block("x = " + "sqrt(" * 3000 + "1" + ")" * 3000),
+    "nested brackets": block("x = " + "<" * 3000 + "1" + ">^1" * 3000),
+    "square brackets": block("x " + "[" * 10_000 + " = 1"),
+    "many minuses": block("x = " + "- " * 9000 + "1"),
+    "many plain minuses": block("x = " + "-" * 19_000 + "1"),
+    "a tower of powers": block("x = 9^9^9^9"),
+    "a tall tower of powers": block("x = " + "9^" * 9000 + "9"),
+    "powers of powers": block("x = (((9^9)^9)^9)^9", "y = 0.1^9^9", "z = (-9)^9^9", "w = exp(exp(exp(9)))"),
+    "a long sum": block("x = " + "1 + " * 4500 + "1"),
+    "a long product": block("x = " + "2*" * 9000 + "2"),
+    "a long sum on many lines": block("x = 1", *["    + 1"] * 4000),
+    "many arguments": block("x = max(" + "1, " * 6000 + "1)"),
+    "many parameters": block("f(" + ", ".join(f"a{n}" for n in range(3000)) + ") = 1", "x = f(1)"),
+    "many options": block('c = "a" of ' + ", ".join(f'"w{n}"' for n in range(2500)) + ', "a"'),
+    "many branches": block("x = cases", *[f"    {n} when 1 > 2" for n in range(1000)], "    0 otherwise"),
+    "nested conditions": block("x = cases", "    1 when " + "(" * 3000 + "1 < 2" + ")" * 3000, "    2 otherwise"),
+    "fifty nested conditions": block("x = cases", "    1 when " + "(" * 45 + "1 < 2" + ")" * 45, "    2 otherwise"),
+    "a long chain": block("valid: " + "1 < " * 4000 + "2 for x", "x = 1"),
+    "many ands": block("x = cases", "    1 when " + "1 < 2 and " * 1500 + "1 < 2", "    2 otherwise"),
+    "a number of many digits": block("x = " + "1" * 100_000, "y = 0." + "0" * 15_000 + "1"),
+    "an exponent of many digits": block("x = 1e" + "9" * 15_000, "y = 1e-400", "z = 1e308*10", "w = 1e-300^2"),
+    "a name of many letters": block("x" * 15_000 + " = 1", "y = " + "x" * 15_000),
+    "a name of many parts": block("x" + "_a" * 9000 + " = 1"),
+    "a name of many primes": block("x" + "'" * 15_000 + " = 1"),
+    "a unit of many letters": block("x = 1 " + "m" * 15_000, "y = 1 " + "m*" * 9000 + "m", "z [" + "(" * 9000 + "] = 1"),
+    "large powers in units": block("x = 1 Tm^99", "y = 1 ((km^99)^99)^99", "z = 1 m^(1/0)", "w = 1 m^999999999"),
+    "dimensions that double": block("a0 = 2 mm -- x", *[f"a{n} = a{n - 1}^2" for n in range(1, 60)]),
+    "dimensions that halve": block("a0 = 2 mm -- x", *[f"a{n} = sqrt(a{n - 1})" for n in range(1, 60)]),
+    "odd powers of dimensions": block("a = 2 mm -- x", "b = a^0.123456789", "c = a^(1/1009)", "d = a^1e9", "e = a^-99"),
+    "factors of odd powers": block("a = 2 in -- x", "b = 3 ft -- x", "c [mm^0.35] = a^0.35", "d = a^0.3*b^0.7", "e = a^7*b^-7"),
+    "calls that double": block("f0(x [1]) = x + 1", *[f"f{n}(x [1]) = f{n - 1}(x) + f{n - 1}(x)" for n in range(1, 60)], "y = f59(1)"),
+    "calls that nest": block("f0(x [1]) = x + 1", *[f"f{n}(x [1]) = f{n - 1}(f{n - 1}(x))" for n in range(1, 40)], "y = f39(1)"),
+    "calls of ten": block("f0(x) = x", *[f"f{n}(x) = max({', '.join([f'f{n - 1}(x)'] * 10)})" for n in range(1, 12)], "y = f11(1 mm)"),
+    "a function of itself": block("f(x) = f(x)", "y = f(1)"),
+    "a circle of names": block("a = b", "b = c", "c = a"),
+    "a long chain of steps": block("a0 = 1 -- x", *[f"a{n} = a{n - 1} + 1" for n in range(1, 2000)]),
+    "a step that uses many": block(*[f"a{n} = {n} -- x" for n in range(600)], "s = " + " + ".join(f"a{n}" for n in range(100))),
+    "one name many times": block(*["a = 1 -- x"] * 3000),
+    "many criteria of one name": block("a = 1 -- x", *["strength b: a <= 2"] * 1000),
+    "many lines that are wrong": block(*["x = = 1"] * 3000),
+    "many units that are none": block(*[f"x{n} = 1 kmm" for n in range(1000)]),
+    "many names that are none": block(*[f"x{n} = y{n} + z{n}" for n in range(1000)]),
+    "many citations that are none": block(*[f"x{n} = 1 -- [a] [b] [c{n}]" for n in range(1000)]),
+    "a note of many brackets": block("x = 1 -- " + "[" * 15_000, "y = 1 -- " + "[a]" * 5000),
+    "many notes": block("x = 1", *["    -- note"] * 4000),
+    "reserved words only": block("when = otherwise", "cases", "f = cases", "use take beam", "for for for", "x = at"),
+    "deep indents": HEAD + "".join(" " * (4 + n) + "a = 1\n" for n in range(300)),
+    "tabs": HEAD + "\t" * 9000 + "a = 1\n" + "\ta = 2\n",
+    "zero everywhere": block("a = 0 -- x", "b = 0/0", "c = 0^0", "d = 0^-1", "e = a/a", "strength: 0 <= 0", "limit: a < a"),
+}  # fmt: skip
+"""Each with what is hostile about it."""
+
+
+# --- random sheets ----------------------------------------------------------------------------------------------
+
+
+def sheets() -> list[str]:
+    """Real sheets, to be damaged."""
+    paths = [*(ROOT / "tests" / "published").glob("*.sheet.md"), *(ROOT / "calcsheets").glob("*.sheet.md")]
+    return [path.read_text(encoding="utf-8") for path in sorted(paths)]
+
+
+PIECES = [
+    "", " ", "\n", "\n\n", "    ", "\t", "---", "--", " -- ", "[", "]", "(", ")", "{", "}", "<", ">", "^", "*", "/", "+", "-", "=", "<=",
+    ":", ",", ".", "'", '"', "|", "#", "`", "!", "\\", "&", "%", "$", "_", "~", "@", "0", "1e99", "1/2 in", "12 ft 6 in", " kN", " degC",
+    "pi", "x", "σ", "²", "é", "\u0301", "\0", "\ud800", "null", "true", "&a ", "*a", "!!", "? ", "- ", "> ", "cases", "when ", " otherwise",
+    "valid: ", "check: ", "strength: ", "limit x: ", "use section a as b", "solve for x", "as psi", "within 1 %", " for ", "<script>",
+    "</style>", "max(", "round_up(", "sqrt(", "^0.5", "^-1", "[1]", "[mm]", "[ft-in 1/16]", "0.0", "(-1)", "1e-320", "{x}", "{x [mm]}",
+]  # fmt: skip
+
+
+def bytes_decoded(random: Random) -> str:
+    data = random.randbytes(random.randint(0, 600))
+    return random.choice(["", HEAD]) + data.decode(random.choice(["utf-8", "latin-1", "utf-16-le"]), "replace")
+
+
+def pieces_joined(random: Random) -> str:
+    return random.choice(["", HEAD, HEAD + "    "]) + "".join(random.choices(PIECES, k=random.randint(1, 60)))
+
+
+def mutated(random: Random) -> str:
+    text = random.choice(sheets())
+    for _ in range(random.choice([1, 1, 2, 5, 30])):
+        start = random.randint(0, len(text))
+        end = min(start + random.choice([0, 0, 1, 1, 3, 20, 200]), len(text))
+        text = text[:start] + random.choice(PIECES) + text[end:]
+    return text
+
+
+def spliced(random: Random) -> str:
+    """Lines of two sheets, shuffled together."""
+    one, two = (random.choice(sheets()).split("\n") for _ in range(2))
+    lines = one[: random.randint(0, len(one))] + two[random.randint(0, len(two)) :]
+    for _ in range(random.randint(0, 6)):
+        lines.insert(random.randint(0, len(lines)), random.choice(random.choice([one, two])))
+    return "\n".join(lines)
+
+
+def numbers_changed(random: Random) -> str:
+    """A real sheet with other numbers, units and functions: what it computes goes astray, what it says stays in form."""
+    text = random.choice(sheets())
+    values = ["0", "1", "1e300", "1e-300", "0.0001", "99999.5", "123456789", "3", "-1", "(-2)", "(1/3)", "0.9999999"]
+    text = re.sub(r"(?<![\w.\[])\d+(?:\.\d+)?(?![\w.\]])", lambda m: m.group() if random.random() < 0.8 else random.choice(values), text)
+    units = ["mm", "in", "ft", "kN", "lbf", "MPa", "psi", "deg", "rpm", "degC", "K", "%", "kg", "s", "kip*ft", "1/K", "bar"]
+    return re.sub(r"\b(mm|kN|MPa|in|kip|ksi|psi|m|N)\b", lambda m: m.group() if random.random() < 0.93 else random.choice(units), text)
+
+
+KINDS: dict[str, Callable[[Random], str]] = {
+    "bytes": bytes_decoded, "pieces": pieces_joined, "mutated": mutated, "spliced": spliced, "numbers": numbers_changed,
+}  # fmt: skip
+
+
+# --- the campaign -----------------------------------------------------------------------------------------------
+
+
+def fault_of(text: str) -> str:
+    """Where it went wrong, in a form that is equal for equal faults; "" where nothing did."""
+    try:
+        through(text)
+    except RecursionError as error:
+        return f"RecursionError in {traceback.extract_tb(error.__traceback__)[-1].name}"
+    except Exception as error:  # any exception at all is what is looked for
+        last = traceback.extract_tb(error.__traceback__)[-1]
+        return f"{type(error).__name__} at {Path(last.filename).name}:{last.lineno} in {last.name}: {str(error)[:100]}"
+    return ""
+
+
+def smallest(text: str, fault: str, seconds: float = 20) -> str:
+    """A text without lines, then without characters, that it can do without and still give the fault."""
+    place, end = fault.partition(":")[0], time.perf_counter() + seconds
+    for unit in ("\n", ""):
+        parts = text.split("\n") if unit else list(text)
+        size = max(len(parts) // 2, 1)
+        while size and time.perf_counter() < end:
+            for start in range(0, len(parts), size):
+                shorter = parts[:start] + parts[start + size :]
+                if fault_of(unit.join(shorter)).startswith(place):
+                    parts = shorter
+                    break
+            else:
+                size //= 2
+        text = unit.join(parts)
+    return text
+
+
+@dataclass
+class Figures:
+    """What a campaign came to."""
+
+    count: Counter[str] = field(default_factory=Counter)
+    slowest: dict[str, float] = field(default_factory=dict)
+    faults: dict[str, str] = field(default_factory=dict)
+
+
+def campaign(seconds: float, seed: int) -> Figures:
+    """Runs the hostile sheets once, then random ones until the time is over."""
+    figures, end = Figures(), time.perf_counter() + seconds
+    for kind, text in _all(Random(seed)):
+        begun = time.perf_counter()
+        fault = fault_of(text)
+        took = time.perf_counter() - begun
+        figures.count[kind] += 1
+        figures.slowest[kind] = max(figures.slowest.get(kind, 0.0), took)
+        if fault and fault not in figures.faults:
+            figures.faults[fault] = smallest(text, fault)
+        if time.perf_counter() > end:
+            break
+    return figures
+
+
+def _all(random: Random) -> Iterator[tuple[str, str]]:
+    for name, text in HOSTILE.items():
+        yield f"hostile: {name}", text
+    while True:
+        kind = random.choice(list(KINDS))
+        yield kind, KINDS[kind](random)
+
+
+def main() -> int:
+    """The program: 0 where no fault was found."""
+    faulthandler.enable()
+    seconds, seed = float(sys.argv[1]), int(sys.argv[2]) if len(sys.argv) > 2 else 1
+    figures = campaign(seconds, seed)
+    for kind, count in figures.count.items():
+        if not kind.startswith("hostile") or figures.slowest[kind] > 1:
+            print(f"{count:8d}  {kind:50s} slowest {figures.slowest[kind]:.2f} s")
+    print(f"{sum(figures.count.values()):8d}  sheets, {len(figures.faults)} faults, seed {seed}")
+    for fault, text in figures.faults.items():
+        print(f"\n{fault}\n{text[:2000]!r}")
+    return 1 if figures.faults else 0
+
+
+if __name__ == "__main__":
+    sys.exit(main())
