@@ -31,6 +31,7 @@ from loadpath.text import Span
 
 a, b, c, x = (Name(n) for n in "abcx")
 one, two = Number("1"), Number("2")
+half_inch = Quantity((Part("", ("1", "2"), "in"),))
 five_eighths = Binary("/", Number("5"), Number("8"))
 a_b, b_c, c_a = (Relation(pair, ("<",)) for pair in ((a, b), (b, c), (c, a)))
 
@@ -143,6 +144,8 @@ def test_numbers_and_quantities(text: str, tree: Node) -> None:
         ("((a < b))", a_b),
         ("a < <x - b>^1", Relation((a, Bracket(Binary("-", x, b), 1)), ("<",))),
         ("5/8 < a or a < b", Logic("or", (Relation((five_eighths, a), ("<",)), a_b))),
+        ("a/b < 1/2 in", Relation((Binary("/", a, b), half_inch), ("<",))),
+        ("(1/2 in < a/b or a < b)", Logic("or", (Relation((half_inch, Binary("/", a, b)), ("<",)), a_b))),
     ],
 )
 def test_conditions(text: str, tree: Node) -> None:

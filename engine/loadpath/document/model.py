@@ -80,6 +80,9 @@ class CallLine:
     value: Shown
     closes: bool
     conditions: tuple[Line, ...] = ()
+    """Which branch was taken and what governed."""
+    typed: Node | None = None
+    """The call as typed, where an argument is worked out in it."""
 
 
 # --- steps ------------------------------------------------------------------------------------------------------

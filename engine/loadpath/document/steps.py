@@ -35,10 +35,10 @@ from loadpath.formula.statements import (
     Statement,
     Validity,
 )
-from loadpath.formula.tree import Binary, Call, Cases, Logic, Name, Node, Relation, Shown
+from loadpath.formula.tree import Binary, Call, Cases, Logic, Name, Node, Number, Quantity, Relation, Shown
 from loadpath.resolve import expressions
 from loadpath.trace import Called, Step, Trace, Working, criterion_kind, criterion_name, texts
-from loadpath.trace.digits import ratio_text, typed_number
+from loadpath.trace.digits import exact_digits, ratio_text, typed_number
 from loadpath.trace.file import verdict_words
 from loadpath.trace.substitute import shown
 from loadpath.units import parse_unit
@@ -129,7 +129,7 @@ class StepWriter:
         sides = (working.tree, *((put.tree,) if put and not isinstance(put.tree, Shown) else ()))
         return ResultRow(
             head, name, sides if not working.taken else sides[1:] or sides, texts.display(step), put.closes if put else True,
-            self.branches(statement, statement.value, working), self._lines(working), self.calls(working),
+            self.branches(statement, statement.value, working), (*self._lines(working), *_further_digits(put)), self.calls(working),
         )  # fmt: skip
 
     def branches(self, statement: Statement, value: Node, working: Working | None) -> tuple[BranchRow, ...]:
@@ -166,13 +166,16 @@ class StepWriter:
     def _call(self, called: Called) -> CallLine:
         call = Call(called.call.function, tuple(shown(operand) for _, operand in called.arguments))
         put = texts.call_substitution(self.trace, called)
+        worked_out = any(not isinstance(a, Name | Number | Quantity) for a in called.call.arguments)
+        typed = called.call if worked_out else None
         sides = (called.working.tree, *((put.tree,) if put and not isinstance(put.tree, Shown) else ()))
         lines = []
         for compared in texts.conditions(self.trace, called.working):
             lines.append(Line(("taken as ", compared.formula, ": ", compared.evaluated)))
         if called.working.taken is not None and called.working.taken.branch.condition is None:
             lines.append(Line(("taken: the branch “otherwise”",)))
-        return CallLine(call, sides, shown(called.value), put.closes if put else True, (*lines, *self._lines(called.working)))
+        lines += [*self._lines(called.working), *_further_digits(put)]
+        return CallLine(call, sides, shown(called.value), put.closes if put else True, tuple(lines), typed)
 
     def _function(self, step: Step, statement: FunctionDefinition, head: Head) -> FunctionRow:
         name = Call(statement.name, tuple(Name(p.name) for p in statement.parameters))
@@ -241,7 +244,8 @@ class StepWriter:
         unit = units[min(verdict.part, len(units) - 1)] if units else step.unit
         if unit.absolute:
             unit = parse_unit("K" if unit.text == "degC" else "delta_degF")
-        return Shown(plain(verdict.margin / unit.size, step.digits), "in" if unit.text.startswith("ft-in") else unit.text)
+        margin = verdict.margin / unit.size
+        return Shown(plain(margin, min(exact_digits(margin, step.digits), step.digits)), "in" if unit.text.startswith("ft-in") else unit.text)
 
     def _judged(self, step: Step, statement: Validity | Check, head: Head) -> JudgedRow:
         if isinstance(statement, Validity):
@@ -256,6 +260,11 @@ class StepWriter:
 
 
 # --- helpers ----------------------------------------------------------------------------------------------------
+
+
+def _further_digits(put: texts.Substitution | None) -> tuple[Line, ...]:
+    """Says so where a substitution shows more digits than the results that its values come from."""
+    return (Line(("values with further digits, which lead to the printed result",)),) if put and put.more else ()
 
 
 def _notes_between(statement: Statement, start: int, end: int | None) -> tuple[Note, ...]:

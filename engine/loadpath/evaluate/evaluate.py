@@ -215,9 +215,7 @@ class _Run:
             if verdict is None or not isinstance(step.statement, Criterion):
                 continue
             if missed := tuple(sorted(planned.ranged & outside)):
-                verdict = replace(
-                    verdict, satisfied=None, utilisation=None, one_sided=False, margin=None, outside=missed
-                )
+                verdict = Verdict(None, outside=missed, conditional_on=verdict.conditional_on)
                 self.steps[index] = replace(step, verdict=verdict)
             elif verdict.one_sided:
                 self.found.append(self._one_sided(step.statement, step.id, verdict))

@@ -58,7 +58,7 @@ def make_plan(resolved: Resolved) -> Plan:
     compiler = Compiler(functions)
     sections, numbers = _numbering(resolved.sheet)
     reach = _Reach(resolved)
-    outlines = _outlines(resolved, numbers)
+    outlines = _outlines(resolved, numbers, reach)
     steps = tuple(_planned(outline, compiler, *reach.of(outline.entry)) for outline in outlines)
     return Plan(resolved, compiler, steps, sections)
 
@@ -93,7 +93,8 @@ def _sides(tree: Node, compiler: Compiler) -> Sides:
 # --- trails -------------------------------------------------------------------------------------------------
 
 
-def _outlines(resolved: Resolved, numbers: Iterator[str]) -> tuple[Outline, ...]:
+def _outlines(resolved: Resolved, numbers: Iterator[str], reach: _Reach) -> tuple[Outline, ...]:
+    """The trails, both ways. A criterion hangs on the ranges of the names behind it as well."""
     owner: dict[str, str] = {}
     for entry in resolved.entries:
         for name in defined_by(entry):
@@ -101,7 +102,8 @@ def _outlines(resolved: Resolved, numbers: Iterator[str]) -> tuple[Outline, ...]
     used_by: dict[str, list[str]] = defaultdict(list)
     uses: list[tuple[str, ...]] = []
     for entry in resolved.entries:
-        of = tuple(dict.fromkeys(owner[n] for n in entry.uses if n in owner and owner[n] != entry.id))
+        named = (owner[n] for n in entry.uses if n in owner and owner[n] != entry.id)
+        of = tuple(dict.fromkeys((*named, *reach.ranges_over(entry))))
         uses.append(of)
         for id in of:
             used_by[id].append(entry.id)
@@ -134,6 +136,8 @@ class _Reach:
         }
         self.known: dict[str, tuple[frozenset[str], frozenset[str]]] = {}
         self.by_id: dict[str, tuple[frozenset[str], frozenset[str]]] = {}
+        self.ranges: list[tuple[str, frozenset[str]]] = []
+        """Id of each validity, with the names that it is for."""
         self.behind: dict[str, frozenset[str]] = defaultdict(frozenset)
         for entry in resolved.entries:
             self._enter(entry)
@@ -146,8 +150,16 @@ class _Reach:
         for name in defined_by(entry):
             self.known.setdefault(name, (assumed, ranged))
         if isinstance(entry.statement, Validity):
+            self.ranges.append((entry.id, frozenset(name for name, _ in entry.statement.names)))
             for name, _ in entry.statement.names:
                 self.behind[name] |= assumed
+
+    def ranges_over(self, entry: Entry) -> tuple[str, ...]:
+        """Ids of the validities that rule over a criterion; () for other statements."""
+        if not isinstance(entry.statement, Criterion):
+            return ()
+        ranged = self.by_id[entry.id][1]
+        return tuple(id for id, names in self.ranges if names & ranged) if ranged else ()
 
     def of(self, entry: Entry) -> tuple[tuple[str, ...], frozenset[str]]:
         """What a statement hangs on; the assumptions behind the ranges of its names count too."""

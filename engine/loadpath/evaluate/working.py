@@ -14,7 +14,10 @@ from loadpath.resolve import Entry, Resolved, Type
 from loadpath.trace.digits import exact_digits, typed_number
 from loadpath.trace.model import Aside, Called, Operand, Taken, Working
 from loadpath.units import ONE, Unit, parse_unit
+from loadpath.units.printing import plain, typeset
 
+AS_DIGITS = 6
+"""Significant digits of a number taken with `as`, where no fewer hold it exactly."""
 MOST_CALLS = 40
 """Calls shown beneath one step; a formula with more says so."""
 
@@ -129,9 +132,14 @@ class Observer:
     # --- what governed ---
 
     def _asides(self, tree: Node, parameters: Values) -> Iterator[Aside]:
+        read_as: set[As] = set()
         for node in walk(tree):
             if isinstance(node, As):
-                yield Aside("", node.operand, f"taken as a number of {node.unit}")
+                if node not in read_as:
+                    read_as.add(node)
+                    number = parse_unit(node.unit).from_si(self._value(node.operand, parameters))
+                    said = plain(number, exact_digits(number, AS_DIGITS))
+                    yield Aside("", node.operand, f"taken as a number of {node.unit}: {typeset(said)}")
             elif isinstance(node, Call) and node.function in ("min", "max"):
                 values = [self._value(a, parameters) for a in node.arguments]
                 governing = node.arguments[values.index(FUNCTIONS[node.function].work(*values))]
@@ -139,7 +147,8 @@ class Observer:
             elif isinstance(node, Call) and node.function in ("round_up", "round_down"):
                 value, step = (self._value(a, parameters) for a in node.arguments)
                 times = round(FUNCTIONS[node.function].work(value, step) / step)
-                yield Aside(f"{node.function}: {times} steps of", node.arguments[1], "")
+                way = node.function.removeprefix("round_")
+                yield Aside(f"rounded {way} to {times} steps of", node.arguments[1], "")
 
 
 def _typed(entry: Entry) -> str:

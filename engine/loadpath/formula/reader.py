@@ -152,7 +152,7 @@ class Reader(Quantities):
     def expression(self) -> Node:
         """A sum of products; the whole is held to the size that the engine works."""
         self.skip()
-        start = self.at
+        start, self.operator = self.at, ""
         node = self._binary(_SUM)
         if self.depth == 0:
             _check_size(node, self.span(start))

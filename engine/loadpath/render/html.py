@@ -45,6 +45,7 @@ def _environment() -> Any:
         "symbol": symbol_html,
         "ref": ref_html,
         "breaks": breaks,
+        "names_in": names_in,
     })  # fmt: skip
 
 
@@ -136,6 +137,15 @@ def ref_html(ref: Ref) -> Markup:
 def breaks(text: str) -> Markup:
     """A long name that may be broken after `_`."""
     return Markup("_<wbr>").join(escape(part) for part in text.split("_"))
+
+
+def names_in(words: str) -> Markup:
+    """A verdict, the names in it with their subscripts: `outside the range of σ_1`."""
+    parts = re.split(r"(?<![\w-])([^\W\d_]\w*?)_([\w,]+)", words)
+    out = Markup("")
+    for before, base, subscript in zip(parts[::3], [*parts[1::3], ""], [*parts[2::3], ""], strict=True):
+        out += escape(before) + escape(base) + (Markup("<sub>{}</sub>").format(subscript) if subscript else "")
+    return out
 
 
 def _flow(node: Node, sign: str = "", wide: bool = False) -> Markup:

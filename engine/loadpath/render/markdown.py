@@ -35,7 +35,7 @@ def render(document: Document, stem: str) -> tuple[str, dict[str, bytes]]:
     text = _environment().get_template("document.md.j2").render(
         d=document, s=document.summary, r=document.registers, t=document.title_block,
         kind=lambda block: type(block).__name__, prose=keep, heading=lambda b: _heading(b, document),
-        image=lambda b: quote(_image_name(b, stem)),
+        image=lambda b: Markup(quote(_image_name(b, stem))),
     )  # fmt: skip
     parts = re.sub(r"\n{3,}", "\n\n", str(text)).strip().split("\0")
     return without_turns("".join(chain.from_iterable(zip(parts, [*written, ""], strict=True))) + "\n"), images
@@ -94,7 +94,8 @@ def _line(line: Line) -> Markup:
 
 
 def _call(call: CallLine) -> Markup:
-    sides = " = ".join(latex(side) for side in (call.call, *call.sides, call.value))
+    typed = (call.typed,) if call.typed else ()
+    sides = " = ".join(latex(side) for side in (*typed, call.call, *call.sides, call.value))
     return Markup(f"${sides}$" + ("" if call.closes else " (from unrounded values)"))
 
 

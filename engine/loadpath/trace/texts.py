@@ -11,7 +11,7 @@ from itertools import pairwise
 
 from loadpath.formula.canonical import statement_text
 from loadpath.formula.statements import Check, Criterion, Definition, Validity
-from loadpath.formula.tree import Binary, Logic, Name, Node, Number, Relation, Shown, walk
+from loadpath.formula.tree import Binary, Call, Logic, Name, Node, Number, Relation, Shown, walk
 from loadpath.resolve import expressions
 from loadpath.trace.digits import exact_digits, in_order, order_digits, typed_number
 from loadpath.trace.model import Called, Operand, Step, Trace, Working
@@ -34,10 +34,18 @@ def operand(step: Step) -> Operand | None:
     if isinstance(step.si, str):
         return Operand(step.si, step.unit, step.digits)
     if step.kind != "input" or not isinstance(step.statement, Definition):
-        return Operand(step.si, step.unit, step.digits)
+        return Operand(step.si, step.unit, _digits_of_result(step))
     typed = typed_number(step.statement.value, step.unit)
     value = step.unit.from_si(step.si)
     return Operand(step.si, step.unit, exact_digits(value, step.digits), typed, exact=True)
+
+
+def _digits_of_result(step: Step) -> int:
+    """A value rounded to whole steps is shown as such: `10 mm`, not `10.00 mm`."""
+    tree = step.working.tree if step.working else None
+    if isinstance(tree, Call) and tree.function in ("round_up", "round_down") and isinstance(step.si, float):
+        return min(exact_digits(step.unit.from_si(step.si), step.digits), step.digits)
+    return step.digits
 
 
 def display(step: Step, unit: Unit | None = None) -> Shown | None:
@@ -76,6 +84,8 @@ class Substitution:
     tree: Node
     closes: bool
     """False where even further digits don't lead to the printed result: the step says "from unrounded values"."""
+    more: int = 0
+    """Further digits that its values show, so that they lead to the printed result."""
 
 
 def holds_names(tree: Node) -> bool:
@@ -91,7 +101,7 @@ def substitution(trace: Trace, working: Working, result: Operand) -> Substitutio
     for more in range(MORE + 1):
         tree = substitute(working.tree, scope, working.calls, more)
         if _lands(trace, tree, result):
-            return Substitution(with_factors(tree, result.unit), True)
+            return Substitution(with_factors(tree, result.unit), True, more)
     return Substitution(with_factors(substitute(working.tree, scope, working.calls), result.unit), False)
 
 
@@ -103,7 +113,7 @@ def _lands(trace: Trace, tree: Node, result: Operand) -> bool:
     except (ArithmeticError, ValueError):
         return False
     printed = shown(result).number
-    return abs(reached - read_plain(printed)) <= 1.5 * step_of(printed, result.digits)
+    return abs(reached - read_plain(printed)) <= 1.0001 * step_of(printed, result.digits)
 
 
 def step_substitution(trace: Trace, step: Step) -> Substitution | None:
@@ -161,11 +171,20 @@ def _compared(trace: Trace, working: Working, relation: Relation, values: tuple[
     substituted = None
     if any(holds_names(o) and not isinstance(o, Name) for o in relation.operands):
         inner = tuple(
-            with_factors(substitute(o, scope, working.calls), unit) if isinstance(v, float) else s
+            _worked_side(trace, working, o, unit, s) if isinstance(v, float) else s
             for o, v, s in zip(relation.operands, values, sides, strict=True)
         )
         substituted = Relation(tuple(s if isinstance(o, Name) else i for o, i, s in zip(relation.operands, inner, sides, strict=True)), relation.signs)
     return Compared(relation, substituted, evaluated, _per_length(relation, numbers, unit, scope))
+
+
+def _worked_side(trace: Trace, working: Working, node: Node, unit: Unit, side: Shown) -> Node:
+    """One side with values in place of names, with as many digits as it takes to land on its printed number."""
+    scope = scope_of(trace, working)
+    trees = [substitute(node, scope, working.calls, more) for more in range(MORE + 1)]
+    step = step_of(side.number, len(side.number))
+    landed = (t for t in trees if abs(unit.from_si(trace.work(t)) - read_plain(side.number)) <= 1.0001 * step)
+    return with_factors(next(landed, trees[0]), unit)
 
 
 def _sides(relation: Relation, numbers: list[float | str], unit: Unit, base: int, scope: Scope) -> tuple[Shown, ...]:
