@@ -115,8 +115,13 @@ def stem_of(path: str) -> str:
 def issue(path: str, out: Path, formats: Iterable[str] = FORMATS, text: str | None = None) -> Issued:
     """Reads, works and writes one sheet; a sheet with errors still gives its documents. Raises OSError where it can't write."""
     trace = safely(path, text)
+    try:
+        files = render(trace, stem_of(path), formats)
+    except Exception as fault:
+        trace = _faulted(path, fault)
+        files = render(trace, stem_of(path), formats)
     written = []
-    for name, data in render(trace, stem_of(path), formats).items():
+    for name, data in files.items():
         target = out / name
         target.parent.mkdir(parents=True, exist_ok=True)
         write_atomically(target, data)
@@ -125,13 +130,18 @@ def issue(path: str, out: Path, formats: Iterable[str] = FORMATS, text: str | No
 
 
 def safely(path: str, text: str | None = None) -> Trace:
-    """The audited trace of a sheet. Where the engine itself fails it has no steps and says so: a fault is never silent."""
+    """The audited trace of a sheet, or what stands for it where the engine itself fails: a fault is never silent."""
     try:
         return audited(read_input(path, text))
     except Exception as fault:
-        said = finding(
-            "engine-fault", f"a fault of the engine, not of the sheet: {type(fault).__name__}: {fault}", Source(path, ""), None,
-            help="report it with this sheet; nothing on it is shown",
-        )  # fmt: skip
-        front = FrontMatter(title=stem_of(path))
-        return evaluate(Sheet(Source(path, ""), front, (), (said,)))
+        return _faulted(path, fault)
+
+
+def _faulted(path: str, fault: Exception) -> Trace:
+    """A trace without steps that says what went wrong inside the engine."""
+    source = Source(path, "")
+    said = finding(
+        "engine-fault", f"a fault of the engine, not of the sheet: {type(fault).__name__}: {fault}", source, None,
+        help="report it with this sheet; nothing on it is shown",
+    )  # fmt: skip
+    return evaluate(Sheet(source, FrontMatter(title=stem_of(path)), (), (said,)))

@@ -81,8 +81,8 @@ class CallLine:
     closes: bool
     conditions: tuple[Line, ...] = ()
     """Which branch was taken and what governed."""
-    typed: Node | None = None
-    """The call as typed, where an argument is worked out in it."""
+    typed: tuple[Node, ...] = ()
+    """The call as typed, then with values in its arguments, where an argument is worked out in it."""
 
 
 # --- steps ------------------------------------------------------------------------------------------------------

@@ -40,7 +40,7 @@ from loadpath.resolve import expressions
 from loadpath.trace import Called, Step, Trace, Working, criterion_kind, criterion_name, texts
 from loadpath.trace.digits import exact_digits, ratio_text, typed_number
 from loadpath.trace.file import verdict_words
-from loadpath.trace.substitute import shown
+from loadpath.trace.substitute import shown, substitute, with_factors
 from loadpath.units import parse_unit
 from loadpath.units.printing import plain, unit_symbol
 
@@ -137,12 +137,10 @@ class StepWriter:
         if not isinstance(value, Cases):
             return ()
         taken = working.taken.index if working and working.taken else -1
-        numbers: tuple[Node, ...] = ()
-        if working is not None:
-            numbers = tuple(c.evaluated for c in texts.conditions(self.trace, working))
+        seen = texts.conditions(self.trace, working) if working is not None else ()
         return tuple(
             BranchRow(
-                b.value, b.condition, i == taken, numbers if i == taken else (),
+                b.value, b.condition, i == taken, tuple(c.evaluated for c in seen[i]) if i < len(seen) else (),
                 self.inlines(_notes_between(statement, b.span.start, value.branches[i + 1].span.start if i + 1 < len(value.branches) else None)),
             )
             for i, b in enumerate(value.branches)
@@ -159,21 +157,23 @@ class StepWriter:
         """Each call with its way, those inside it beneath it."""
         out: list[CallLine] = []
         for called in working.calls:
-            out.append(self._call(called))
+            out.append(self._call(called, working))
             out += self.calls(called.working)
         return tuple(out)
 
-    def _call(self, called: Called) -> CallLine:
+    def _call(self, called: Called, outer: Working) -> CallLine:
         call = Call(called.call.function, tuple(shown(operand) for _, operand in called.arguments))
         put = texts.call_substitution(self.trace, called)
-        worked_out = any(not isinstance(a, Name | Number | Quantity) for a in called.call.arguments)
-        typed = called.call if worked_out else None
+        typed: tuple[Node, ...] = ()
+        if any(not isinstance(a, Name | Number | Quantity) for a in called.call.arguments):
+            scope = texts.scope_of(self.trace, outer)
+            put_in = tuple(
+                with_factors(substitute(a, scope, outer.calls), operand.unit)
+                for a, (_, operand) in zip(called.call.arguments, called.arguments, strict=True)
+            )
+            typed = (called.call, Call(called.call.function, put_in))
         sides = (called.working.tree, *((put.tree,) if put and not isinstance(put.tree, Shown) else ()))
-        lines = []
-        for compared in texts.conditions(self.trace, called.working):
-            lines.append(Line(("taken as ", compared.formula, ": ", compared.evaluated)))
-        if called.working.taken is not None and called.working.taken.branch.condition is None:
-            lines.append(Line(("taken: the branch “otherwise”",)))
+        lines = _branch_lines(called.working, texts.conditions(self.trace, called.working))
         lines += [*self._lines(called.working), *_further_digits(put)]
         return CallLine(call, sides, shown(called.value), put.closes if put else True, tuple(lines), typed)
 
@@ -222,7 +222,7 @@ class StepWriter:
             lines.append(texts.rejoined(relation, [c.substituted or c.evaluated for c in compared]))
         with_length = isinstance(statement, Criterion)
         lines.append(texts.rejoined(relation, [_with_length(c) if with_length else c.evaluated for c in compared]))
-        return tuple(lines)
+        return tuple(dict.fromkeys(lines))
 
     def _governing(self, step: Step, statement: Criterion) -> tuple[Line, ...]:
         """Which part of a chain or of an `or` governs."""
@@ -260,6 +260,20 @@ class StepWriter:
 
 
 # --- helpers ----------------------------------------------------------------------------------------------------
+
+
+def _branch_lines(working: Working, conditions: tuple[tuple[texts.Compared, ...], ...]) -> list[Line]:
+    """Which branch of a function's `cases` was taken and why, a line a branch."""
+    if working.taken is None:
+        return []
+    lines = []
+    for index, compared in enumerate(conditions):
+        word = "taken" if index == working.taken.index else "not taken"
+        parts: list[str | Node] = [f"{word}: when " if compared else f"{word}: otherwise"]
+        for each in compared:
+            parts += [each.formula, ", as ", each.evaluated, "; "]
+        lines.append(Line(tuple(parts[:-1] if compared else parts)))
+    return lines
 
 
 def _further_digits(put: texts.Substitution | None) -> tuple[Line, ...]:

@@ -9,7 +9,7 @@ from typing import Any
 
 from loadpath.evaluate.explain import run
 from loadpath.evaluate.failure import Failure, shower
-from loadpath.evaluate.plan import Plan, Planned, defined_by, make_plan
+from loadpath.evaluate.plan import Plan, Planned, defined_by, guarded_by, make_plan
 from loadpath.evaluate.verdicts import both_sides, judge
 from loadpath.evaluate.working import Observer
 from loadpath.findings import Finding, Remark, finding, ordered
@@ -207,14 +207,21 @@ class _Run:
     def _bring_in_ranges(self) -> None:
         """A criterion that hangs on a name outside its range shows nothing."""
         outside: set[str] = set()
+        unknown: dict[str, str] = {}
         for step in self.steps:
-            if isinstance(step.statement, Validity) and (step.verdict is None or not step.verdict.satisfied):
-                outside |= {name for name, _ in step.statement.names}
+            guarded = guarded_by(step.statement)
+            if guarded and step.why:
+                unknown |= dict.fromkeys(guarded, step.why)
+            elif guarded and step.verdict is not None and not step.verdict.satisfied:
+                outside |= set(guarded)
         for index, (planned, step) in enumerate(zip(self.plan.steps, self.steps, strict=True)):
             verdict = step.verdict
             if verdict is None or not isinstance(step.statement, Criterion):
                 continue
-            if missed := tuple(sorted(planned.ranged & outside)):
+            if why := next((unknown[name] for name in sorted(planned.ranged) if name in unknown), ""):
+                verdict = Verdict(None, conditional_on=verdict.conditional_on)
+                self.steps[index] = replace(step, verdict=verdict, why=step.why or why)
+            elif missed := tuple(sorted(planned.ranged & outside)):
                 verdict = Verdict(None, outside=missed, conditional_on=verdict.conditional_on)
                 self.steps[index] = replace(step, verdict=verdict)
             elif verdict.one_sided:

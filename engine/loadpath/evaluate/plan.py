@@ -16,7 +16,7 @@ from loadpath.formula.statements import (
     Statement,
     Validity,
 )
-from loadpath.formula.tree import As, Call, Cases, Node, Relation, walk
+from loadpath.formula.tree import As, Call, Cases, Name, Node, Relation, walk
 from loadpath.resolve import Entry, Resolved
 from loadpath.sheet import Formulas, Heading, Sheet
 from loadpath.trace.model import Outline, Working
@@ -102,7 +102,7 @@ def _outlines(resolved: Resolved, numbers: Iterator[str], reach: _Reach) -> tupl
     used_by: dict[str, list[str]] = defaultdict(list)
     uses: list[tuple[str, ...]] = []
     for entry in resolved.entries:
-        named = (owner[n] for n in entry.uses if n in owner and owner[n] != entry.id)
+        named = (owner[n] for n in fed_by(entry) if n in owner and owner[n] != entry.id)
         of = tuple(dict.fromkeys((*named, *reach.ranges_over(entry))))
         uses.append(of)
         for id in of:
@@ -111,6 +111,22 @@ def _outlines(resolved: Resolved, numbers: Iterator[str], reach: _Reach) -> tupl
         Outline(entry, number, cited(entry.statement), of, tuple(used_by[entry.id]))
         for entry, of, number in zip(resolved.entries, uses, numbers, strict=False)
     )
+
+
+def fed_by(entry: Entry) -> tuple[str, ...]:
+    """The names that a statement's value or verdict comes from; those that a validity only guards are none of them."""
+    if not isinstance(entry.statement, Validity):
+        return entry.uses
+    nodes = walk(entry.statement.relation)
+    inside = {n.name if isinstance(n, Name) else n.function for n in nodes if isinstance(n, Name | Call)}
+    return tuple(name for name in entry.uses if name in inside)
+
+
+def guarded_by(statement: Statement) -> tuple[str, ...]:
+    """The names that a statement states a range for, also where it could not be read."""
+    if isinstance(statement, Validity):
+        return tuple(name for name, _ in statement.names)
+    return statement.guards if isinstance(statement, Faulty) else ()
 
 
 def defined_by(entry: Entry) -> tuple[str, ...]:
@@ -131,9 +147,7 @@ class _Reach:
     def __init__(self, resolved: Resolved) -> None:
         self.assumptions = [a.key for a in resolved.sheet.front.assumptions if a.confirm]
         self.open = frozenset(self.assumptions)
-        self.ranged = {
-            n for e in resolved.entries if isinstance(e.statement, Validity) for n, _ in e.statement.names
-        }
+        self.ranged = {name for entry in resolved.entries for name in guarded_by(entry.statement)}
         self.known: dict[str, tuple[frozenset[str], frozenset[str]]] = {}
         self.by_id: dict[str, tuple[frozenset[str], frozenset[str]]] = {}
         self.ranges: list[tuple[str, frozenset[str]]] = []
@@ -143,15 +157,16 @@ class _Reach:
             self._enter(entry)
 
     def _enter(self, entry: Entry) -> None:
-        feeding = [self.known[name] for name in entry.uses if name in self.known]
+        feeds = fed_by(entry)
+        feeding = [self.known[name] for name in feeds if name in self.known]
         assumed = (frozenset(cited(entry.statement)) & self.open).union(*(a for a, _ in feeding))
-        ranged = frozenset(n for n in entry.uses if n in self.ranged).union(*(r for _, r in feeding))
+        ranged = frozenset(n for n in feeds if n in self.ranged).union(*(r for _, r in feeding))
         self.by_id[entry.id] = (assumed, ranged)
         for name in defined_by(entry):
             self.known.setdefault(name, (assumed, ranged))
-        if isinstance(entry.statement, Validity):
-            self.ranges.append((entry.id, frozenset(name for name, _ in entry.statement.names)))
-            for name, _ in entry.statement.names:
+        if guarded := guarded_by(entry.statement):
+            self.ranges.append((entry.id, frozenset(guarded)))
+            for name in guarded:
                 self.behind[name] |= assumed
 
     def ranges_over(self, entry: Entry) -> tuple[str, ...]:

@@ -50,6 +50,12 @@ def names(text: str) -> tuple[str, ...]:
     return (canonical(match.group(1)),) if match else ()
 
 
+def guards(text: str) -> tuple[str, ...]:
+    """The names that a validity which could not be read was meant for."""
+    before, word, after = text.rpartition(" for ")
+    return tuple(canonical(name) for name in words_in(after)) if VALIDITY.match(text) and word else ()
+
+
 def criterion(text: str) -> tuple[CriterionKind, str] | None:
     """Kind and name of a line that was meant as a criterion."""
     if match := CRITERION.match(text):

@@ -120,5 +120,7 @@ class Faulty(Statement):
     """The names it would have defined, as far as they can be made out."""
     criterion: tuple[CriterionKind, str] | None = None
     """Kind and name, where it began as a criterion: it then counts as not shown."""
+    guards: tuple[str, ...] = ()
+    """The names that a validity was meant for: nothing is shown of what hangs on them."""
     trouble: Span = field(default=NOWHERE, compare=False)
     """The place of its finding, which what hangs on it names; NOWHERE where that is the statement's own."""

@@ -129,7 +129,8 @@ class As(Node):
 
 # --- relations ----------------------------------------------------------------------------------------------
 
-Sign = Literal["<=", "<", ">=", ">", "="]
+Sign = Literal["<=", "<", ">=", ">", "=", "≠"]
+"""`≠` is only ever printed, never typed."""
 
 
 @dataclass(frozen=True, slots=True)

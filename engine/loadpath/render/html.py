@@ -16,7 +16,7 @@ from loadpath.formula.names import symbol
 from loadpath.formula.tree import Name, Node, Shown
 from loadpath.render.math import COLUMN, PAGE, flow, mathml, widest
 from loadpath.render.templates import environment, folder, without_turns
-from loadpath.units.printing import quantity
+from loadpath.units.printing import NARROW, THIN, quantity
 
 CELL = 17
 """Characters that a cell of the printed title block surely holds on one line."""
@@ -116,14 +116,15 @@ def printed(value: Shown | str) -> str:
     """A value in running text."""
     if isinstance(value, str):
         return value
-    return f"“{value.number}”" if value.word else quantity(value.number, value.unit)
+    # a thin space may end a line, a narrow one that doesn't break may not
+    return f"“{value.number}”" if value.word else quantity(value.number, value.unit).replace(THIN, NARROW)
 
 
 def symbol_html(name: str) -> Markup:
     """A name in running text: σ with its subscript."""
     s = symbol(name)
     sub = Markup("<sub>{}</sub>").format(s.subscript) if s.subscript else Markup("")
-    return escape(s.prefix + s.base) + sub + escape("′" * s.primes)
+    return escape(s.prefix + s.base + "′" * s.primes) + sub
 
 
 def ref_html(ref: Ref) -> Markup:

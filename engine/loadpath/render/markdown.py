@@ -94,8 +94,7 @@ def _line(line: Line) -> Markup:
 
 
 def _call(call: CallLine) -> Markup:
-    typed = (call.typed,) if call.typed else ()
-    sides = " = ".join(latex(side) for side in (*typed, call.call, *call.sides, call.value))
+    sides = " = ".join(latex(side) for side in (*call.typed, call.call, *call.sides, call.value))
     return Markup(f"${sides}$" + ("" if call.closes else " (from unrounded values)"))
 
 

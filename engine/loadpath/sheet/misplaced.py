@@ -23,6 +23,7 @@ from loadpath.formula.statements import (
     FunctionDefinition,
     Note,
     Statement,
+    Validity,
 )
 from loadpath.sheet.places import Places
 from loadpath.text import Source, Span
@@ -165,7 +166,7 @@ def lost_in_quotation(content: str, source: Source, first_line: int, trouble: Sp
 
 def _is_missed(statement: Statement) -> bool:
     """False for a line that could not be read and defines nothing: mere text, mostly."""
-    return not isinstance(statement, Faulty) or bool(statement.names or statement.criterion)
+    return not isinstance(statement, Faulty) or bool(statement.names or statement.criterion or statement.guards)
 
 
 def _faulty(statement: Statement, source: Source) -> Faulty:
@@ -177,4 +178,5 @@ def _faulty(statement: Statement, source: Source) -> Faulty:
         criterion = (statement.kind, statement.name)
     elif isinstance(statement, Definition | Choice | FunctionDefinition):
         names = (statement.name,)
-    return Faulty(statement.span, statement.notes, source.cut(statement.span), names, criterion)
+    guards = tuple(name for name, _ in statement.names) if isinstance(statement, Validity) else ()
+    return Faulty(statement.span, statement.notes, source.cut(statement.span), names, criterion, guards)

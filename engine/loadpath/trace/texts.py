@@ -6,20 +6,22 @@ All of it is trees and plain numbers: how they look (MathML, LaTeX, text) is up 
 from __future__ import annotations
 
 from contextlib import suppress
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from itertools import pairwise
 
 from loadpath.formula.canonical import statement_text
 from loadpath.formula.statements import Check, Criterion, Definition, Validity
-from loadpath.formula.tree import Binary, Call, Logic, Name, Node, Number, Relation, Shown, walk
+from loadpath.formula.tree import Binary, Call, Logic, Name, Node, Number, Relation, Shown, Sign, walk
 from loadpath.resolve import expressions
-from loadpath.trace.digits import exact_digits, in_order, order_digits, typed_number
+from loadpath.trace.digits import EQUAL, exact_digits, in_order, order_digits, typed_number
 from loadpath.trace.model import Called, Operand, Step, Trace, Working
 from loadpath.trace.substitute import Scope, natural_unit, shown, substitute, with_factors
 from loadpath.units import ONE, Unit
 from loadpath.units.dimension import LENGTH
 from loadpath.units.printing import MOST_DIGITS, feet_and_inches, plain, read_plain, step_of
 
+WORKED_INPUT = 5
+"""Digits to which an input that is worked out (`5/8 in`, `42.3 kg/m * 9.81 m/s^2`) is printed at the least, where it has them."""
 MORE = 2
 """Further digits that a substitution may show where the usual ones would not lead to the result."""
 
@@ -34,10 +36,12 @@ def operand(step: Step) -> Operand | None:
     if isinstance(step.si, str):
         return Operand(step.si, step.unit, step.digits)
     if step.kind != "input" or not isinstance(step.statement, Definition):
+        if step.working is not None and (typed := typed_number(step.working.tree, step.unit)):
+            return Operand(step.si, step.unit, step.digits, typed, exact=True)
         return Operand(step.si, step.unit, _digits_of_result(step))
     typed = typed_number(step.statement.value, step.unit)
     value = step.unit.from_si(step.si)
-    return Operand(step.si, step.unit, exact_digits(value, step.digits), typed, exact=True)
+    return Operand(step.si, step.unit, min(exact_digits(value, step.digits), max(step.digits, WORKED_INPUT)), typed, exact=True)
 
 
 def _digits_of_result(step: Step) -> int:
@@ -144,7 +148,7 @@ class Compared:
     substituted: Relation | None
     """With values in place of names, where a side is more than a name or a number."""
     evaluated: Relation
-    """Each side as one number."""
+    """Each side as one number, with the signs that hold: `8.746 mm > 8.667 mm` where `<=` was asked and does not."""
     per_length: tuple[int, Name, str] | None = None
     """Operand index, length and number: the demand as `L/499.9`, where the limit is `L/n`."""
 
@@ -158,24 +162,51 @@ def compared(trace: Trace, step: Step) -> tuple[Compared, ...]:
     if key not in trace.made:
         relations = [n for n in walk(expressions(statement)[0]) if isinstance(n, Relation)]
         worked = zip(relations, verdict.sides, step.entry.side_units, strict=False)
-        trace.made[key] = tuple(_compared(trace, step.working, *each, step.digits) for each in worked)
-    made: tuple[Compared, ...] = trace.made[key]
-    return made
+        made = [_compared(trace, step.working, *each, step.digits) for each in worked]
+        if isinstance(statement, Check):
+            # its sides are equal within the tolerance, which stands beside them
+            made = [replace(c, evaluated=replace(c.evaluated, signs=c.formula.signs)) for c in made]
+        trace.made[key] = tuple(made)
+    kept: tuple[Compared, ...] = trace.made[key]
+    return kept
 
 
 def _compared(trace: Trace, working: Working, relation: Relation, values: tuple[float | str, ...], unit: Unit, base: int) -> Compared:
     scope = scope_of(trace, working)
     numbers = [unit.from_si(v) if isinstance(v, float) else v for v in values]
     sides = _sides(relation, numbers, unit, base, scope)
-    evaluated = Relation(sides, relation.signs)
+    evaluated = Relation(sides, tuple(_sign_that_holds(*each) for each in zip(relation.signs, numbers, numbers[1:], strict=False)))
     substituted = None
-    if any(holds_names(o) and not isinstance(o, Name) for o in relation.operands):
+    if any(_is_worked(o, unit, scope) for o in relation.operands):
         inner = tuple(
             _worked_side(trace, working, o, unit, s) if isinstance(v, float) else s
             for o, v, s in zip(relation.operands, values, sides, strict=True)
         )
-        substituted = Relation(tuple(s if isinstance(o, Name) else i for o, i, s in zip(relation.operands, inner, sides, strict=True)), relation.signs)
+        substituted = Relation(
+            tuple(i if _is_worked(o, unit, scope) else s for o, i, s in zip(relation.operands, inner, sides, strict=True)),
+            relation.signs,
+        )
     return Compared(relation, substituted, evaluated, _per_length(relation, numbers, unit, scope))
+
+
+_OPPOSITE: dict[Sign, Sign] = {"<=": ">", "<": ">=", ">=": "<", ">": "<=", "=": "≠"}
+
+
+def _sign_that_holds(asked: Sign, a: float | str, b: float | str) -> Sign:
+    """The sign asked for, or its opposite where it does not hold."""
+    if isinstance(a, str) or isinstance(b, str):
+        return asked if a == b else _OPPOSITE[asked]
+    equal = abs(a - b) <= EQUAL * max(abs(a), abs(b))
+    held = {"<=": a < b or equal, "<": a < b and not equal, ">=": a > b or equal, ">": a > b and not equal, "=": equal}
+    return asked if held[asked] else _OPPOSITE[asked]
+
+
+def _is_worked(node: Node, unit: Unit, scope: Scope) -> bool:
+    """True for a side that is more than one printed number: it is worked out, or stands in a unit of another size."""
+    if isinstance(node, Name):
+        own = scope(node.name)
+        return own is not None and not isinstance(own.si, str) and own.unit.size != unit.size
+    return holds_names(node)
 
 
 def _worked_side(trace: Trace, working: Working, node: Node, unit: Unit, side: Shown) -> Node:
@@ -235,13 +266,18 @@ def _per_length(relation: Relation, numbers: list[float | str], unit: Unit, scop
     return 1 - limit_at, length, plain(ratio, digits)
 
 
-def conditions(trace: Trace, working: Working) -> tuple[Compared, ...]:
-    """The condition of the branch taken, with its numbers, one a relation."""
-    if working.taken is None or working.taken.branch.condition is None:
+def conditions(trace: Trace, working: Working) -> tuple[tuple[Compared, ...], ...]:
+    """For each branch down to the one taken: the relations of its condition, with their numbers."""
+    if working.taken is None:
         return ()
+    branches = working.taken.cases.branches[: working.taken.index + 1]
+    return tuple(_conditions(trace, working, b.condition) for b in branches)
+
+
+def _conditions(trace: Trace, working: Working, condition: Node | None) -> tuple[Compared, ...]:
     scope = scope_of(trace, working)
     out = []
-    for node in walk(working.taken.branch.condition):
+    for node in walk(condition) if condition is not None else ():
         if isinstance(node, Relation):
             # what the condition passes over (`when x = 0 or 1/x <= 3`) need not have a value
             with suppress(ArithmeticError, ValueError):

@@ -53,6 +53,7 @@ _OWN_MACRO = frozenset(
     "sin cos tan sec sinh cosh tanh arcsin arccos arctan exp ln log min max".split()  # noqa: SIM905
 )
 _SIGNS = {
+    "≠": r" \ne ",
     "≤": r" \le ", "≥": r" \ge ", "<": r" \lt ", ">": r" \gt ", "=": " = ", "+": " + ", "−": " - ",
     "×": r" \times ", "⋅": r" \cdot ", "÷": r" \div ", "/": "/", ",": ", ", "√": r"\surd ",
     "∛": r"{}^{3}\surd ", "^": r" \wedge ",

@@ -54,7 +54,7 @@ from loadpath.units.printing import MINUS
 MOST_FRACTIONS = 2
 """Fractions one within the other; what lies deeper is set on the line."""
 
-RELATIONS = {"<=": "≤", ">=": "≥", "<": "<", ">": ">", "=": "="}
+RELATIONS = {"<=": "≤", ">=": "≥", "<": "<", ">": ">", "=": "=", "≠": "≠"}
 _FUNCTIONS = {"asin": ("arcsin", ""), "acos": ("arccos", ""), "atan": ("arctan", ""), "log10": ("log", "10")}
 _PLAIN = re.compile(r"[\d.]+")
 _FEET = re.compile(r"(-?[\d.]+) ft (.+)")
