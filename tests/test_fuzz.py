@@ -1,4 +1,4 @@
-"""Hostile and random sheets through every stage: no exception, no hang. The long run of it is campaigns/fuzz.py."""
+"""Hostile and random sheets through every stage: no exception, no hang. campaigns/fuzz.py is the long run."""
 
 from __future__ import annotations
 
@@ -6,15 +6,15 @@ import time
 from random import Random
 
 import pytest
-from campaigns.fuzz import KINDS, audited, hostile, through
 from hypothesis import HealthCheck, given, settings
 from hypothesis import strategies as st
 
 import loadpath
+from campaigns.fuzz import KINDS, audited, hostile, through
 
 SHEETS = hostile(share=0.04)
 NAMED = {
-    # source: the issue that this was built for; text or lines of the sheet, and slugs of which it must give one
+    # what the sheet holds, and slugs of which it must give one
     "nested parentheses": {"over-limit"},
     "nested parentheses in a line that is read": {"over-limit"},
     "a tower of powers": {"not-finite", "over-limit"},

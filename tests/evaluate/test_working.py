@@ -94,9 +94,9 @@ def test_what_a_condition_passes_over_need_not_have_a_value() -> None:
     [
         ("min(a, b)", "min: governed by", "a", ""),
         ("max(a, b, 2*a)", "max: governed by", "2*a", ""),
-        ("round_up(b, 2)", "round_up: 2 steps of", "2", ""),
-        ("round_down(b, 2)", "round_down: 1 steps of", "2", ""),
-        ("2*(c as mm)", "", "c", "taken as a number of mm"),
+        ("round_up(b, 2)", "rounded up to 2 steps of", "2", ""),
+        ("round_down(b, 2)", "rounded down to 1 step of", "2", ""),
+        ("2*(c as mm)", "", "c", "taken as a number of mm: 1000"),
     ],
 )
 def test_asides(expression: str, before: str, tree: str, after: str) -> None:

@@ -28,17 +28,17 @@ PLAIN_HOSTILE = [
     "</title></style></script><img src=x onerror=alert(1)>",
     "' onload='x' \\ \" autofocus",
     "&lt;b&gt; &amp; &#60;script&#62; &nbsp;",
-    "--> <!-- ]]> <?php ?>",
+    "--> <!-- > <?php ?>",
     "a\u202eb\u2066c",
 ]
 """Texts without a meaning in Markdown or in a formula line."""
 HOSTILE = [
     *PLAIN_HOSTILE,
     '"}</style><style>*{color:red}',
-    "\\\";}*{display:none} /* ",
+    '\\";}*{display:none} /* ',
     "[x](javascript:alert(1)) ![i](http://e.invalid/a.png) <http://e.invalid>",
     "`code` *b* _i_ $x$ $$y$$ | cell | # h",
-    "](#x) `<img src=x>` ``` ~~~",
+    "](#x) `<img src=x>` ``` ~~~ ]]>",
 ]
 
 EVERYTHING = """---
@@ -173,10 +173,15 @@ assumptions:
     if front_only:
         return front + body
     escaped = re.sub(r"([{}])", r"\\\1", line)
-    return front + f"\n## {escaped}\n\nA {escaped} b.\n\n* c {escaped}\n\n![{escaped}](a.png)\n" + body + f"    z = x + {line}\n"
+    return (
+        front
+        + f"\n## {escaped}\n\nA {escaped} b.\n\n* c {escaped}\n\n![{escaped}](a.png)\n"
+        + body
+        + f"    z = x + {line}\n"
+    )
 
 
-# --- a page once parsed -----------------------------------------------------------------------------------------
+# --- a page once parsed -------------------------------------------------------------------------------------
 
 VOID = ("meta", "br", "wbr", "img", "hr")
 
@@ -185,7 +190,9 @@ def as_xml(page: str) -> ElementTree.Element:
     """A page as XML, which allows nothing to be left open, unescaped or unquoted. Raises ParseError."""
     text = page.removeprefix("<!doctype html>\n").replace("&nbsp;", "\u00a0")
     text = re.sub(rf"<({'|'.join(VOID)})((?:\s[^<>]*)?)>", r"<\1\2/>", text)
-    text = re.sub(r"(<style>|<script>)(.*?)(</style>|</script>)", r"\1<![CDATA[\2]]>\3", text, flags=re.DOTALL)
+    text = re.sub(
+        r"(<style>|<script>)(.*?)(</style>|</script>)", r"\1<![CDATA[\2]]>\3", text, flags=re.DOTALL
+    )
     return ElementTree.fromstring(text)
 
 

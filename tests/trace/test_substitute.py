@@ -87,7 +87,7 @@ US = """
         ("x [in] = b + L - 2 ft", "3 in + 20 ft * 12 in/ft - 2 ft * 12 in/ft", ("219.0", "in")),
         ("x = (L + b)/(L - b)", "(20 ft + 3 in / (12 in/ft))/(20 ft - 3 in / (12 in/ft))", ("1.025", "")),
         ("x = max(b, L)", "max(3 in, 20 ft * 12 in/ft)", ("240.0", "in")),
-        ("x = round_up(L, b)", "round_up(20 ft * 12 in/ft, 3 in)", ("240.0", "in")),
+        ("x = round_up(L, b)", "round_up(20 ft * 12 in/ft, 3 in)", ("240", "in")),
         ("x = atan2(b, L)", "atan2(3 in, 20 ft * 12 in/ft)", ("0.01250", "")),
         # roots: the factor stands under the root where it would else be a root itself
         ("x = sqrt(b*L)", "sqrt(3 in * 20 ft * 12 in/ft)", ("26.83", "in")),

@@ -33,7 +33,8 @@ def input_findings(trace: Trace) -> Iterator[Finding]:
             yield finding(
                 "unused-input", f"nothing uses the input `{statement.name}`",
                 trace.sheet.source, statement.name_span,
-                help="delete it, or use it where it belongs; what is only told is written in the text",
+                help="delete it, or use it where it belongs; "
+                "a value that is only told is written in the text",
             )  # fmt: skip
         if isinstance(statement, Definition) and (typed := _plain_number(statement.value)) is not None:
             named = canonical(statement.name).split("_")[0].lower() in ANGLE_NAMES

@@ -218,12 +218,10 @@ class _Run:
             verdict = step.verdict
             if verdict is None or not isinstance(step.statement, Criterion):
                 continue
-            if why := next((unknown[name] for name in sorted(planned.ranged) if name in unknown), ""):
-                verdict = Verdict(None, conditional_on=verdict.conditional_on)
-                self.steps[index] = replace(step, verdict=verdict, why=step.why or why)
-            elif missed := tuple(sorted(planned.ranged & outside)):
+            if missed := tuple(sorted(planned.ranged & (outside | set(unknown)))):
+                why = step.why or next((unknown[name] for name in missed if name in unknown), "")
                 verdict = Verdict(None, outside=missed, conditional_on=verdict.conditional_on)
-                self.steps[index] = replace(step, verdict=verdict)
+                self.steps[index] = replace(step, verdict=verdict, why=why)
             elif verdict.one_sided:
                 self.found.append(self._one_sided(step.statement, step.id, verdict))
 
@@ -263,7 +261,8 @@ def _is_judged(planned: Planned) -> bool:
 def digest(sheet: Sheet) -> str:
     """SHA-256 of all that a sheet is issued from: text, each `project.yaml`, each image, with its length."""
     total = hashlib.sha256()
-    parts = [sheet.source.text.encode(), *(text.encode() for text in sheet.project_texts)]
+    texts = (sheet.source.text, *sheet.project_texts)
+    parts = [text.encode(errors="surrogatepass") for text in texts]
     parts += [block.data for block in sheet.blocks if isinstance(block, Image)]
     for part in parts:
         total.update(str(len(part)).encode() + b":" + part)

@@ -57,6 +57,10 @@ class Cursor:
         index = self.at + ahead
         return self.text[index] if index < len(self.text) else ""
 
+    def at_digit(self) -> bool:
+        """True where a number begins."""
+        return self.peek().isascii() and self.peek().isdigit()
+
     def word(self) -> str:
         """The name-like run of characters that comes next, "" where there is none; takes white space only."""
         self.skip()

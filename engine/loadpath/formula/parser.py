@@ -108,5 +108,11 @@ def _faulty(group: Group, source: Source, trouble: Span) -> Faulty:
     stray = [item.text for item in group.deeper if meant.begins_statement(item.text)]
     names = [name for line in (text, *stray) for name in meant.names(line)]
     return Faulty(
-        group.span, group.whole.notes, typed, tuple(dict.fromkeys(names)), meant.criterion(text), meant.guards(text), trouble
+        group.span,
+        group.whole.notes,
+        typed,
+        tuple(dict.fromkeys(names)),
+        meant.criterion(text),
+        meant.guards(text),
+        trouble,
     )

@@ -45,7 +45,7 @@ class Quantities(Cursor):
         """The inches behind a number of feet."""
         mark = self.at
         self.skip()
-        if self.peek().isdigit():
+        if self.at_digit():
             second = self._part("")
             if not isinstance(second, Number) and second[0].unit == "in":
                 return second

@@ -186,7 +186,7 @@ class Reader(Quantities):
             self.refuse_other_signs()
         start = self.at
         self.at += 1
-        if self.peek().isdigit() and (absolute := self._absolute_temperature(start)) is not None:
+        if self.at_digit() and (absolute := self._absolute_temperature(start)) is not None:
             return absolute
         self.enter()
         operand = self._unary()
@@ -220,7 +220,7 @@ class Reader(Quantities):
     def _primary(self) -> Node:
         self.skip()
         character = self.peek()
-        if character.isascii() and character.isdigit():
+        if self.at_digit():
             return self.number()
         if is_letter(character):
             return self._name_or_call()

@@ -37,7 +37,7 @@ def render(document: Document, stem: str) -> tuple[str, dict[str, bytes]]:
         kind=lambda block: type(block).__name__, prose=keep, heading=lambda b: _heading(b, document),
         image=lambda b: Markup(quote(_image_name(b, stem))),
     )  # fmt: skip
-    parts = re.sub(r"\n{3,}", "\n\n", str(text)).strip().split("\0")
+    parts = re.sub(r"\n{3,}", "\n\n", re.sub(r" +\n", "\n", str(text))).strip().split("\0")
     return without_turns("".join(chain.from_iterable(zip(parts, [*written, ""], strict=True))) + "\n"), images
 
 

@@ -105,10 +105,8 @@ class _Writer:
                 return "\\\n"
             case "code_inline":
                 return _code(node.content.replace("|", "\\|") if self.in_table else node.content)
-            case "em":
-                return f"*{self.inside(node)}*"
-            case "strong":
-                return f"**{self.inside(node)}**"
+            case "em" | "strong":
+                return f"{node.markup}{self.inside(node)}{node.markup}"
             case "link":
                 return f"[{self.inside(node)}](<{str(node.attrs['href']).replace('&', '&amp;')}>)"
             case "value":
@@ -141,7 +139,8 @@ def _code(text: str) -> str:
 def _fenced(text: str, info: str) -> str:
     ticks = "`" * max(_longest_run(text) + 1, 3)
     word = re.match(r"[\w+-]*", info)
-    return f"{ticks}{word.group() if word else ''}\n{text}{ticks}"
+    lines = text if text.endswith("\n") or not text else text + "\n"
+    return f"{ticks}{word.group() if word else ''}\n{lines}{ticks}"
 
 
 def _alignment(cell: SyntaxTreeNode) -> str:

@@ -70,7 +70,7 @@ class UnitSystem:
     overrides: tuple[tuple[str, str], ...] = ()
 
     def knows(self, dimension: Dimension) -> bool:
-        """True for a kind that the system has a unit of its own for; others are shown in products of its units."""
+        """True for a kind that has a unit of its own; others are shown in products of the system's units."""
         return dimension.is_plain or dimension in SYSTEMS[self.name]
 
     def unit_for(self, dimension: Dimension, absolute: bool = False, bar: bool = False) -> Unit:
