@@ -76,18 +76,24 @@ def _formats(to: str) -> tuple[str, ...]:
 
 
 def _targets(paths: list[str], sheets: tuple[str, ...], out: str) -> list[str]:
-    """The folder for each sheet's documents: below a named folder its own place in it. Two of one name end with code 2."""
+    """The folder for each sheet's documents: below a named folder its own place in it.
+
+    Ends the program with code 2 where two sheets would write one document, or a document would be written over a sheet.
+    """
     from loadpath.pipeline import stem_of
 
     roots = [Path(name) for name in sheets if Path(name).is_dir()]
     targets: list[str] = []
     taken: dict[Path, str] = {}
+    typed = {Path(path).resolve() for path in paths if path != "-"}
     for path in paths:
         root = next((r for r in roots if path != "-" and Path(path).is_relative_to(r)), None)
         target = Path(out) / Path(path).parent.relative_to(root) if root else Path(out)
         key = target / stem_of(path)
         if key in taken:
             raise click.UsageError(f"{path} and {taken[key]} would both write {key}.html; issue them to different folders with --out")
+        if (written := target / f"{stem_of(path)}.md").resolve() in typed:
+            raise click.UsageError(f"{written} is a sheet, and would be written over; name another folder with --out")
         taken[key] = path
         targets.append(str(target))
     return targets
@@ -105,7 +111,7 @@ def _run(paths: list[str], targets: list[str], formats: tuple[str, ...], jobs: i
             waiting = [pool.submit(_work, p, t, formats, given(p)) for p, t in zip(paths, targets, strict=True)]
             return [future.result() for future in _with_progress(waiting)]
     except OSError as error:
-        raise click.ClickException(f"cannot write: {error}") from None
+        raise click.UsageError(f"cannot write: {error}") from None
 
 
 Item = TypeVar("Item")

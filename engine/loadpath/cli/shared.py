@@ -37,11 +37,13 @@ def sheet_paths(names: tuple[str, ...]) -> list[str]:
 
 
 def standard_input() -> str:
-    """The text on standard input. Ends the program with code 2 where it is not UTF-8 text."""
+    """The text on standard input. Ends the program with code 2 where it is too long or not UTF-8 text."""
+    from loadpath.project import LARGEST_SHEET, Refused, decode
+
     try:
-        return sys.stdin.buffer.read(2_000_000).decode("utf-8-sig").replace("\r\n", "\n").replace("\r", "\n")
-    except UnicodeDecodeError:
-        raise click.UsageError("standard input is not UTF-8 text") from None
+        return decode(sys.stdin.buffer.read(LARGEST_SHEET + 1))
+    except Refused as refused:
+        raise click.UsageError(f"standard input: {refused}") from None
 
 
 def show(findings: Iterable[Finding]) -> None:

@@ -12,7 +12,7 @@ _TURNS = re.compile("[\u202a-\u202e\u2066-\u2069]")
 
 
 def without_turns(text: str) -> str:
-    """The text with a replacement character for each sign that turns the direction of writing: none reorders what stands by."""
+    """The text with a replacement character for each sign that turns the direction of writing."""
     return _TURNS.sub("\ufffd", text)
 
 
