@@ -1,4 +1,5 @@
-"""Arrows point downwards only: a module imports from the layers above it in DEVELOPERS.md's table, never from below."""
+"""Arrows point downwards only: a module imports from the layers above it in DEVELOPERS.md's table, never
+from below."""
 
 from __future__ import annotations
 
@@ -32,7 +33,7 @@ def layer_of(path: Path) -> str:
 def imported(path: Path, *, only_top: bool = False) -> set[str]:
     """Full names of what a module imports, without what stands under TYPE_CHECKING."""
     tree = ast.parse(path.read_text(encoding="utf-8"))
-    nodes = tree.body if only_top else [n for n in ast.walk(tree)]
+    nodes = tree.body if only_top else list(ast.walk(tree))
     skipped = {
         id(inner)
         for n in ast.walk(tree)

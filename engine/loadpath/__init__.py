@@ -37,7 +37,10 @@ import_module("loadpath.evaluate")
 
 
 def read(path: str | PathLike[str]) -> Sheet:
-    """The calc sheet in a file. What is wrong with it stands in `sheet.findings`; nothing is raised for a user's mistake."""
+    """The calc sheet in a file.
+
+    What is wrong with it stands in `sheet.findings`; nothing is raised for a user's mistake.
+    """
     from pathlib import Path
 
     from loadpath.sheet.reader import read_sheet_file
@@ -46,7 +49,10 @@ def read(path: str | PathLike[str]) -> Sheet:
 
 
 def read_text(text: str, name: str = "-") -> Sheet:
-    """The calc sheet in a text, shown under a name; it sees no files. Nothing is raised for a user's mistake."""
+    """The calc sheet in a text, shown under a name; it sees no files.
+
+    Nothing is raised for a user's mistake.
+    """
     from loadpath.project import MemoryWorld
     from loadpath.sheet.reader import read_sheet
     from loadpath.text import Source
@@ -57,7 +63,8 @@ def read_text(text: str, name: str = "-") -> Sheet:
 def evaluate(sheet: Sheet) -> Trace:
     """The trace of a sheet: every step with its value in coherent SI and in the unit that it is shown in.
 
-    Names, order and dimensions are checked first; what fails is in `trace.findings`, and what hangs on it has no value.
+    Names, order and dimensions are checked first; what fails is in `trace.findings`, and what hangs on it
+    has no value.
     """
     from loadpath.pipeline import evaluate as work
 
@@ -65,16 +72,20 @@ def evaluate(sheet: Sheet) -> Trace:
 
 
 def audit(trace: Trace) -> tuple[Finding, ...]:
-    """Every finding on a sheet: those of the trace, and what a careful reader would ask besides; in order of place."""
+    """Every finding on a sheet: those of the trace, and what a careful reader would ask besides; in order
+    of place."""
     from loadpath.checking.audit import audit as look
 
     return look(trace)
 
 
-def issue(path: str | PathLike[str], out: str | PathLike[str] = "output", to: Iterable[str] = ("html", "md", "json")) -> Issued:
+def issue(
+    path: str | PathLike[str], out: str | PathLike[str] = "output", to: Iterable[str] = ("html", "md", "json")
+) -> Issued:
     """Writes the documents of the sheet in a file into a folder: `to` names formats (html, md, json).
 
-    A sheet with errors still gives its documents, headed "not for use". Raises OSError where a file can't be written.
+    A sheet with errors still gives its documents, headed "not for use". Raises OSError where a file can't
+    be written.
     """
     from os import fspath
     from pathlib import Path

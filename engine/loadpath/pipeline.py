@@ -44,7 +44,7 @@ def read_input(path: Path | str, text: str | None = None) -> Sheet:
     return read_sheet_file(Path(path))
 
 
-# --- formats ----------------------------------------------------------------------------------------------------
+# --- formats ----------------------------------------------------------------------------------------------
 
 Files = dict[str, bytes]
 """Name of each file that a document consists of, and its bytes."""
@@ -69,11 +69,18 @@ def _json(trace: Trace, _: Document, stem: str) -> Files:
     return {f"{stem}.trace.json": record(trace, __version__).to_json().encode()}
 
 
-RENDERERS: dict[str, Callable[[Trace, Document, str], Files]] = {"html": _html, "md": _markdown, "json": _json}
+RENDERERS: dict[str, Callable[[Trace, Document, str], Files]] = {
+    "html": _html,
+    "md": _markdown,
+    "json": _json,
+}
 
 
 def render(trace: Trace, stem: str, formats: Iterable[str] = FORMATS) -> Files:
-    """The files of a document in the formats asked for. Raises KeyError for a format that there is none of."""
+    """The files of a document in the formats asked for.
+
+    Raises KeyError for a format that there is none of.
+    """
     document = build(trace, __version__)
     files: Files = {}
     for name in formats:
@@ -81,7 +88,7 @@ def render(trace: Trace, stem: str, formats: Iterable[str] = FORMATS) -> Files:
     return files
 
 
-# --- issuing ----------------------------------------------------------------------------------------------------
+# --- issuing ----------------------------------------------------------------------------------------------
 
 
 @dataclass(frozen=True)
@@ -113,7 +120,10 @@ def stem_of(path: str) -> str:
 
 
 def issue(path: str, out: Path, formats: Iterable[str] = FORMATS, text: str | None = None) -> Issued:
-    """Reads, works and writes one sheet; a sheet with errors still gives its documents. Raises OSError where it can't write."""
+    """Reads, works and writes one sheet; a sheet with errors still gives its documents.
+
+    Raises OSError where it can't write.
+    """
     trace = safely(path, text)
     try:
         files = render(trace, stem_of(path), formats)
@@ -130,7 +140,8 @@ def issue(path: str, out: Path, formats: Iterable[str] = FORMATS, text: str | No
 
 
 def safely(path: str, text: str | None = None) -> Trace:
-    """The audited trace of a sheet, or what stands for it where the engine itself fails: a fault is never silent."""
+    """The audited trace of a sheet, or what stands for it where the engine itself fails: a fault is never
+    silent."""
     try:
         return audited(read_input(path, text))
     except Exception as fault:
@@ -141,7 +152,10 @@ def _faulted(path: str, fault: Exception) -> Trace:
     """A trace without steps that says what went wrong inside the engine."""
     source = Source(path, "")
     said = finding(
-        "engine-fault", f"a fault of the engine, not of the sheet: {type(fault).__name__}: {fault}", source, None,
+        "engine-fault",
+        f"a fault of the engine, not of the sheet: {type(fault).__name__}: {fault}",
+        source,
+        None,
         help="report it with this sheet; nothing on it is shown",
-    )  # fmt: skip
+    )
     return evaluate(Sheet(source, FrontMatter(title=stem_of(path)), (), (said,)))

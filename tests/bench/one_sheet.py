@@ -1,7 +1,8 @@
 """What one sheet costs, as ratios in one run: `python tests/bench/one_sheet.py` prints a small table.
 
-Every comparison is with a plain script that does the same arithmetic, run in the same process (or, for the cold start, as
-a process of its own in turns with the other). Medians of several rounds; absolute times depend on the machine.
+Every comparison is with a plain script that does the same arithmetic, run in the same process (or, for the cold
+start, as a process of its own in turns with the other). Medians of several rounds; absolute times depend on the
+machine.
 """
 
 from __future__ import annotations
@@ -168,7 +169,10 @@ def main() -> None:
     print(f"| numbers alone / plain floats | {numbers / floats:.1f} | at most 15 |")
     print(f"| pint quantities / numbers alone | {quantities / numbers:.0f} | at least 50 |")
     print(f"| numbers with the trace / plain floats | {trace / floats:.0f} | at most 100 |")
-    print(f"| cold `loadpath issue` / importing pint, jinja2, yaml, markdown_it | {cold_ratio():.2f} | under 3 |")
+    print(
+        "| cold `loadpath issue` / importing pint, jinja2, yaml, markdown_it | "
+        f"{cold_ratio():.2f} | under 3 |"
+    )
     print()
     small, large = stages(20), stages(2000)
     print("| microseconds a step | 107 steps | 10 007 steps | ratio |")

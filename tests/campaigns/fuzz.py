@@ -19,12 +19,16 @@ import traceback
 from collections import Counter
 from collections.abc import Callable, Iterator
 from dataclasses import dataclass, field
+from fractions import Fraction
 from pathlib import Path
 from random import Random
 
 import loadpath
+from loadpath.functions import FUNCTIONS
 from loadpath.pipeline import render
 from loadpath.trace import Trace
+from loadpath.units import Dimension
+from loadpath.units import dimension as d
 
 ROOT = Path(__file__).parents[2]
 HEAD = "---\ntitle: Hostile\n---\n\n"
@@ -336,46 +340,63 @@ def numbers_changed(random: Random) -> str:
         return lambda match: random.choice(others) if random.random() < share else match.group()
 
     text = random.choice(sheets())
-    values = [
-        "0",
-        "1",
-        "1e300",
-        "1e-300",
-        "0.0001",
-        "99999.5",
-        "123456789",
-        "3",
-        "-1",
-        "(-2)",
-        "(1/3)",
-        "0.9999999",
-    ]
+    values = ["0", "1", "1e300", "1e-300", "0.0001", "99999.5", "123456789", "3", "-1", "(-2)", "(1/3)"]
     text = re.sub(r"(?<![\w.\[])\d+(?:\.\d+)?(?![\w.\]])", sometimes(0.2, values), text)
-    units = [
-        "mm",
-        "in",
-        "ft",
-        "kN",
-        "lbf",
-        "MPa",
-        "psi",
-        "deg",
-        "rpm",
-        "degC",
-        "K",
-        "%",
-        "kg",
-        "s",
-        "kip*ft",
-        "1/K",
-        "bar",
-    ]
+    units = ["mm", "in", "ft", "kN", "lbf", "MPa", "psi", "deg", "rpm", "degC", "K", "%", "kg", "s", "kip*ft"]
     return re.sub(r"\b(mm|kN|MPa|in|kip|ksi|psi|m|N)\b", sometimes(0.07, units), text)
+
+
+TYPED = {
+    d.LENGTH: ["mm", "in", "ft", "m", "mil"], d.FORCE: ["kN", "lbf", "kip", "kgf"],
+    d.STRESS: ["MPa", "ksi", "psf", "bar"], d.TEMPERATURE: ["K"],
+    d.PLAIN: ["%", "deg", "rad", "ppm", "microstrain"], d.TIME: ["s", "min", "h"], d.POWER: ["hp", "kW"],
+    d.FREQUENCY: ["rpm", "Hz"], d.MASS: ["kg", "lb"],
+}  # fmt: skip
+TYPED_NUMBERS = ["1", "2.5", "0.3", "12_000", "1e-4", "0", "7/8"]
+PLAIN_FUNCTIONS = [name for name, function in FUNCTIONS.items() if function.rule == "plain"]
+
+
+def worked(random: Random) -> str:
+    """A sheet whose dimensions fit: sums of one kind, products and powers of any, units that don't cancel."""
+    known: list[tuple[str, Dimension]] = []
+    lines = []
+    for number in range(random.randint(4, 25)):
+        name, of = f"x{number}", random.choice(list(TYPED))
+        if number < 3 or random.random() < 0.3:
+            lines.append(f"{name} = {random.choice(TYPED_NUMBERS)} {random.choice(TYPED[of])} -- x")
+        else:
+            text, of = _formula(random, known, 3)
+            units = next((units for kind, units in TYPED.items() if kind == of), [])
+            asked = f" [{random.choice(units)}]" if units and random.random() < 0.6 else ""
+            lines.append(f"{name}{asked} = {text}")
+            if random.random() < 0.3:
+                other = random.choice([n for n, kind in known if kind == of] or ["0"])
+                lines.append(f"limit c{number}: {name} {random.choice(['<=', '<', '>=', '>'])} {other}")
+        known.append((name, of))
+    system = random.choice(["SI", "US", "SI machine", "US machine", "SI pressure"])
+    return f"---\ntitle: Worked\nunits: {system}\n---\n\n" + "".join(f"    {line}\n" for line in lines)
+
+
+def _formula(random: Random, known: list[tuple[str, Dimension]], deep: int) -> tuple[str, Dimension]:
+    if deep == 0 or random.random() < 0.2:
+        return random.choice(known)
+    (a, kind), (b, other) = _formula(random, known, deep - 1), _formula(random, known, deep - 1)
+    alike = [name for name, of in known if of == kind]
+    if alike and random.random() < 0.4:
+        c = random.choice(alike)
+        joined = [f"({a} + {c})", f"({a} - {c})", f"max({a}, {c})", f"round_up({a}, {c})", f"abs({a})"]
+        return random.choice(joined), kind
+    if kind.is_plain and random.random() < 0.4:
+        return random.choice([f"{random.choice(PLAIN_FUNCTIONS)}({a})", f"({a})^({a})"]), kind
+    if random.random() < 0.2:
+        power = random.choice([Fraction(2), Fraction(1, 2), Fraction(-1), Fraction(1, 3)])
+        return f"({a})^({power})", kind.power(power)
+    return random.choice([(f"({a}*{b})", kind.times(other)), (f"({a})/({b})", kind.over(other))])
 
 
 KINDS: dict[str, Callable[[Random], str]] = {
     "bytes": bytes_decoded, "pieces": pieces_joined, "mutated": mutated, "spliced": spliced,
-    "numbers": numbers_changed,
+    "numbers": numbers_changed, "worked": worked,
 }  # fmt: skip
 
 

@@ -49,8 +49,8 @@ def process(*arguments: str, folder: Path, **environment: str) -> subprocess.Com
     engine = str(Path(loadpath.__file__).parents[1])
     path = os.pathsep.join(filter(None, (engine, os.environ.get("PYTHONPATH"))))
     return subprocess.run(
-        [sys.executable, "-m", "loadpath", *arguments],
-        cwd=folder, env={**os.environ, "PYTHONPATH": path, **environment}, capture_output=True, timeout=120, check=False,
+        [sys.executable, "-m", "loadpath", *arguments], cwd=folder, capture_output=True, timeout=120,
+        check=False, env={**os.environ, "PYTHONPATH": path, **environment},
     )  # fmt: skip
 
 

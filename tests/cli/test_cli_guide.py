@@ -30,7 +30,9 @@ def test_the_slug_of_every_finding_is_a_page() -> None:
     assert run("guide", "unit-mismatch").stdout.startswith("#")
 
 
-@pytest.mark.parametrize(("page", "says"), [("unit-mismach", "did you mean unit-mismatch?"), ("zzzz", "see loadpath guide")])
+@pytest.mark.parametrize(
+    ("page", "says"), [("unit-mismach", "did you mean unit-mismatch?"), ("zzzz", "see loadpath guide")]
+)
 def test_a_page_that_there_is_none_of(page: str, says: str) -> None:
     result = run("guide", page)
     assert result.exit_code == 2

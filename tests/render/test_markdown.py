@@ -207,7 +207,7 @@ def test_prose_that_a_host_would_read_otherwise(body: str) -> None:
 
 
 def shape(found: list[Token]) -> list[tuple[str, str]]:
-    """What a parser makes of prose: each token with what it says; marks and line ends within a paragraph apart."""
+    """What a parser makes of prose: each token with what it says; marks and line ends apart."""
     out: list[tuple[str, str]] = []
     for token in found:
         if token.type == "inline":
@@ -252,8 +252,7 @@ def test_prose_reads_as_it_was_meant(text: str) -> None:
 @given(
     st.lists(
         st.sampled_from(
-            list("ab12.-+*_`~<>[]()#|\\!&;:=\n\n  $\"'")
-            + ["\n\n", "```", "<b>", "&lt;", "- ", "1. ", "> ", "](x)"]
+            [*"ab12.-+*_`~<>[]()#|\\!&;:=\n\n  $\"'", "\n\n", "```", "<b>", "&lt;", "- ", "1. ", "> ", "](x)"]
         ),
         min_size=1,
         max_size=40,
@@ -268,7 +267,10 @@ def test_any_prose_stays_inert_and_says_the_same(text: str) -> None:
 
 
 def test_values_are_printed_in_prose_and_not_in_code() -> None:
-    body = "It is {P}, {P [lbf]}, **{P}**, \\{P} and `{P}`.\n\n| a |\n|---|\n| {P} |\n\n## With {P}\n\n    P = 20 kN -- p\n"
+    body = (
+        "It is {P}, {P [lbf]}, **{P}**, \\{P} and `{P}`.\n\n| a |\n|---|\n| {P} |\n\n"
+        "## With {P}\n\n    P = 20 kN -- p\n"
+    )
     text, _ = render(built(f"---\ntitle: T\n---\n\n{body}"), "t")
     assert seen(text).count("20\u202fkN".replace("\u202f", " ")) >= 4 or "20\u202fkN" in text
     assert "It is 20\u202fkN, 4496\u202flbf, **20\u202fkN**, \\{P\\} and `{P}`." in text
@@ -287,10 +289,14 @@ def test_code_in_prose_keeps_its_empty_lines() -> None:
 def test_the_document_in_order() -> None:
     text = seen(written("everything"))
     order = [
-        "Everything", "Every kind of step", "Not for use: 2 errors", "Not checked", "Conclusion.", "not satisfied",
-        "It does, with", "Objective.", "Method.", "Governing", "To confirm: A1.", "Review.", "Before any section",
-        "taken", "ratio", "margin", "cross-check", "not computed because of line", "Error, line", "Design inputs",
-        "no source", "Assumptions", "Sources", "Criteria", "Findings", "Revisions", "Codes and drawings", "Caution.",
+        "Everything", "Every kind of step", "Not for use: 2 errors", "Not checked", "Conclusion.",
+        "not satisfied",
+        "It does, with", "Objective.", "Method.", "Governing", "To confirm: A1.", "Review.",
+        "Before any section",
+        "taken", "ratio", "margin", "cross-check", "not computed because of line", "Error, line",
+        "Design inputs",
+        "no source", "Assumptions", "Sources", "Criteria", "Findings", "Revisions", "Codes and drawings",
+        "Caution.",
         "legal owner", "Tern Slip boatyard", "R.M. (typed, not on record)", "loadpath 9.9.9",
     ]  # fmt: skip
     at = 0

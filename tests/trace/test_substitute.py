@@ -193,7 +193,11 @@ READINGS = """
         ("x [degC] = t_1", "(70 degF - 32 delta_degF) / (1.8 degF/degC)", ("21.11", "degC")),
         ("x [degF] = t_2", "20 degC * 1.8 degF/degC + 32 delta_degF", ("68.00", "degF")),
         ("x [degF] = t_2 + 10 K", "(20 degC + 10 K) * 1.8 degF/degC + 32 delta_degF", ("86.00", "degF")),
-        ("x [mm] = 12e-6 1/K * (t_2 - t_3) * 3 m", "12e-6 1/K * (20 degC - (-10 degC)) * 3 m", ("1.080", "mm")),
+        (
+            "x [mm] = 12e-6 1/K * (t_2 - t_3) * 3 m",
+            "12e-6 1/K * (20 degC - (-10 degC)) * 3 m",
+            ("1.080", "mm"),
+        ),
         (
             "x [degF] = max(t_1, t_2)",
             "max(70 degF, 20 degC * 1.8 degF/degC + 32 delta_degF)",

@@ -11,11 +11,19 @@ from loadpath.cli.shared import SHEETS, as_json, sheet_paths, show, standard_inp
 
 @click.command()
 @SHEETS
-@click.option("--format", "form", default="text", show_default=True, type=click.Choice(["text", "json"]), help="How findings are shown.")
+@click.option(
+    "--format",
+    "form",
+    default="text",
+    show_default=True,
+    type=click.Choice(["text", "json"]),
+    help="How findings are shown.",
+)
 def audit(sheets: tuple[str, ...], form: str) -> None:
     """Show what is wrong or doubtful in each SHEET, in a folder of sheets, or in standard input (-).
 
-    Text goes to standard error, one finding as `file:line:column: severity: message [slug]`; JSON to standard output.
+    Text goes to standard error, each finding as `file:line:column: severity: message [slug]`; JSON goes to
+    standard output.
     """
     from loadpath.pipeline import exit_code, safely
 

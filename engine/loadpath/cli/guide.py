@@ -28,5 +28,8 @@ def guide(page: str | None) -> None:
         page = "index"
     if page not in known:
         near = get_close_matches(page, list(known), 1)
-        raise click.UsageError(f"the guide has no page {page}" + (f"; did you mean {near[0]}?" if near else "; see loadpath guide"))
+        raise click.UsageError(
+            f"the guide has no page {page}"
+            + (f"; did you mean {near[0]}?" if near else "; see loadpath guide")
+        )
     click.echo(known[page].rstrip())

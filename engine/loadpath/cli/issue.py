@@ -34,15 +34,32 @@ def _work(path: str, out: str, formats: tuple[str, ...], text: str | None = None
     from loadpath.pipeline import issue
 
     done = issue(path, Path(out), formats, text)
-    return _Outcome(path, done.trace.findings, tuple(map(str, done.written)), conclusion(done.trace), done.exit_code)
+    return _Outcome(
+        path, done.trace.findings, tuple(map(str, done.written)), conclusion(done.trace), done.exit_code
+    )
 
 
 @click.command()
 @SHEETS
 @click.option("--to", default="html,md,json", show_default=True, help="Formats, by commas: html, md, json.")
-@click.option("--out", default="output", show_default=True, type=click.Path(file_okay=False), help="Folder for the documents.")
-@click.option("--jobs", default=1, show_default=True, type=click.IntRange(1, 64), help="Sheets worked at the same time.")
-@click.option("--format", "form", default="text", show_default=True, type=click.Choice(["text", "json"]), help="How findings are shown.")
+@click.option(
+    "--out",
+    default="output",
+    show_default=True,
+    type=click.Path(file_okay=False),
+    help="Folder for the documents.",
+)
+@click.option(
+    "--jobs", default=1, show_default=True, type=click.IntRange(1, 64), help="Sheets worked at the same time."
+)
+@click.option(
+    "--format",
+    "form",
+    default="text",
+    show_default=True,
+    type=click.Choice(["text", "json"]),
+    help="How findings are shown.",
+)
 def issue(sheets: tuple[str, ...], to: str, out: str, jobs: int, form: str) -> None:
     """Produce the documents of each SHEET, of a folder of sheets, or of standard input (-).
 
@@ -71,14 +88,17 @@ def _formats(to: str) -> tuple[str, ...]:
     formats = tuple(dict.fromkeys(part.strip() for part in to.split(",") if part.strip()))
     unknown = [name for name in formats if name not in RENDERERS]
     if unknown or not formats:
-        raise click.UsageError(f"--to takes {', '.join(RENDERERS)}, by commas; {', '.join(unknown) or 'nothing'} is none of them")
+        raise click.UsageError(
+            f"--to takes {', '.join(RENDERERS)}, by commas; {', '.join(unknown) or 'nothing'} is none of them"
+        )
     return formats
 
 
 def _targets(paths: list[str], sheets: tuple[str, ...], out: str) -> list[str]:
     """The folder for each sheet's documents: below a named folder its own place in it.
 
-    Ends the program with code 2 where two sheets would write one document, or a document would be written over a sheet.
+    Ends the program with code 2 where two sheets would write one document, or a document would be written
+    over a sheet.
     """
     from loadpath.pipeline import stem_of
 
@@ -91,15 +111,22 @@ def _targets(paths: list[str], sheets: tuple[str, ...], out: str) -> list[str]:
         target = Path(out) / Path(path).parent.relative_to(root) if root else Path(out)
         key = target / stem_of(path)
         if key in taken:
-            raise click.UsageError(f"{path} and {taken[key]} would both write {key}.html; issue them to different folders with --out")
+            raise click.UsageError(
+                f"{path} and {taken[key]} would both write {key}.html; "
+                "issue them to different folders with --out"
+            )
         if (written := target / f"{stem_of(path)}.md").resolve() in typed:
-            raise click.UsageError(f"{written} is a sheet, and would be written over; name another folder with --out")
+            raise click.UsageError(
+                f"{written} is a sheet, and would be written over; name another folder with --out"
+            )
         taken[key] = path
         targets.append(str(target))
     return targets
 
 
-def _run(paths: list[str], targets: list[str], formats: tuple[str, ...], jobs: int, text: str | None) -> list[_Outcome]:
+def _run(
+    paths: list[str], targets: list[str], formats: tuple[str, ...], jobs: int, text: str | None
+) -> list[_Outcome]:
     def given(path: str) -> str | None:
         return text if path == "-" else None
 
@@ -108,7 +135,9 @@ def _run(paths: list[str], targets: list[str], formats: tuple[str, ...], jobs: i
             pairs = _with_progress(list(zip(paths, targets, strict=True)))
             return [_work(path, target, formats, given(path)) for path, target in pairs]
         with ProcessPoolExecutor(min(jobs, len(paths))) as pool:
-            waiting = [pool.submit(_work, p, t, formats, given(p)) for p, t in zip(paths, targets, strict=True)]
+            waiting = [
+                pool.submit(_work, p, t, formats, given(p)) for p, t in zip(paths, targets, strict=True)
+            ]
             return [future.result() for future in _with_progress(waiting)]
     except OSError as error:
         raise click.UsageError(f"cannot write: {error}") from None

@@ -17,7 +17,10 @@ SHEETS = click.argument("sheets", nargs=-1, required=True, metavar="SHEET...")
 
 
 def sheet_paths(names: tuple[str, ...]) -> list[str]:
-    """Each sheet named, folders searched; `-` is standard input. Ends the program with code 2 where there is none."""
+    """Each sheet named, folders searched; `-` is standard input.
+
+    Ends the program with code 2 where there is none.
+    """
     from pathlib import Path
 
     from loadpath.project import find_sheets
@@ -58,4 +61,6 @@ def as_json(findings: Iterable[Finding]) -> str:
     """Findings as one JSON array, in the form of the trace file, each with the path as named."""
     from loadpath.trace.file import finding_record
 
-    return json.dumps([asdict(finding_record(f)) | {"file": f.source.path} for f in findings], ensure_ascii=False, indent=1)
+    return json.dumps(
+        [asdict(finding_record(f)) | {"file": f.source.path} for f in findings], ensure_ascii=False, indent=1
+    )

@@ -63,12 +63,25 @@ class _Builder:
         self.values = self._values()
         blocks = self._blocks()
         front = self.front
-        loose = tuple(f for i, f in enumerate(self.trace.findings) if i not in self.placed and f.severity != "note")
+        loose = tuple(
+            f for i, f in enumerate(self.trace.findings) if i not in self.placed and f.severity != "note"
+        )
         return Document(
-            front.language or "en", front.page, front.title or "Untitled", front.subtitle, self._about(), self._alerts(),
-            self._summary(), blocks, loose, self._registers(blocks), self._title_block(), self.values,
-            tuple(b for b in blocks if isinstance(b, FigureBlock)), self.trace.sheet.source,
-        )  # fmt: skip
+            front.language or "en",
+            front.page,
+            front.title or "Untitled",
+            front.subtitle,
+            self._about(),
+            self._alerts(),
+            self._summary(),
+            blocks,
+            loose,
+            self._registers(blocks),
+            self._title_block(),
+            self.values,
+            tuple(b for b in blocks if isinstance(b, FigureBlock)),
+            self.trace.sheet.source,
+        )
 
     # --- values in prose ---
 
@@ -86,7 +99,10 @@ class _Builder:
         step = self.trace.by_name.get(value.name)
         if unit is None or step is None:
             return value.typed
-        return texts.display(step, unit if value.unit else None) or f"[{value.name} {step.why or 'not computed'}]"
+        return (
+            texts.display(step, unit if value.unit else None)
+            or f"[{value.name} {step.why or 'not computed'}]"
+        )
 
     def _words(self, words: Words) -> Prose:
         parts = (self.values.get(p, p.typed) if isinstance(p, Value) else p for p in pieces(words))
@@ -96,7 +112,11 @@ class _Builder:
 
     def _about(self) -> tuple[str, ...]:
         front = self.front
-        number = ", ".join(p for p in (front.number, f"revision {front.revision}" if front.revision else "", front.status) if p)
+        number = ", ".join(
+            p
+            for p in (front.number, f"revision {front.revision}" if front.revision else "", front.status)
+            if p
+        )
         client = f"for {front.client}" if front.client else ""
         document = f"document {front.client_document}" if front.client_document else ""
         return tuple(p for p in (number, front.project, ", ".join(p for p in (client, document) if p)) if p)
@@ -115,23 +135,38 @@ class _Builder:
     def _summary(self) -> Summary:
         front, criteria = self.front, self.trace.criteria
         return Summary(
-            _conclusion(criteria), tuple(_verdict_line(s) for s in sorted(filter(is_listed, criteria), key=_weight)),
-            self._words(front.conclusion), self._words(front.objective), self._words(front.method),
-            tuple(self._governing(kind) for kind in KINDS), self._to_confirm(), NO_REVIEW,
-        )  # fmt: skip
+            _conclusion(criteria),
+            tuple(_verdict_line(s) for s in sorted(filter(is_listed, criteria), key=_weight)),
+            self._words(front.conclusion),
+            self._words(front.objective),
+            self._words(front.method),
+            tuple(self._governing(kind) for kind in KINDS),
+            self._to_confirm(),
+            NO_REVIEW,
+        )
 
     def _governing(self, kind: str) -> VerdictLine:
         of_kind = [s for s in self.trace.criteria if criterion_kind(s) == kind]
         if of_kind:
             return _verdict_line(min(of_kind, key=_weight))
         reason = dict(self.front.not_applicable).get(kind, "")
-        return VerdictLine(kind, None, "", f"does not apply: {reason}" if reason else "no criterion and no reason given", not reason)
+        return VerdictLine(
+            kind,
+            None,
+            "",
+            f"does not apply: {reason}" if reason else "no criterion and no reason given",
+            not reason,
+        )
 
     def _to_confirm(self) -> tuple[OpenAssumption, ...]:
         out = []
         for assumption in self.front.assumptions:
             if assumption.confirm:
-                hanging = [ref(s) for s in self.trace.criteria if s.verdict and assumption.key in s.verdict.conditional_on]
+                hanging = [
+                    ref(s)
+                    for s in self.trace.criteria
+                    if s.verdict and assumption.key in s.verdict.conditional_on
+                ]
                 out.append(OpenAssumption(assumption.key, assumption.text, tuple(hanging)))
         return tuple(out)
 
@@ -142,13 +177,17 @@ class _Builder:
         blocks: list[Block] = []
         headings = iter(self.trace.sections)
         levels = (b.level for b in self.trace.sheet.blocks if isinstance(b, Heading))
-        top = next((level for level, (number, _) in zip(levels, self.trace.sections, strict=True) if number), 1)
+        top = next(
+            (level for level, (number, _) in zip(levels, self.trace.sections, strict=True) if number), 1
+        )
         step = 0
         above = 2
         for index, block in enumerate(self.trace.sheet.blocks):
             if isinstance(block, Heading):
                 number, _ = next(headings)
-                if number or block.level > 1:  # the only heading of level 1 without a number is the title again
+                if (
+                    number or block.level > 1
+                ):  # the only heading of level 1 without a number is the title again
                     above = 2 if number else min(max(block.level - top + 2, 3), above + 1, 6)
                     blocks.append(SectionHead(above, number, block.tokens, block.text))
             elif isinstance(block, Formulas):
@@ -157,7 +196,9 @@ class _Builder:
                         blocks.append(self.writer.write(step))
                     step += 1
             elif isinstance(block, Image):
-                blocks.append(FigureBlock(block.number, block.caption, block.media_type, block.data, by_block[index]))
+                blocks.append(
+                    FigureBlock(block.number, block.caption, block.media_type, block.data, by_block[index])
+                )
             else:
                 blocks.append(ProseBlock(block.tokens, by_block[index]))
         return tuple(blocks)
@@ -190,20 +231,39 @@ class _Builder:
         for step in self.trace.steps:
             for key in step.sources:
                 cited[key].append(Ref(step.number))
-        findings = tuple((f, self.placed.get(i, f"f{i + 1}" if f.severity != "note" else "")) for i, f in enumerate(self.trace.findings))
+        findings = tuple(
+            (f, self.placed.get(i, f"f{i + 1}" if f.severity != "note" else ""))
+            for i, f in enumerate(self.trace.findings)
+        )
         return Registers(
             tuple(self._input_entry(b) for b in blocks if isinstance(b, InputRow)),
-            tuple(AssumptionEntry(a.key, a.text, _state(a), a.confirm, tuple(cited[a.key])) for a in front.assumptions),
-            tuple(SourceEntryRow(s.key, s.text + (f" ({s.file})" if s.file else ""), tuple(cited[s.key])) for s in front.sources),
+            tuple(
+                AssumptionEntry(a.key, a.text, _state(a), a.confirm, tuple(cited[a.key]))
+                for a in front.assumptions
+            ),
+            tuple(
+                SourceEntryRow(s.key, s.text + (f" ({s.file})" if s.file else ""), tuple(cited[s.key]))
+                for s in front.sources
+            ),
             tuple(self._criterion_entry(b) for b in blocks if isinstance(b, CriterionBox)),
-            findings, tuple(RevisionEntry(r.letter, r.date, r.by, r.change) for r in front.revisions), front.codes, front.drawings,
-        )  # fmt: skip
+            findings,
+            tuple(RevisionEntry(r.letter, r.date, r.by, r.change) for r in front.revisions),
+            front.codes,
+            front.drawings,
+        )
 
     def _input_entry(self, row: InputRow) -> InputEntry:
         citations = tuple(p for p in row.head.note if isinstance(p, Cited))
         open_keys = {a.key for a in self.front.assumptions if a.confirm}
         note = tuple(p for p in row.head.note if not isinstance(p, Cited))
-        return InputEntry(Ref(row.head.number, row.name), note, row.typed, row.value, citations, any(c.key in open_keys for c in citations))
+        return InputEntry(
+            Ref(row.head.number, row.name),
+            note,
+            row.typed,
+            row.value,
+            citations,
+            any(c.key in open_keys for c in citations),
+        )
 
     def _criterion_entry(self, box: CriterionBox) -> CriterionEntry:
         return CriterionEntry(_verdict_line(self.judged[box.head.number]), box.relation)
@@ -214,14 +274,20 @@ class _Builder:
         front = self.front
         fingerprint = " ".join(self.trace.digest[i : i + 4] for i in range(0, 16, 4))
         return TitleBlock(
-            front.owner, front.title or "Untitled", front.subtitle, front.number,
-            ", ".join(p for p in (front.revision, front.status) if p), front.created_by,
-            _typed_only(front.reviewed_by), _typed_only(front.approved_by), front.date,
+            front.owner,
+            front.title or "Untitled",
+            front.subtitle,
+            front.number,
+            ", ".join(p for p in (front.revision, front.status) if p),
+            front.created_by,
+            _typed_only(front.reviewed_by),
+            _typed_only(front.approved_by),
+            front.date,
             f"loadpath {self.version} · fingerprint {fingerprint}",
-        )  # fmt: skip
+        )
 
 
-# --- helpers ----------------------------------------------------------------------------------------------------
+# --- helpers ----------------------------------------------------------------------------------------------
 
 
 def _owner(spans: list[Span], at: int) -> int | None:
@@ -266,9 +332,18 @@ def _conclusion(criteria: tuple[Step, ...]) -> tuple[tuple[str, bool], ...]:
     if unshown:
         phrases.append((f"{unshown} not shown" if phrases else f"{unshown} {of} not shown", True))
     if sided:
-        phrases.append((f"{sided} satisfied on one side only" if phrases else f"{sided} {of} satisfied on one side only", True))
+        phrases.append(
+            (
+                f"{sided} satisfied on one side only"
+                if phrases
+                else f"{sided} {of} satisfied on one side only",
+                True,
+            )
+        )
     if not phrases:
-        phrases.append((f"{total} {of} satisfied" if total > 1 else "The one criterion is satisfied", not conditional))
+        phrases.append(
+            (f"{total} {of} satisfied" if total > 1 else "The one criterion is satisfied", not conditional)
+        )
     if conditional:
         phrases.append((f"{conditional} conditional", True))
     return tuple(phrases)
@@ -287,7 +362,9 @@ def _weight(step: Step) -> tuple[int, float]:
     """Worst first: not satisfied, not shown, one-sided, then by ratio; a failed one outranks any ratio."""
     verdict = step.verdict
     assert verdict is not None
-    rank = 0 if verdict.satisfied is False else 1 if verdict.satisfied is None else 2 if verdict.one_sided else 3
+    rank = (
+        0 if verdict.satisfied is False else 1 if verdict.satisfied is None else 2 if verdict.one_sided else 3
+    )
     return rank, -(verdict.utilisation or 0.0)
 
 
@@ -297,6 +374,10 @@ def _verdict_line(step: Step) -> VerdictLine:
     name = criterion_name(step)
     is_name = not (isinstance(step.statement, Criterion) and step.statement.name == "")
     strong = verdict.satisfied is not True or verdict.one_sided
-    return VerdictLine(criterion_kind(step), Ref(step.number, name, is_name), ratio_text(verdict), verdict_words(step, plain_symbol), strong)
-
-
+    return VerdictLine(
+        criterion_kind(step),
+        Ref(step.number, name, is_name),
+        ratio_text(verdict),
+        verdict_words(step, plain_symbol),
+        strong,
+    )

@@ -1,6 +1,7 @@
-"""The document: what a reader sees, in reading order, before any format. Renderers read only this and never compute.
+"""The document: what a reader sees, in reading order, before any format.
 
-Formulas stay trees (`formula.tree`); values are `Shown` nodes with plain numbers. How they look is up to the printers.
+Renderers read only this and never compute. Formulas stay trees (`formula.tree`); values are `Shown` nodes with plain
+numbers. How they look is up to the printers.
 """
 
 from __future__ import annotations
@@ -14,12 +15,12 @@ from loadpath.formula.tree import Node, Shown
 from loadpath.text import Source
 
 CAUTION = (
-    "This calculation is to be checked by a competent person before anything is built, lifted or loaded on its strength. "
-    "Applicable codes, local regulations and the judgement of a licensed engineer govern."
+    "This calculation is to be checked by a competent person before anything is built, lifted or loaded on "
+    "its strength. Applicable codes, local regulations and the judgement of a licensed engineer govern."
 )
 
 
-# --- small parts ------------------------------------------------------------------------------------------------
+# --- small parts ------------------------------------------------------------------------------------------
 
 
 @dataclass(frozen=True, slots=True)
@@ -85,7 +86,7 @@ class CallLine:
     """The call as typed, then with values in its arguments, where an argument is worked out in it."""
 
 
-# --- steps ------------------------------------------------------------------------------------------------------
+# --- steps ------------------------------------------------------------------------------------------------
 
 
 @dataclass(frozen=True, slots=True)
@@ -193,7 +194,7 @@ class FaultyRow:
 StepBlock = InputRow | ResultRow | FunctionRow | CriterionBox | JudgedRow | FaultyRow
 
 
-# --- other blocks -----------------------------------------------------------------------------------------------
+# --- other blocks -----------------------------------------------------------------------------------------
 
 
 @dataclass(frozen=True, slots=True)
@@ -230,7 +231,7 @@ class FigureBlock:
 Block = StepBlock | SectionHead | ProseBlock | FigureBlock
 
 
-# --- front and back ---------------------------------------------------------------------------------------------
+# --- front and back ---------------------------------------------------------------------------------------
 
 
 @dataclass(frozen=True, slots=True)

@@ -55,7 +55,9 @@ class StepWriter:
 
     def __post_init__(self) -> None:
         front = self.trace.sheet.front
-        self.kinds = {s.key: "source" for s in front.sources} | {a.key: "assumption" for a in front.assumptions}
+        self.kinds = {s.key: "source" for s in front.sources} | {
+            a.key: "assumption" for a in front.assumptions
+        }
 
     def write(self, index: int) -> StepBlock:
         """The row of one step."""
@@ -72,7 +74,9 @@ class StepWriter:
             case Definition() if step.kind == "input":
                 return self._input(step, statement, head)
             case Choice():
-                return InputRow(head, statement.name, None, Shown(statement.word, "", True), statement.options)
+                return InputRow(
+                    head, statement.name, None, Shown(statement.word, "", True), statement.options
+                )
             case Definition():
                 return self._result(step, statement, head)
             case FunctionDefinition():
@@ -87,9 +91,14 @@ class StepWriter:
         by_id = self.trace.by_id
         from_, to = [by_id[i] for i in step.uses], [by_id[i] for i in step.used_by]
         return Head(
-            step.number, step.kind, self.inlines(_own_notes(step.statement)), tuple(ref(s) for s in from_),
-            tuple(ref(s) for s in to), findings, step.why,
-        )  # fmt: skip
+            step.number,
+            step.kind,
+            self.inlines(_own_notes(step.statement)),
+            tuple(ref(s) for s in from_),
+            tuple(ref(s) for s in to),
+            findings,
+            step.why,
+        )
 
     def inlines(self, notes: tuple[Note, ...]) -> tuple[Inline, ...]:
         """Notes as text and citations."""
@@ -128,9 +137,15 @@ class StepWriter:
         put = texts.step_substitution(self.trace, step)
         sides = (working.tree, *((put.tree,) if put and not isinstance(put.tree, Shown) else ()))
         return ResultRow(
-            head, name, sides if not working.taken else sides[1:] or sides, texts.display(step), put.closes if put else True,
-            self.branches(statement, statement.value, working), (*self._lines(working), *_further_digits(put)), self.calls(working),
-        )  # fmt: skip
+            head,
+            name,
+            sides if not working.taken else sides[1:] or sides,
+            texts.display(step),
+            put.closes if put else True,
+            self.branches(statement, statement.value, working),
+            (*self._lines(working), *_further_digits(put)),
+            self.calls(working),
+        )
 
     def branches(self, statement: Statement, value: Node, working: Working | None) -> tuple[BranchRow, ...]:
         """The branches of a `cases`, the taken one marked, its condition with numbers."""
@@ -140,16 +155,29 @@ class StepWriter:
         seen = texts.conditions(self.trace, working) if working is not None else ()
         return tuple(
             BranchRow(
-                b.value, b.condition, i == taken, tuple(c.evaluated for c in seen[i]) if i < len(seen) else (),
-                self.inlines(_notes_between(statement, b.span.start, value.branches[i + 1].span.start if i + 1 < len(value.branches) else None)),
+                b.value,
+                b.condition,
+                i == taken,
+                tuple(c.evaluated for c in seen[i]) if i < len(seen) else (),
+                self.inlines(
+                    _notes_between(
+                        statement,
+                        b.span.start,
+                        value.branches[i + 1].span.start if i + 1 < len(value.branches) else None,
+                    )
+                ),
             )
             for i, b in enumerate(value.branches)
-        )  # fmt: skip
+        )
 
     def _lines(self, working: Working) -> tuple[Line, ...]:
         out = []
         for aside in working.asides:
-            parts = (f"{aside.before} " if aside.before else "", aside.tree, f" {aside.after}" if aside.after else "")
+            parts = (
+                f"{aside.before} " if aside.before else "",
+                aside.tree,
+                f" {aside.after}" if aside.after else "",
+            )
             out.append(Line(tuple(p for p in parts if p != "")))
         return tuple(out)
 
@@ -187,7 +215,9 @@ class StepWriter:
             words = " plain" if unit == "1" else f" in {unit_symbol(unit)}"
             units += [", ", Name(n), words]
         body = None if isinstance(statement.body, Cases) else statement.body
-        return FunctionRow(head, name, body, self.branches(statement, statement.body, None), Line(tuple(units[1:])))
+        return FunctionRow(
+            head, name, body, self.branches(statement, statement.body, None), Line(tuple(units[1:]))
+        )
 
     # --- judged steps ---
 
@@ -196,19 +226,40 @@ class StepWriter:
         assert verdict is not None
         ratio = ratio_text(verdict)
         return CriterionBox(
-            head, statement.kind, statement.name, statement.relation, self._compared_lines(step), ratio, verdict.utilisation,
-            self._margin(step), verdict_words(step, plain_symbol), is_listed(step), verdict.satisfied is not None, verdict.satisfied,
+            head,
+            statement.kind,
+            statement.name,
+            statement.relation,
+            self._compared_lines(step),
+            ratio,
+            verdict.utilisation,
+            self._margin(step),
+            verdict_words(step, plain_symbol),
+            is_listed(step),
+            verdict.satisfied is not None,
+            verdict.satisfied,
             (*self._governing(step, statement), *(self._lines(step.working) if step.working else ())),
             self.calls(step.working) if step.working else (),
-        )  # fmt: skip
+        )
 
     def _faulty_criterion(self, step: Step, head: Head) -> CriterionBox:
         kind = criterion_kind(step)
         name = criterion_name(step) if criterion_name(step) != step.id else ""
         return CriterionBox(
-            head, kind, name, None, (), "", None, None, verdict_words(step, plain_symbol), True, False, None,  # type: ignore[arg-type]
+            head,
+            kind,
+            name,
+            None,
+            (),
+            "",
+            None,
+            None,
+            verdict_words(step, plain_symbol),
+            True,
+            False,
+            None,  # type: ignore[arg-type]
             typed=_as_typed(step.statement),
-        )  # fmt: skip
+        )
 
     def _compared_lines(self, step: Step) -> tuple[Node, ...]:
         """First with values in place of names, where a side is worked out; then each side as one number."""
@@ -221,7 +272,9 @@ class StepWriter:
         if any(c.substituted is not None for c in compared):
             lines.append(texts.rejoined(relation, [c.substituted or c.evaluated for c in compared]))
         with_length = isinstance(statement, Criterion)
-        lines.append(texts.rejoined(relation, [_with_length(c) if with_length else c.evaluated for c in compared]))
+        lines.append(
+            texts.rejoined(relation, [_with_length(c) if with_length else c.evaluated for c in compared])
+        )
         return tuple(dict.fromkeys(lines))
 
     def _governing(self, step: Step, statement: Criterion) -> tuple[Line, ...]:
@@ -245,7 +298,10 @@ class StepWriter:
         if unit.absolute:
             unit = parse_unit("K" if unit.text == "degC" else "delta_degF")
         margin = verdict.margin / unit.size
-        return Shown(plain(margin, min(exact_digits(margin, step.digits), step.digits)), "in" if unit.text.startswith("ft-in") else unit.text)
+        return Shown(
+            plain(margin, min(exact_digits(margin, step.digits), step.digits)),
+            "in" if unit.text.startswith("ft-in") else unit.text,
+        )
 
     def _judged(self, step: Step, statement: Validity | Check, head: Head) -> JudgedRow:
         if isinstance(statement, Validity):
@@ -259,7 +315,7 @@ class StepWriter:
         return JudgedRow(head, statement.relation, self._compared_lines(step), words, verdict, holds, calls)
 
 
-# --- helpers ----------------------------------------------------------------------------------------------------
+# --- helpers ----------------------------------------------------------------------------------------------
 
 
 def _branch_lines(working: Working, conditions: tuple[tuple[texts.Compared, ...], ...]) -> list[Line]:
@@ -278,7 +334,9 @@ def _branch_lines(working: Working, conditions: tuple[tuple[texts.Compared, ...]
 
 def _further_digits(put: texts.Substitution | None) -> tuple[Line, ...]:
     """Says so where a substitution shows more digits than the results that its values come from."""
-    return (Line(("values with further digits, which lead to the printed result",)),) if put and put.more else ()
+    return (
+        (Line(("values with further digits, which lead to the printed result",)),) if put and put.more else ()
+    )
 
 
 def _notes_between(statement: Statement, start: int, end: int | None) -> tuple[Note, ...]:
@@ -289,7 +347,11 @@ def _notes_between(statement: Statement, start: int, end: int | None) -> tuple[N
 def _own_notes(statement: Statement) -> tuple[Note, ...]:
     """The notes of a statement itself; those on the branches of its `cases` stand at the branches."""
     tree = next((t for t in expressions(statement) if isinstance(t, Cases)), None)
-    return statement.notes if tree is None else tuple(n for n in statement.notes if n.span.start < tree.branches[0].span.start)
+    return (
+        statement.notes
+        if tree is None
+        else tuple(n for n in statement.notes if n.span.start < tree.branches[0].span.start)
+    )
 
 
 def ref(step: Step) -> Ref:

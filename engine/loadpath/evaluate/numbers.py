@@ -136,9 +136,9 @@ class Compiler:
             case "-":
                 return lambda e, p: a(e, p) - b(e, p)
             case "*":
-                return lambda e, p: a(e, p) * b(e, p)
+                return _product(a, b)
             case "/":
-                return lambda e, p: a(e, p) / b(e, p)
+                return _quotient(a, b)
         power = math.pow
         return lambda e, p: power(a(e, p), b(e, p))
 
@@ -205,6 +205,27 @@ class Compiler:
             raise ValueError("no branch holds")
 
         return cases
+
+
+def _product(a: Work, b: Work) -> Work:
+    def product(e: Values, p: Values) -> Any:
+        value = a(e, p) * b(e, p)
+        # too large to hold: said here, because a division further on would hide it
+        if value - value:
+            raise OverflowError
+        return value
+
+    return product
+
+
+def _quotient(a: Work, b: Work) -> Work:
+    def quotient(e: Values, p: Values) -> Any:
+        value = a(e, p) / b(e, p)
+        if value - value:
+            raise OverflowError
+        return value
+
+    return quotient
 
 
 def _constant(value: Any) -> Work:

@@ -114,7 +114,7 @@ def _outlines(resolved: Resolved, numbers: Iterator[str], reach: _Reach) -> tupl
 
 
 def fed_by(entry: Entry) -> tuple[str, ...]:
-    """The names that a statement's value or verdict comes from; those that a validity only guards are none of them."""
+    """The names that a statement's value or verdict comes from; not those that a validity only guards."""
     if not isinstance(entry.statement, Validity):
         return entry.uses
     nodes = walk(entry.statement.relation)

@@ -148,7 +148,9 @@ class Observer:
                 value, step = (self._value(a, parameters) for a in node.arguments)
                 times = round(FUNCTIONS[node.function].work(value, step) / step)
                 way = node.function.removeprefix("round_")
-                yield Aside(f"rounded {way} to {times} step{'' if times == 1 else 's'} of", node.arguments[1], "")
+                yield Aside(
+                    f"rounded {way} to {times} step{'' if times == 1 else 's'} of", node.arguments[1], ""
+                )
 
 
 def _typed(entry: Entry) -> str:

@@ -1,6 +1,7 @@
 """Every finding that loadpath can give: its slug, its severity and one line on what it is about.
 
-To add one: add a line here, a page `guide/findings/SLUG.md` with a failing and a mended sheet, and the code that
+To add one: add a line here, a page `guide/findings/SLUG.md` with a failing and a mended sheet, and the
+code that
 gives it. A test keeps the three together.
 """
 
@@ -47,7 +48,10 @@ SLUGS: dict[str, tuple[Severity, str]] = {
     "alike-names": ("error", "two names that print alike"),
     "shadowed-name": ("error", "a parameter that is also a name of the sheet"),
     "unknown-function": ("error", "a call of a function that does not exist"),
-    "wrong-arguments": ("error", "a function called with too few or too many arguments, or not called at all"),
+    "wrong-arguments": (
+        "error",
+        "a function called with too few or too many arguments, or not called at all",
+    ),
     "unknown-citation": ("error", "a citation of a source or assumption that the front matter does not hold"),
     "unknown-choice": ("error", "a word that the choice does not offer, or words and numbers mixed"),
     "duplicate-criterion": ("error", "two criteria of one kind and name"),

@@ -52,7 +52,7 @@ def names(text: str) -> tuple[str, ...]:
 
 def guards(text: str) -> tuple[str, ...]:
     """The names that a validity which could not be read was meant for."""
-    before, word, after = text.rpartition(" for ")
+    _, word, after = text.rpartition(" for ")
     return tuple(canonical(name) for name in words_in(after)) if VALIDITY.match(text) and word else ()
 
 

@@ -1,4 +1,5 @@
-"""HTML: one self-contained page with MathML, fonts inside, readable on screen and printed with its title block."""
+"""HTML: one self-contained page with MathML, fonts inside, readable on screen and printed with its title
+block."""
 
 from __future__ import annotations
 
@@ -24,32 +25,45 @@ CELL = 17
 
 def render(document: Document) -> str:
     """The page of a document."""
-    page = _environment().get_template("document.html.j2").render(
-        d=document, s=document.summary, r=document.registers, t=document.title_block, style=Markup(style()),
-        block_strings=Markup(title_block_strings(document.title_block, document.alerts)),
-        inline=lambda tokens: _inline(tokens, document), prose=lambda tokens: _prose(tokens, document),
-        figure=_figure, kind=lambda block: type(block).__name__, contents=_contents(document.blocks),
-    )  # fmt: skip
+    page = (
+        _environment()
+        .get_template("document.html.j2")
+        .render(
+            d=document,
+            s=document.summary,
+            r=document.registers,
+            t=document.title_block,
+            style=Markup(style()),
+            block_strings=Markup(title_block_strings(document.title_block, document.alerts)),
+            inline=lambda tokens: _inline(tokens, document),
+            prose=lambda tokens: _prose(tokens, document),
+            figure=_figure,
+            kind=lambda block: type(block).__name__,
+            contents=_contents(document.blocks),
+        )
+    )
     return without_turns(str(page))
 
 
 @lru_cache(maxsize=1)
 def _environment() -> Any:
-    return environment({
-        "math": lambda node: Markup(mathml(node)),
-        "flat": lambda node: Markup(mathml(node, flat=True)),
-        "flow": _flow,
-        "are_wide": _are_wide,
-        "name_math": lambda name: _flow(Name(name)),
-        "shown": printed,
-        "symbol": symbol_html,
-        "ref": ref_html,
-        "breaks": breaks,
-        "names_in": names_in,
-    })  # fmt: skip
+    return environment(
+        {
+            "math": lambda node: Markup(mathml(node)),
+            "flat": lambda node: Markup(mathml(node, flat=True)),
+            "flow": _flow,
+            "are_wide": _are_wide,
+            "name_math": lambda name: _flow(Name(name)),
+            "shown": printed,
+            "symbol": symbol_html,
+            "ref": ref_html,
+            "breaks": breaks,
+            "names_in": names_in,
+        }
+    )
 
 
-# --- style and fonts --------------------------------------------------------------------------------------------
+# --- style and fonts --------------------------------------------------------------------------------------
 
 
 @lru_cache(maxsize=1)
@@ -79,14 +93,25 @@ def title_block_strings(block: TitleBlock, alerts: tuple[str, ...]) -> str:
     """The texts of the printed title block as CSS properties, and how many lines its rows need."""
     title = block.title + (f"\n{block.subtitle}" if block.subtitle else "")
     texts = {
-        "owner": block.owner, "title": title, "number": block.number, "revision": block.revision,
-        "created": block.created_by, "reviewed": block.reviewed_by, "approved": block.approved_by, "date": block.date,
+        "owner": block.owner,
+        "title": title,
+        "number": block.number,
+        "revision": block.revision,
+        "created": block.created_by,
+        "reviewed": block.reviewed_by,
+        "approved": block.approved_by,
+        "date": block.date,
         "made": block.made,
-    }  # fmt: skip
+    }
     rows = [
-        max(_lines(block.owner, CELL), _lines(title, 2 * CELL), _lines(block.number, CELL), _lines(block.revision, CELL)),
+        max(
+            _lines(block.owner, CELL),
+            _lines(title, 2 * CELL),
+            _lines(block.number, CELL),
+            _lines(block.revision, CELL),
+        ),
         max(_lines(t, CELL) for t in (block.created_by, block.reviewed_by, block.approved_by, block.date)),
-    ]  # fmt: skip
+    ]
     lines = [f"--tb-{name}:{css_string(text)}" for name, text in texts.items()]
     if alerts:
         lines.append(f"--tb-state:{css_string(alerts[0].rstrip('.'))}")
@@ -109,7 +134,7 @@ def _lines(text: str, width: int) -> int:
     return max(total, 1)
 
 
-# --- pieces of text ---------------------------------------------------------------------------------------------
+# --- pieces of text ---------------------------------------------------------------------------------------
 
 
 def printed(value: Shown | str) -> str:
@@ -145,7 +170,9 @@ def names_in(words: str) -> Markup:
     parts = re.split(r"(?<![\w-])([^\W\d_]\w*?)_([\w,]+)", words)
     out = Markup("")
     for before, base, subscript in zip(parts[::3], [*parts[1::3], ""], [*parts[2::3], ""], strict=True):
-        out += escape(before) + escape(base) + (Markup("<sub>{}</sub>").format(subscript) if subscript else "")
+        out += (
+            escape(before) + escape(base) + (Markup("<sub>{}</sub>").format(subscript) if subscript else "")
+        )
     return out
 
 
@@ -166,7 +193,7 @@ def _contents(blocks: tuple[Block, ...]) -> list[Any]:
     return [b for b in blocks if type(b).__name__ == "SectionHead" and b.number]  # type: ignore[union-attr]
 
 
-# --- prose ------------------------------------------------------------------------------------------------------
+# --- prose ------------------------------------------------------------------------------------------------
 
 
 @lru_cache(maxsize=1)
@@ -195,6 +222,6 @@ def _prose(tokens: Any, document: Document) -> Markup:
 
 def _inline(tokens: Any, document: Document) -> Markup:
     markdown = _renderer()
-    return Markup(markdown.renderer.renderInline(tokens.children or [], markdown.options, {"values": document.values}))
-
-
+    return Markup(
+        markdown.renderer.renderInline(tokens.children or [], markdown.options, {"values": document.values})
+    )

@@ -1,4 +1,5 @@
-"""Markdown as Git hosts show it: `$$` math, an anchor for each step, tables for registers, images in files beside it."""
+"""Markdown as Git hosts show it: `$$` math, an anchor for each step, tables for registers, images in files
+beside it."""
 
 from __future__ import annotations
 
@@ -32,11 +33,20 @@ def render(document: Document, stem: str) -> tuple[str, dict[str, bytes]]:
         written.append(prose(block.tokens, values))
         return Markup("\0")
 
-    text = _environment().get_template("document.md.j2").render(
-        d=document, s=document.summary, r=document.registers, t=document.title_block,
-        kind=lambda block: type(block).__name__, prose=keep, heading=lambda b: _heading(b, document),
-        image=lambda b: Markup(quote(_image_name(b, stem))),
-    )  # fmt: skip
+    text = (
+        _environment()
+        .get_template("document.md.j2")
+        .render(
+            d=document,
+            s=document.summary,
+            r=document.registers,
+            t=document.title_block,
+            kind=lambda block: type(block).__name__,
+            prose=keep,
+            heading=lambda b: _heading(b, document),
+            image=lambda b: Markup(quote(_image_name(b, stem))),
+        )
+    )
     parts = re.sub(r"\n{3,}", "\n\n", re.sub(r" +\n", "\n", str(text))).strip().split("\0")
     return without_turns("".join(chain.from_iterable(zip(parts, [*written, ""], strict=True))) + "\n"), images
 
@@ -57,7 +67,7 @@ def _environment() -> Any:
     return environment(filters, _escape)
 
 
-# --- escaping ---------------------------------------------------------------------------------------------------
+# --- escaping ---------------------------------------------------------------------------------------------
 
 
 def escape(text: str) -> Markup:
@@ -71,7 +81,7 @@ def _escape(value: Any) -> Any:
     return escape(value) if isinstance(value, str) else value
 
 
-# --- pieces -----------------------------------------------------------------------------------------------------
+# --- pieces -----------------------------------------------------------------------------------------------
 
 
 def _shown(value: Shown | str) -> Markup:
@@ -85,7 +95,11 @@ def _inline_math(node: Node) -> Markup:
 
 
 def _ref(ref: Ref) -> Markup:
-    name = (escape(plain_symbol(ref.name)) if ref.is_name else escape(ref.name)) + " " if ref.name else Markup("")
+    name = (
+        (escape(plain_symbol(ref.name)) if ref.is_name else escape(ref.name)) + " "
+        if ref.name
+        else Markup("")
+    )
     return Markup(f"[{name}{ref.number}](#s{ref.number})")
 
 

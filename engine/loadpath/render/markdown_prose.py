@@ -1,6 +1,7 @@
 """Prose as Markdown again, written from its tokens: a host sees what the sheet's own reader saw, and no more.
 
-Text as typed would not do: a host reads HTML where the sheet's reader sees none, and takes other stretches for
+Text as typed would not do: a host reads HTML where the sheet's reader sees none, and takes other
+stretches for
 code.
 """
 

@@ -166,7 +166,9 @@ def lost_in_quotation(content: str, source: Source, first_line: int, trouble: Sp
 
 def _is_missed(statement: Statement) -> bool:
     """False for a line that could not be read and defines nothing: mere text, mostly."""
-    return not isinstance(statement, Faulty) or bool(statement.names or statement.criterion or statement.guards)
+    if not isinstance(statement, Faulty):
+        return True
+    return bool(statement.names or statement.criterion or statement.guards)
 
 
 def _faulty(statement: Statement, source: Source) -> Faulty:

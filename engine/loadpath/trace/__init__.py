@@ -12,4 +12,14 @@ from loadpath.trace.model import (
     criterion_name,
 )
 
-__all__ = ["Called", "Operand", "Step", "Taken", "Trace", "Verdict", "Working", "criterion_kind", "criterion_name"]
+__all__ = [
+    "Called",
+    "Operand",
+    "Step",
+    "Taken",
+    "Trace",
+    "Verdict",
+    "Working",
+    "criterion_kind",
+    "criterion_name",
+]

@@ -18,10 +18,13 @@ EQUAL = 1e-9
 
 
 def digits_of_verdict(step: Step, base: int) -> tuple[int, list[str]]:
-    """Digits with which the printed sides of a criterion stand in the order found; names that are a side by themselves."""
+    """Digits with which the printed sides of a criterion stand in the order found; names that are a side
+    by themselves."""
     statement, verdict = step.statement, step.verdict
     assert isinstance(statement, Criterion) and verdict is not None
-    relations = statement.relation.operands if isinstance(statement.relation, Logic) else (statement.relation,)
+    relations = (
+        statement.relation.operands if isinstance(statement.relation, Logic) else (statement.relation,)
+    )
     needed = base
     names: list[str] = []
     for relation, values, unit in zip(relations, verdict.sides, step.entry.side_units, strict=False):
@@ -33,7 +36,8 @@ def digits_of_verdict(step: Step, base: int) -> tuple[int, list[str]]:
 
 
 def order_digits(values: Sequence[float], base: int) -> int:
-    """The fewest digits, `base` or more, with which printed numbers stand to their neighbours as the numbers do.
+    """The fewest digits, `base` or more, with which printed numbers stand to their neighbours as the
+    numbers do.
 
     Fewer than `base` where so many would part values that count as equal.
     """
@@ -46,7 +50,8 @@ def order_digits(values: Sequence[float], base: int) -> int:
 
 
 def in_order(a: float, b: float, first: str, second: str) -> bool:
-    """True where two plain numbers stand to each other as the values that they print; values that count as equal print alike."""
+    """True where two plain numbers stand to each other as the values that they print; values that count as
+    equal print alike."""
     left, right = read_plain(first), read_plain(second)
     if abs(a - b) <= EQUAL * max(abs(a), abs(b)):
         return left == right

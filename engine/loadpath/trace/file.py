@@ -1,4 +1,5 @@
-"""The trace file: plain records that mirror `trace.schema.json`, made from a trace, written as JSON and read back."""
+"""The trace file: plain records that mirror `trace.schema.json`, made from a trace, written as JSON and
+read back."""
 
 from __future__ import annotations
 
@@ -102,11 +103,13 @@ class TraceFile:
         if not isinstance(raw, dict) or raw.get("schema") != SCHEMA:
             raise ValueError(f"not a trace file of schema {SCHEMA}")
         return TraceFile(
-            raw["schema"], raw["sheet"], raw["engine"],
+            raw["schema"],
+            raw["sheet"],
+            raw["engine"],
             [_record(StepRecord, s) for s in raw["steps"]],
             [_record(CriterionRecord, c) for c in raw["criteria"]],
             [_record(FindingRecord, f) for f in raw["findings"]],
-        )  # fmt: skip
+        )
 
 
 def _record(kind: type[Any], raw: dict[str, Any]) -> Any:
@@ -117,27 +120,44 @@ def record(trace: Trace, version: str) -> TraceFile:
     """The file form of a trace."""
     front = trace.sheet.front
     about = {
-        "file": PurePath(trace.sheet.source.path).name, "title": front.title, "number": front.number, "revision": front.revision,
+        "file": PurePath(trace.sheet.source.path).name,
+        "title": front.title,
+        "number": front.number,
+        "revision": front.revision,
         "digest": trace.digest,
-    }  # fmt: skip
+    }
     return TraceFile(
-        SCHEMA, about, {"version": version},
+        SCHEMA,
+        about,
+        {"version": version},
         [_step(trace, step) for step in trace.steps],
         [_criterion(step) for step in trace.criteria],
         [finding_record(f) for f in trace.findings],
-    )  # fmt: skip
+    )
 
 
 def _step(trace: Trace, step: Step) -> StepRecord:
     shown = texts.display(step)
     taken = step.working.taken if step.working else None
     return StepRecord(
-        step.id, step.number, step.kind, step.line, texts.formula(step), _substitution(trace, step),
+        step.id,
+        step.number,
+        step.kind,
+        step.line,
+        texts.formula(step),
+        _substitution(trace, step),
         quantity(shown.number, shown.unit) if shown and not shown.word else shown.number if shown else "",
-        step.value, step.unit.text, step.si if isinstance(step.si, float) else None,
-        list(step.uses), list(step.used_by), list(step.sources), step.note, step.why,
-        taken.index + 1 if taken else None, verdict_words(step),
-    )  # fmt: skip
+        step.value,
+        step.unit.text,
+        step.si if isinstance(step.si, float) else None,
+        list(step.uses),
+        list(step.used_by),
+        list(step.sources),
+        step.note,
+        step.why,
+        taken.index + 1 if taken else None,
+        verdict_words(step),
+    )
 
 
 def _substitution(trace: Trace, step: Step) -> str:
@@ -145,7 +165,9 @@ def _substitution(trace: Trace, step: Step) -> str:
         compared = texts.compared(trace, step)
         if not compared:
             return ""
-        return text(texts.rejoined(expressions(step.statement)[0], [c.substituted or c.evaluated for c in compared]))
+        return text(
+            texts.rejoined(expressions(step.statement)[0], [c.substituted or c.evaluated for c in compared])
+        )
     put = texts.step_substitution(trace, step)
     return text(put.tree) if put else ""
 
@@ -164,7 +186,11 @@ def _held(statement: Validity | Check, held: bool | None, why: str, name: Callab
         return f"not shown: {why}" if why else "not shown"
     if isinstance(statement, Check):
         return "holds" if held else "does not hold"
-    return "within the range" if held else "outside the range of " + ", ".join(name(n) for n, _ in statement.names)
+    return (
+        "within the range"
+        if held
+        else "outside the range of " + ", ".join(name(n) for n, _ in statement.names)
+    )
 
 
 def _criterion(step: Step) -> CriterionRecord:
@@ -180,13 +206,29 @@ def _criterion(step: Step) -> CriterionRecord:
     relation = text(step.statement.relation) if isinstance(step.statement, Criterion) else ""
     margin = None if verdict.margin is None else verdict.margin / unit.size
     return CriterionRecord(
-        step.number, step.id, criterion_kind(step), relation, of(verdict.demand), of(verdict.limit), unit.text,
-        verdict.utilisation, margin, verdict.satisfied, verdict_words(step), list(verdict.conditional_on),
-    )  # fmt: skip
+        step.number,
+        step.id,
+        criterion_kind(step),
+        relation,
+        of(verdict.demand),
+        of(verdict.limit),
+        unit.text,
+        verdict.utilisation,
+        margin,
+        verdict.satisfied,
+        verdict_words(step),
+        list(verdict.conditional_on),
+    )
 
 
 def finding_record(finding: Finding) -> FindingRecord:
     """The file form of a finding; the same in `audit --format json`."""
     return FindingRecord(
-        finding.slug, finding.severity, finding.line, finding.column, finding.message, finding.help, PurePath(finding.source.path).name
-    )  # fmt: skip
+        finding.slug,
+        finding.severity,
+        finding.line,
+        finding.column,
+        finding.message,
+        finding.help,
+        PurePath(finding.source.path).name,
+    )

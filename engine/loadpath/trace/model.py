@@ -111,7 +111,8 @@ class Verdict:
     """Tolerance of a check, SI of the sides or a fraction of the right side."""
 
     def words(self, why: str, name: Callable[[str], str] = str) -> str:
-        """The verdict as it reads; `why` is the reason where it could not be computed, `name` how names are written."""
+        """The verdict as it reads; `why` is the reason where it could not be computed, `name` how names
+        are written."""
         if self.satisfied is None:
             reason = why or "outside the range of " + ", ".join(name(n) for n in self.outside)
             return f"not shown: {reason}"
@@ -220,13 +221,15 @@ class Trace:
     sections: tuple[tuple[int, str], ...]
     """For each heading of the sheet in order: 0 or its section number, and its plain text."""
     findings: tuple[Finding, ...]
-    """Everything wrong with the sheet and its numbers; `checking.audit` adds what a careful reader would ask."""
+    """Everything wrong with the sheet and its numbers; `checking.audit` adds what a careful reader would
+    ask."""
     digest: str
     """Of the sheet's text and of all that it is issued from: 64 hexadecimal digits."""
     work: Callable[[Node], float] = field(repr=False, compare=False)
     """Works a tree of printed values; what digits are checked with."""
     made: dict[tuple[str, str], Any] = field(default_factory=dict, repr=False, compare=False)
-    """Texts already made (`trace.texts`), by what they are and the step's id: several formats ask for the same ones."""
+    """Texts already made (`trace.texts`), by what they are and the step's id: several formats ask for the
+    same ones."""
 
     @property
     def sheet(self) -> Sheet:
@@ -253,7 +256,9 @@ class Trace:
     @property
     def criteria(self) -> tuple[Step, ...]:
         """The steps that are criteria, those that could not be read included."""
-        return tuple(step for step in self.steps if step.verdict is not None and step.kind not in ("check", "valid"))
+        return tuple(
+            step for step in self.steps if step.verdict is not None and step.kind not in ("check", "valid")
+        )
 
     @property
     def has_errors(self) -> bool:

@@ -1,7 +1,8 @@
-"""Substitutions: the formula with each name replaced by its printed value, so that a reader lands on the result.
+"""Substitutions: the formula with each name replaced by its printed value, so that a reader lands on the
+result.
 
-Where the printed units don't cancel to those of the result (ft against in, rpm, degrees, hp), the factor is printed as
-a term of its own. Powers of ten between SI prefixes are left to the reader.
+Where the printed units don't cancel to those of the result (ft against in, rpm, degrees, hp), the factor is
+printed as a term of its own. Powers of ten between SI prefixes are left to the reader.
 """
 
 from __future__ import annotations
@@ -47,7 +48,9 @@ def shown(operand: Operand, more: int = 0) -> Shown:
     unit = "in" if operand.unit.text.startswith("ft-in") else operand.unit.text
     if operand.typed:
         return Shown(operand.typed, unit)
-    return Shown(plain(operand.unit.from_si(operand.si), operand.digits + (0 if operand.exact else more)), unit)
+    return Shown(
+        plain(operand.unit.from_si(operand.si), operand.digits + (0 if operand.exact else more)), unit
+    )
 
 
 def substitute(tree: Node, scope: Scope, calls: tuple[Called, ...], more: int = 0) -> Node:
@@ -69,7 +72,9 @@ def substitute(tree: Node, scope: Scope, calls: tuple[Called, ...], more: int = 
                 return replace(node, left=put(left), right=put(right))
             case Bracket(inner=inner):
                 return replace(node, inner=put(inner))
-            case As(operand=Name(name=name), unit=unit) if (value := scope(name)) is not None and isinstance(value.si, float):
+            case As(operand=Name(name=name), unit=unit) if (value := scope(name)) is not None and isinstance(
+                value.si, float
+            ):
                 return _number_of(value, parse_unit(unit), more)
             case As(operand=operand):
                 return replace(node, operand=put(operand))
@@ -91,7 +96,7 @@ def _number_of(value: Operand, unit: Unit, more: int) -> Shown:
     return Shown(plain(number, value.digits + more), "")
 
 
-# --- conversion factors -----------------------------------------------------------------------------------------
+# --- conversion factors -----------------------------------------------------------------------------------
 
 
 Atoms = tuple[tuple[str, Fraction], ...]
@@ -137,7 +142,8 @@ def natural_unit(tree: Node) -> Unit:
 
 
 def _scaled(node: Node, want: Scale | None = None) -> tuple[Node, Scale]:
-    """The node with factors inside it, and what its number then counts in; sums turn to `want` where they can."""
+    """The node with factors inside it, and what its number then counts in; sums turn to `want` where they
+    can."""
     match node:
         case Shown(unit=unit, word=False):
             return node, scale_of(parse_unit(unit))
@@ -205,8 +211,13 @@ def _scaled_call(node: Call, want: Scale | None) -> tuple[Node, Scale]:
 
 
 def _alike(scaled: list[tuple[Node, Scale]], want: Scale | None) -> tuple[tuple[Node, ...], Scale]:
-    """Several operands brought to one scale: that of the result where given, else that of the first with a unit."""
-    if want is None or any(s.absolute for _, s in scaled) or not any(_same_dimension(s, want) for _, s in scaled):
+    """Several operands brought to one scale: that of the result where given, else that of the first with a
+    unit."""
+    if (
+        want is None
+        or any(s.absolute for _, s in scaled)
+        or not any(_same_dimension(s, want) for _, s in scaled)
+    ):
         want = next((s for n, s in scaled if s.atoms), scaled[0][1])
     return tuple(_converted(n, s, want) if not _is_zero(n) else n for n, s in scaled), want
 
@@ -227,7 +238,8 @@ def _names(scale: Scale) -> set[str]:
 
 
 def _one_of_each_kind(atoms: Atoms, dimension: Dimension) -> Atoms:
-    """Units for a dimension out of those given: a power of one where that is enough, else one unit for each kind in them."""
+    """Units for a dimension out of those given: a power of one where that is enough, else one unit for
+    each kind in them."""
     atoms = _taken_apart(atoms, lambda name: parse_unit(_MADE_OF[name]).atoms if name in _MADE_OF else None)
     ordered = sorted(atoms, key=lambda atom: -abs(atom[1]))
     of_kind = {_dimension(((name, Fraction(1)),)): name for name, _ in reversed(ordered)}
@@ -281,7 +293,8 @@ def _read_as(node: Node, have: Scale, want: Scale) -> Node:
 
 
 def _is_power_of_ten(ratio: float) -> bool:
-    """True for what SI prefixes alone give, under a square or cube root too; no other unit factor comes near."""
+    """True for what SI prefixes alone give, under a square or cube root too; no other unit factor comes
+    near."""
     sixths = 6 * math.log10(ratio)
     return abs(sixths - round(sixths)) < 1e-8
 
@@ -297,13 +310,20 @@ def _short(factor: float) -> str:
 
 
 _MADE_OF = {
-    "psi": "lbf/in^2", "ksi": "kip/in^2", "psf": "lbf/ft^2", "ksf": "kip/ft^2", "plf": "lbf/ft", "klf": "kip/ft",
-    "pcf": "lbf/ft^3", "kcf": "kip/ft^3",
-}  # fmt: skip
+    "psi": "lbf/in^2",
+    "ksi": "kip/in^2",
+    "psf": "lbf/ft^2",
+    "ksf": "kip/ft^2",
+    "plf": "lbf/ft",
+    "klf": "kip/ft",
+    "pcf": "lbf/ft^3",
+    "kcf": "kip/ft^3",
+}
 
 
 def _best_label(atoms: Atoms) -> Atoms:
-    """The plainest way to write the units of a factor: whole powers, no two multiples of one unit, few units."""
+    """The plainest way to write the units of a factor: whole powers, no two multiples of one unit, few
+    units."""
     atoms = _merge((), tuple(("degF" if name == STEP_OF_DEGF else name, power) for name, power in atoms))
     apart = _taken_apart(atoms, lambda name: parse_unit(_MADE_OF[name]).atoms if name in _MADE_OF else None)
     reduced = _taken_apart(atoms, _base_of_decimal)
@@ -313,13 +333,22 @@ def _best_label(atoms: Atoms) -> Atoms:
 def _awkwardness(atoms: Atoms) -> tuple[bool, bool, Fraction]:
     families = [_family(name) for name, _ in atoms]
     return (
-        any(p.denominator > 1 for _, p in atoms), len(set(families)) < len(families), sum((abs(p) for _, p in atoms), Fraction(0)),
-    )  # fmt: skip
+        any(p.denominator > 1 for _, p in atoms),
+        len(set(families)) < len(families),
+        sum((abs(p) for _, p in atoms), Fraction(0)),
+    )
 
 
 def _family(name: str) -> str:
     """SI units that differ by a prefix only are one family."""
-    return next((base for base in PREFIXED if name.endswith(base) and name != base and name[: -len(base)] in PREFIXES), name)
+    return next(
+        (
+            base
+            for base in PREFIXED
+            if name.endswith(base) and name != base and name[: -len(base)] in PREFIXES
+        ),
+        name,
+    )
 
 
 def _taken_apart(atoms: Atoms, made_of: Callable[[str], Atoms | None]) -> Atoms:

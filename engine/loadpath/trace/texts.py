@@ -1,4 +1,5 @@
-"""What a step says: formula, substitution, result. Made when asked for; every document and the trace file print these.
+"""What a step says: formula, substitution, result. Made when asked for; every document and the trace file
+print these.
 
 All of it is trees and plain numbers: how they look (MathML, LaTeX, text) is up to the printers.
 """
@@ -21,12 +22,13 @@ from loadpath.units.dimension import LENGTH
 from loadpath.units.printing import MOST_DIGITS, feet_and_inches, plain, read_plain, step_of
 
 WORKED_INPUT = 5
-"""Digits to which an input that is worked out (`5/8 in`, `42.3 kg/m * 9.81 m/s^2`) is printed at the least, where it has them."""
+"""Digits to which an input that is worked out (`5/8 in`, `42.3 kg/m * 9.81 m/s^2`) is printed at the
+least, where it has them."""
 MORE = 2
 """Further digits that a substitution may show where the usual ones would not lead to the result."""
 
 
-# --- values -----------------------------------------------------------------------------------------------------
+# --- values -----------------------------------------------------------------------------------------------
 
 
 def operand(step: Step) -> Operand | None:
@@ -41,7 +43,13 @@ def operand(step: Step) -> Operand | None:
         return Operand(step.si, step.unit, _digits_of_result(step))
     typed = typed_number(step.statement.value, step.unit)
     value = step.unit.from_si(step.si)
-    return Operand(step.si, step.unit, min(exact_digits(value, step.digits), max(step.digits, WORKED_INPUT)), typed, exact=True)
+    return Operand(
+        step.si,
+        step.unit,
+        min(exact_digits(value, step.digits), max(step.digits, WORKED_INPUT)),
+        typed,
+        exact=True,
+    )
 
 
 def _digits_of_result(step: Step) -> int:
@@ -61,7 +69,12 @@ def display(step: Step, unit: Unit | None = None) -> Shown | None:
         digits = exact_digits(unit.from_si(own.si), step.digits) if own.exact else own.digits
         own = Operand(own.si, unit, digits)
     if isinstance(own.si, float) and own.unit.text.startswith("ft-in"):
-        return Shown(feet_and_inches(own.unit.from_si(own.si), int(own.unit.text.partition("/")[2])).removesuffix(" in"), "in")
+        return Shown(
+            feet_and_inches(own.unit.from_si(own.si), int(own.unit.text.partition("/")[2])).removesuffix(
+                " in"
+            ),
+            "in",
+        )
     return shown(own)
 
 
@@ -78,7 +91,7 @@ def scope_of(trace: Trace, working: Working | None = None) -> Scope:
     return find
 
 
-# --- formula and substitution -----------------------------------------------------------------------------------
+# --- formula and substitution -----------------------------------------------------------------------------
 
 
 @dataclass(frozen=True, slots=True)
@@ -87,14 +100,17 @@ class Substitution:
 
     tree: Node
     closes: bool
-    """False where even further digits don't lead to the printed result: the step says "from unrounded values"."""
+    """False where even further digits don't lead to the printed result: the step says "from unrounded
+    values"."""
     more: int = 0
     """Further digits that its values show, so that they lead to the printed result."""
 
 
 def holds_names(tree: Node) -> bool:
     """True where a substitution shows something that the formula doesn't."""
-    return any(isinstance(n, Name) and n.name != "pi" for n in walk(tree)) or any(type(n).__name__ == "Call" for n in walk(tree))
+    return any(isinstance(n, Name) and n.name != "pi" for n in walk(tree)) or any(
+        type(n).__name__ == "Call" for n in walk(tree)
+    )
 
 
 def substitution(trace: Trace, working: Working, result: Operand) -> Substitution | None:
@@ -137,7 +153,7 @@ def call_substitution(trace: Trace, called: Called) -> Substitution | None:
     return substitution(trace, called.working, called.value)
 
 
-# --- relations --------------------------------------------------------------------------------------------------
+# --- relations --------------------------------------------------------------------------------------------
 
 
 @dataclass(frozen=True, slots=True)
@@ -148,7 +164,8 @@ class Compared:
     substituted: Relation | None
     """With values in place of names, where a side is more than a name or a number."""
     evaluated: Relation
-    """Each side as one number, with the signs that hold: `8.746 mm > 8.667 mm` where `<=` was asked and does not."""
+    """Each side as one number, with the signs that hold: `8.746 mm > 8.667 mm` where `<=` was asked and
+    does not."""
     per_length: tuple[int, Name, str] | None = None
     """Operand index, length and number: the demand as `L/499.9`, where the limit is `L/n`."""
 
@@ -156,7 +173,12 @@ class Compared:
 def compared(trace: Trace, step: Step) -> tuple[Compared, ...]:
     """The relations of a judged step, in the order typed; () where nothing was computed."""
     statement, verdict = step.statement, step.verdict
-    if verdict is None or not verdict.sides or step.working is None or not isinstance(statement, Criterion | Validity | Check):
+    if (
+        verdict is None
+        or not verdict.sides
+        or step.working is None
+        or not isinstance(statement, Criterion | Validity | Check)
+    ):
         return ()
     key = ("compared", step.id)
     if key not in trace.made:
@@ -171,11 +193,16 @@ def compared(trace: Trace, step: Step) -> tuple[Compared, ...]:
     return kept
 
 
-def _compared(trace: Trace, working: Working, relation: Relation, values: tuple[float | str, ...], unit: Unit, base: int) -> Compared:
+def _compared(
+    trace: Trace, working: Working, relation: Relation, values: tuple[float | str, ...], unit: Unit, base: int
+) -> Compared:
     scope = scope_of(trace, working)
     numbers = [unit.from_si(v) if isinstance(v, float) else v for v in values]
     sides = _sides(relation, numbers, unit, base, scope)
-    evaluated = Relation(sides, tuple(_sign_that_holds(*each) for each in zip(relation.signs, numbers, numbers[1:], strict=False)))
+    evaluated = Relation(
+        sides,
+        tuple(_sign_that_holds(*each) for each in zip(relation.signs, numbers, numbers[1:], strict=False)),
+    )
     substituted = None
     if any(_is_worked(o, unit, scope) for o in relation.operands):
         inner = tuple(
@@ -183,7 +210,10 @@ def _compared(trace: Trace, working: Working, relation: Relation, values: tuple[
             for o, v, s in zip(relation.operands, values, sides, strict=True)
         )
         substituted = Relation(
-            tuple(i if _is_worked(o, unit, scope) else s for o, i, s in zip(relation.operands, inner, sides, strict=True)),
+            tuple(
+                i if _is_worked(o, unit, scope) else s
+                for o, i, s in zip(relation.operands, inner, sides, strict=True)
+            ),
             relation.signs,
         )
     return Compared(relation, substituted, evaluated, _per_length(relation, numbers, unit, scope))
@@ -197,12 +227,19 @@ def _sign_that_holds(asked: Sign, a: float | str, b: float | str) -> Sign:
     if isinstance(a, str) or isinstance(b, str):
         return asked if a == b else _OPPOSITE[asked]
     equal = abs(a - b) <= EQUAL * max(abs(a), abs(b))
-    held = {"<=": a < b or equal, "<": a < b and not equal, ">=": a > b or equal, ">": a > b and not equal, "=": equal}
+    held = {
+        "<=": a < b or equal,
+        "<": a < b and not equal,
+        ">=": a > b or equal,
+        ">": a > b and not equal,
+        "=": equal,
+    }
     return asked if held[asked] else _OPPOSITE[asked]
 
 
 def _is_worked(node: Node, unit: Unit, scope: Scope) -> bool:
-    """True for a side that is more than one printed number: it is worked out, or stands in a unit of another size."""
+    """True for a side that is more than one printed number: it is worked out, or stands in a unit of
+    another size."""
     if isinstance(node, Name):
         own = scope(node.name)
         return own is not None and not isinstance(own.si, str) and own.unit.size != unit.size
@@ -210,7 +247,8 @@ def _is_worked(node: Node, unit: Unit, scope: Scope) -> bool:
 
 
 def _worked_side(trace: Trace, working: Working, node: Node, unit: Unit, side: Shown) -> Node:
-    """One side with values in place of names, with as many digits as it takes to land on its printed number."""
+    """One side with values in place of names, with as many digits as it takes to land on its printed
+    number."""
     scope = scope_of(trace, working)
     trees = [substitute(node, scope, working.calls, more) for more in range(MORE + 1)]
     step = step_of(side.number, len(side.number))
@@ -218,13 +256,20 @@ def _worked_side(trace: Trace, working: Working, node: Node, unit: Unit, side: S
     return with_factors(next(landed, trees[0]), unit)
 
 
-def _sides(relation: Relation, numbers: list[float | str], unit: Unit, base: int, scope: Scope) -> tuple[Shown, ...]:
+def _sides(
+    relation: Relation, numbers: list[float | str], unit: Unit, base: int, scope: Scope
+) -> tuple[Shown, ...]:
     """Each side as one number, to as many digits as it takes to stand in the order found."""
     values = [n for n in numbers if isinstance(n, float)]
     fewest = order_digits(values, base)
     for digits in range(fewest, MOST_DIGITS + 1):
-        sides = tuple(_side(o, n, unit, digits, scope) for o, n in zip(relation.operands, numbers, strict=True))
-        if all(in_order(a, b, s.number, t.number) for (a, b), (s, t) in zip(pairwise(values), pairwise(sides), strict=False)):
+        sides = tuple(
+            _side(o, n, unit, digits, scope) for o, n in zip(relation.operands, numbers, strict=True)
+        )
+        if all(
+            in_order(a, b, s.number, t.number)
+            for (a, b), (s, t) in zip(pairwise(values), pairwise(sides), strict=False)
+        ):
             return sides
     return tuple(_rounded(value, unit, fewest) for value in values)
 
@@ -237,7 +282,12 @@ def _side(node: Node, number: float | str, unit: Unit, digits: int, scope: Scope
     """One side: as typed where it is typed, else to so many digits."""
     if isinstance(number, str):
         return Shown(number, "", word=True)
-    if isinstance(node, Name) and (own := scope(node.name)) is not None and own.exact and own.unit.text == unit.text:
+    if (
+        isinstance(node, Name)
+        and (own := scope(node.name)) is not None
+        and own.exact
+        and own.unit.text == unit.text
+    ):
         return shown(own)
     if typed := typed_number(node, unit):
         return Shown(typed, unit.text)
@@ -248,7 +298,9 @@ def _side(node: Node, number: float | str, unit: Unit, digits: int, scope: Scope
     return _rounded(number, unit, digits)
 
 
-def _per_length(relation: Relation, numbers: list[float | str], unit: Unit, scope: Scope) -> tuple[int, Name, str] | None:
+def _per_length(
+    relation: Relation, numbers: list[float | str], unit: Unit, scope: Scope
+) -> tuple[int, Name, str] | None:
     """A length against L/n is printed as L/n too."""
     if len(relation.operands) != 2:
         return None
@@ -259,10 +311,18 @@ def _per_length(relation: Relation, numbers: list[float | str], unit: Unit, scop
             of = scope(length.name)
         case _:
             return None
-    if of is None or not isinstance(of.si, float) or not isinstance(demand, float) or demand == 0 or unit.dimension != LENGTH:
+    if (
+        of is None
+        or not isinstance(of.si, float)
+        or not isinstance(demand, float)
+        or demand == 0
+        or unit.dimension != LENGTH
+    ):
         return None
     ratio, asked = of.si / unit.to_si(abs(demand)), read_plain(typed)
-    digits = next((d for d in range(4, MOST_DIGITS) if in_order(ratio, asked, plain(ratio, d), typed)), MOST_DIGITS)
+    digits = next(
+        (d for d in range(4, MOST_DIGITS) if in_order(ratio, asked, plain(ratio, d), typed)), MOST_DIGITS
+    )
     return 1 - limit_at, length, plain(ratio, digits)
 
 
@@ -303,7 +363,11 @@ def substitute_exact(node: Node, scope: Scope, calls: tuple[Called, ...]) -> Nod
 
 
 def _exact(own: Operand | None) -> Operand | None:
-    return own if own is None or isinstance(own.si, str) else Operand(own.si, own.unit, own.digits, repr(own.unit.from_si(own.si)))
+    return (
+        own
+        if own is None or isinstance(own.si, str)
+        else Operand(own.si, own.unit, own.digits, repr(own.unit.from_si(own.si)))
+    )
 
 
 def _exact_call(called: Called) -> Called:
@@ -321,7 +385,7 @@ def _unit_of(relation: Relation, scope: Scope, calls: tuple[Called, ...]) -> Uni
     return ONE
 
 
-# --- lines of text ----------------------------------------------------------------------------------------------
+# --- lines of text ----------------------------------------------------------------------------------------
 
 
 def formula(step: Step) -> str:

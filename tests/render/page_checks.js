@@ -1,0 +1,105 @@
+// What a reader would complain of, found in a page as the browser laid it out. Each function gives a list of complaints.
+
+const describe = node => {
+  const element = node.nodeType === Node.TEXT_NODE ? node.parentElement : node
+  const step = element.closest('[id]')
+  return `${step ? '#' + step.id + ' ' : ''}<${element.tagName.toLowerCase()} ${element.getAttribute('class') ?? ''}> ` +
+    JSON.stringify(node.textContent.trim().slice(0, 40))
+}
+
+const isSeen = element => {
+  const style = getComputedStyle(element)
+  return style.visibility !== 'hidden' && style.display !== 'none' && !element.closest('.hidden, .skip, script, style, title')
+}
+
+// The boxes of every text, one a line, with the formula that it stands in.
+const texts = () => {
+  const found = []
+  const walker = document.createTreeWalker(document.body, NodeFilter.SHOW_TEXT)
+  for (let node = walker.nextNode(); node; node = walker.nextNode()) {
+    if (!node.textContent.trim() || !isSeen(node.parentElement)) continue
+    const range = document.createRange()
+    range.selectNodeContents(node)
+    for (const box of range.getClientRects())
+      if (box.width > 0.5 && box.height > 0.5) found.push({node, box, formula: node.parentElement.closest('math')})
+  }
+  return found
+}
+
+const scrolls = (element, axis) => {
+  for (let e = element; e && e !== document.documentElement; e = e.parentElement)
+    if (['auto', 'scroll'].includes(getComputedStyle(e)[`overflow-${axis}`])) return true
+  return false
+}
+
+// Text that reaches beyond the page, where nothing scrolls it into view; and a page wider than its window.
+const beyondThePage = () => {
+  const width = document.documentElement.clientWidth
+  const out = []
+  if (document.documentElement.scrollWidth > width)
+    out.push(`the page is ${document.documentElement.scrollWidth} px wide in a window of ${width} px`)
+  for (const {node, box} of texts())
+    if ((box.left < -0.5 || box.right > width + 0.5) && !scrolls(node.parentElement, 'x'))
+      out.push(`${Math.round(box.left)} to ${Math.round(box.right)} px: ${describe(node)}`)
+  return out
+}
+
+// Text that a box cuts off: sideways where it doesn't scroll, upwards and downwards anywhere.
+const cutOff = () => {
+  const out = []
+  for (const {node, box} of texts()) {
+    const ink = {top: box.top + 0.25 * box.height, bottom: box.bottom - 0.25 * box.height}
+    for (let e = node.parentElement; e && e !== document.body; e = e.parentElement) {
+      const style = getComputedStyle(e), frame = e.getBoundingClientRect()
+      if (style.overflowY === 'hidden' && (ink.top < frame.top - 0.5 || ink.bottom > frame.bottom + 0.5))
+        out.push(`cut at the top or bottom: ${describe(node)}`)
+      if (style.overflowX === 'hidden' && (box.left < frame.left - 0.5 || box.right > frame.right + 0.5))
+        out.push(`cut at the side: ${describe(node)}`)
+    }
+  }
+  return out
+}
+
+// Text that lies over other text. Boxes are higher than letters, so that a third of each is left aside; within one
+// formula the browser's own layout is trusted.
+const overlaps = () => {
+  const all = texts().filter(t => !scrolls(t.node.parentElement, 'x') || t.box.right <= innerWidth)
+  all.sort((a, b) => a.box.top - b.box.top)
+  const out = []
+  for (let i = 0; i < all.length; i++) {
+    const a = all[i]
+    for (let j = i + 1; j < all.length && all[j].box.top < a.box.bottom; j++) {
+      const b = all[j]
+      if (a.node === b.node || (a.formula && a.formula === b.formula)) continue
+      const wide = Math.min(a.box.right, b.box.right) - Math.max(a.box.left, b.box.left)
+      const inset = t => 0.3 * t.box.height
+      const high = Math.min(a.box.bottom - inset(a), b.box.bottom - inset(b)) - Math.max(a.box.top + inset(a), b.box.top + inset(b))
+      if (wide > 1.2 && high > 1) out.push(`${describe(a.node)} over ${describe(b.node)}`)
+    }
+  }
+  return out
+}
+
+// Contrast after WCAG 2.2, 1.4.3: 4.5 to 1.
+const rgb = text => text.match(/[\d.]+/g).map(Number)
+const luminance = colour => {
+  const [r, g, b] = colour.slice(0, 3).map(v => (v /= 255) <= 0.04045 ? v / 12.92 : ((v + 0.055) / 1.055) ** 2.4)
+  return 0.2126 * r + 0.7152 * g + 0.0722 * b
+}
+const behind = element => {
+  for (let e = element; e; e = e.parentElement) {
+    const colour = rgb(getComputedStyle(e).backgroundColor)
+    if (colour.length < 4 || colour[3] > 0) return colour
+  }
+  return rgb(getComputedStyle(document.documentElement).colorScheme.includes('dark') && matchMedia('(prefers-color-scheme:dark)').matches ? 'rgb(0,0,0)' : 'rgb(255,255,255)')
+}
+const lowContrast = () => {
+  const out = new Set()
+  for (const {node} of texts()) {
+    const element = node.parentElement
+    const [a, b] = [luminance(rgb(getComputedStyle(element).color)), luminance(behind(element))].sort((x, y) => y - x)
+    const ratio = (a + 0.05) / (b + 0.05)
+    if (ratio < 4.5) out.add(`${ratio.toFixed(2)}: ${describe(node)}`)
+  }
+  return [...out]
+}
