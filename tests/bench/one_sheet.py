@@ -1,8 +1,8 @@
 """What one sheet costs, as ratios in one run: `python tests/bench/one_sheet.py` prints a small table.
 
-Every comparison is with a plain script that does the same arithmetic, run in the same process (or, for the cold
-start, as a process of its own in turns with the other). Medians of several rounds; absolute times depend on the
-machine.
+Every comparison is with a plain script that does the same arithmetic, run in the same process (or, for
+the cold start, as a process of its own in turns with the other). Medians of several rounds; absolute
+times depend on the machine.
 """
 
 from __future__ import annotations

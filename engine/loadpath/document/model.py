@@ -1,7 +1,7 @@
 """The document: what a reader sees, in reading order, before any format.
 
-Renderers read only this and never compute. Formulas stay trees (`formula.tree`); values are `Shown` nodes with plain
-numbers. How they look is up to the printers.
+Renderers read only this and never compute. Formulas stay trees (`formula.tree`); values are `Shown` nodes with
+plain numbers. How they look is up to the printers.
 """
 
 from __future__ import annotations
