@@ -50,23 +50,28 @@ Files = dict[str, bytes]
 """Name of each file that a document consists of, and its bytes."""
 
 
+def _bytes(text: str) -> bytes:
+    """UTF-8; half of a surrogate pair, which a text from Python may hold, becomes a question mark."""
+    return text.encode("utf-8", "replace")
+
+
 def _html(_: Trace, document: Document, stem: str) -> Files:
     from loadpath.render.html import render
 
-    return {f"{stem}.html": render(document).encode()}
+    return {f"{stem}.html": _bytes(render(document))}
 
 
 def _markdown(_: Trace, document: Document, stem: str) -> Files:
     from loadpath.render.markdown import render
 
     text, images = render(document, stem)
-    return {f"{stem}.md": text.encode()} | images
+    return {f"{stem}.md": _bytes(text)} | images
 
 
 def _json(trace: Trace, _: Document, stem: str) -> Files:
     from loadpath.trace.file import record
 
-    return {f"{stem}.trace.json": record(trace, __version__).to_json().encode()}
+    return {f"{stem}.trace.json": _bytes(record(trace, __version__).to_json())}
 
 
 RENDERERS: dict[str, Callable[[Trace, Document, str], Files]] = {

@@ -243,6 +243,13 @@ def hostile(share: float = 1) -> dict[str, str]:
         "factors of odd powers": block(
             "a = 2 in -- x", "b = 3 ft -- x", "c [mm^0.35] = a^0.35", "d = a^0.3*b^0.7", "e = a^7*b^-7"
         ),
+        "powers that cancel": block(
+            "a = 2 in -- x", "b = 3 mm -- x", "c = " + "*".join(["a^20/b^20"] * 6) + " + 1"
+        ),
+        "powers of small units": block("a = 60 microstrain -- x", "b = a^70", "c [ppm] = a^300 + a"),
+        "fractions over nothing": block(
+            "a = 1/0 in -- x", "b = 2 1/0 in", "c = 12 ft 1/0 in", "d [ft-in 1/16] = 1/0 in"
+        ),
         "calls that double": block(
             "f0(x [1]) = x + 1",
             *[f"f{n}(x [1]) = f{n - 1}(x) + f{n - 1}(x)" for n in range(1, 60)],

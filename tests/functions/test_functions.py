@@ -12,7 +12,7 @@ from fractions import Fraction
 import mpmath
 import pytest
 import scipy.special
-from hypothesis import assume, given
+from hypothesis import assume, given, settings
 from hypothesis import strategies as st
 
 import loadpath
@@ -21,6 +21,8 @@ from loadpath.functions import FUNCTIONS, LATER, NAMES
 from loadpath.trace import Trace
 from loadpath.units import Dimension
 from loadpath.units import dimension as d
+
+patient = settings(deadline=None)
 
 CONTRACT = {
     "sqrt", "cbrt", "abs", "exp", "ln", "log10", "sin", "cos", "tan", "sec", "asin", "acos", "atan",
@@ -100,6 +102,7 @@ def test_every_function_of_one_number_is_held_against_mpmath() -> None:
     assert set(MP) == {f.name for f in FUNCTIONS.values() if f.most == 1}
 
 
+@patient
 @given(st.data())
 @pytest.mark.parametrize("name", MP)
 def test_against_mpmath(name: str, data: st.DataObject) -> None:
@@ -128,6 +131,7 @@ def test_against_scipy(name: str, x: float) -> None:
     assert FUNCTIONS[name].work(x) == pytest.approx(wanted, rel=1e-12)
 
 
+@patient
 @given(st.floats(-1e6, 1e6), st.floats(-1e6, 1e6))
 def test_atan2_against_mpmath(y: float, x: float) -> None:
     assume(x != 0 or y != 0)
@@ -156,6 +160,7 @@ def test_small_angles_keep_their_sine(x: float) -> None:
     assert FUNCTIONS["tan"].work(x) == pytest.approx(x, rel=0.1)
 
 
+@patient
 @given(st.lists(st.floats(-1e9, 1e9), min_size=2, max_size=6))
 def test_min_and_max_give_one_of_their_arguments(values: list[float]) -> None:
     assert FUNCTIONS["min"].work(*values) == sorted(values)[0]
@@ -223,6 +228,7 @@ def test_rounding_to_steps(call: str, value: str) -> None:
     assert trace["x"].si == pytest.approx(trace["said"].si, rel=1e-14, abs=1e-18)
 
 
+@patient
 @given(st.integers(-10_000, 10_000), st.sampled_from([0.1, 0.05, 0.25, 1 / 3, 0.7, 1.1, 2.54e-3, 5.0]))
 def test_a_whole_number_of_steps_stays_however_it_was_reached(count: int, step: float) -> None:
     for value in (count * step, sum([step] * (count % 50)), count / (1 / step)):
@@ -230,6 +236,7 @@ def test_a_whole_number_of_steps_stays_however_it_was_reached(count: int, step: 
             assert FUNCTIONS[name].work(value, step) == pytest.approx(value, rel=1e-12, abs=1e-12)
 
 
+@patient
 @given(st.floats(-1e6, 1e6), st.sampled_from([0.1, 0.25, 0.7, 1.1, 5.0]))
 def test_up_is_not_below_and_down_not_above_and_both_within_one_step(value: float, step: float) -> None:
     up, down = FUNCTIONS["round_up"].work(value, step), FUNCTIONS["round_down"].work(value, step)

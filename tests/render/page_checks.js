@@ -7,14 +7,19 @@ const describe = node => {
     JSON.stringify(node.textContent.trim().slice(0, 40))
 }
 
+const styles = new Map()
+const styleOf = element => styles.get(element) ?? styles.set(element, getComputedStyle(element)).get(element)
+
 const isSeen = element => {
-  const style = getComputedStyle(element)
+  const style = styleOf(element)
   return style.visibility !== 'hidden' && style.display !== 'none' && !element.closest('.hidden, .skip, script, style, title')
 }
 
 // The boxes of every text, one a line, with the formula that it stands in.
+let measured = null
 const texts = () => {
-  const found = []
+  if (measured) return measured
+  const found = measured = []
   const walker = document.createTreeWalker(document.body, NodeFilter.SHOW_TEXT)
   for (let node = walker.nextNode(); node; node = walker.nextNode()) {
     if (!node.textContent.trim() || !isSeen(node.parentElement)) continue
@@ -28,7 +33,7 @@ const texts = () => {
 
 const scrolls = (element, axis) => {
   for (let e = element; e && e !== document.documentElement; e = e.parentElement)
-    if (['auto', 'scroll'].includes(getComputedStyle(e)[`overflow-${axis}`])) return true
+    if (['auto', 'scroll'].includes(styleOf(e)[`overflow-${axis}`])) return true
   return false
 }
 
@@ -50,7 +55,9 @@ const cutOff = () => {
   for (const {node, box} of texts()) {
     const ink = {top: box.top + 0.25 * box.height, bottom: box.bottom - 0.25 * box.height}
     for (let e = node.parentElement; e && e !== document.body; e = e.parentElement) {
-      const style = getComputedStyle(e), frame = e.getBoundingClientRect()
+      const style = styleOf(e)
+      if (style.overflowX === 'visible' && style.overflowY === 'visible') continue
+      const frame = e.getBoundingClientRect()
       if (style.overflowY === 'hidden' && (ink.top < frame.top - 0.5 || ink.bottom > frame.bottom + 0.5))
         out.push(`cut at the top or bottom: ${describe(node)}`)
       if (style.overflowX === 'hidden' && (box.left < frame.left - 0.5 || box.right > frame.right + 0.5))

@@ -95,9 +95,9 @@ def test_too_many_lines_are_over_the_limit() -> None:
     ids=lambda body: body[:8].strip(),
 )
 def test_what_would_hang_ends_soon(body: str) -> None:
-    before = time.perf_counter()
+    before = time.process_time()
     read(FRONT + body)
-    assert time.perf_counter() - before < 2
+    assert time.process_time() - before < 2
 
 
 def test_the_time_grows_with_the_length() -> None:

@@ -114,8 +114,8 @@ def test_a_mistake_is_placed_in_the_whole_source() -> None:
     ids=["aliases that explode", "brackets", "braces", "dashes", "question marks", "many items", "long"],
 )
 def test_what_would_hang_ends_in_a_finding_soon(text: str) -> None:
-    before = time.perf_counter()
+    before = time.process_time()
     _, found = read(text)
-    assert time.perf_counter() - before < 2
+    assert time.process_time() - before < 2
     assert {line.split()[1] for line in found} <= {"yaml-alias", "over-limit"}
     assert found

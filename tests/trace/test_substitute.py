@@ -54,7 +54,7 @@ US = """
         # feet against inches
         ("x = b*L", "3 in * 20 ft * 12 in/ft", ("720.0", "in^2")),
         ("x [ft^2] = b*L", "3 in * 20 ft / (12 in/ft)", ("5.000", "ft^2")),
-        ("x = w*L^2/8", "2 plf * (20 ft)^2 / 8", ("0.1000", "kip*ft")),
+        ("x = w*L^2/8", "2 plf * (20 ft)^2 / 8 / (1000 lbf/kip)", ("0.1000", "kip*ft")),
         ("x [lbf*in] = w*L^2/8", "2 plf * (20 ft)^2 / 8 * 12 in/ft", ("1200", "lbf*in")),
         ("x = L/b", "20 ft / 3 in * 12 in/ft", ("80.00", "")),
         # the unit of the result alone differs
@@ -74,7 +74,7 @@ US = """
             ("10.00", "lbf"),
         ),
         # angles: a calculator has a key for degrees, and none for what comes out of atan
-        ("x = P*sin(al)", "100 lbf * sin(30 deg)", ("0.05000", "kip")),
+        ("x = P*sin(al)", "100 lbf * sin(30 deg) / (1000 lbf/kip)", ("0.05000", "kip")),
         ("x [deg] = atan(b/L)", "atan(3 in / 20 ft / (12 in/ft)) * 57.2958 deg", ("0.7162", "deg")),
         (
             "x [deg] = al + atan(b/L)",

@@ -6,17 +6,20 @@ import itertools
 from fractions import Fraction as F
 
 import pytest
-from hypothesis import given
+from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from loadpath.units import PLAIN, say
 from loadpath.units import dimension as d
 from loadpath.units.dimension import Dimension
 
+patient = settings(deadline=None)
+
 exponents = st.fractions(-6, 6, max_denominator=12)
 dimensions = st.builds(Dimension, exponents, exponents, exponents, exponents)
 
 
+@patient
 @given(dimensions, dimensions)
 def test_products_and_quotients_undo_each_other(a: Dimension, b: Dimension) -> None:
     assert a.times(b).over(b) == a
@@ -24,6 +27,7 @@ def test_products_and_quotients_undo_each_other(a: Dimension, b: Dimension) -> N
     assert a.times(b) == b.times(a)
 
 
+@patient
 @given(dimensions, st.fractions(-5, 5, max_denominator=9).filter(bool))
 def test_a_root_undoes_its_power(a: Dimension, power: F) -> None:
     assert a.power(power).power(1 / power) == a

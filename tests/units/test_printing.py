@@ -13,7 +13,7 @@ from decimal import Decimal
 from fractions import Fraction as F
 
 import pytest
-from hypothesis import given
+from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from loadpath.units import parse_unit
@@ -30,6 +30,8 @@ from loadpath.units.printing import (
     typeset,
     unit_symbol,
 )
+
+patient = settings(deadline=None)
 
 # --- plain numbers ------------------------------------------------------------------------------------------
 
@@ -66,6 +68,7 @@ finite = st.floats(1e-290, 1e290) | st.floats(-1e290, -1e-290) | st.just(0.0)
 digits_ = st.integers(1, 15)
 
 
+@patient
 @given(finite, digits_)
 def test_the_printed_value_is_within_half_a_unit_of_the_last_digit(value: float, digits: int) -> None:
     text = plain(value, digits)
@@ -77,29 +80,34 @@ def test_the_printed_value_is_within_half_a_unit_of_the_last_digit(value: float,
     assert read_plain(text) == float(printed)
 
 
+@patient
 @given(finite, digits_)
 def test_the_printed_value_reads_back(value: float, digits: int) -> None:
     text = plain(value, digits)
     assert abs(read_plain(text) - value) <= 0.5 * step_of(text, digits) * (1 + 1e-9) or value == 0
 
 
+@patient
 @given(finite)
 def test_seventeen_digits_are_the_value(value: float) -> None:
     assert read_plain(plain(value, 17)) == value
 
 
+@patient
 @given(finite, finite, digits_)
 def test_order_is_never_turned(a: float, b: float, digits: int) -> None:
     low, high = sorted((a, b))
     assert read_plain(plain(low, digits)) <= read_plain(plain(high, digits))
 
 
+@patient
 @given(st.floats(1e-200, 1e200), st.integers(2, 15))
 def test_order_is_kept_beyond_the_last_digit(value: float, digits: int) -> None:
     larger = value * (1 + 1.1 * 10 ** (1 - digits))
     assert read_plain(plain(value, digits)) < read_plain(plain(larger, digits))
 
 
+@patient
 @given(finite.filter(bool), digits_)
 def test_as_many_digits_as_asked_and_powers_by_threes(value: float, digits: int) -> None:
     mantissa, _, exponent = plain(value, digits).partition("e")
@@ -117,6 +125,7 @@ def test_as_many_digits_as_asked_and_powers_by_threes(value: float, digits: int)
         assert Decimal("0.001") <= number <= 99_999
 
 
+@patient
 @given(finite, digits_)
 def test_a_negative_value_prints_as_the_positive_one(value: float, digits: int) -> None:
     assert plain(-abs(value), digits).removeprefix("-") == plain(abs(value), digits)
@@ -190,6 +199,7 @@ def test_typeset(number: str, printed: str) -> None:
     assert typeset(number) == spaced(printed)
 
 
+@patient
 @given(finite, digits_)
 def test_what_is_typeset_reads_back(value: float, digits: int) -> None:
     text = typeset(plain(value, digits))
@@ -240,6 +250,7 @@ def test_quantity(number: str, unit: str, printed: str) -> None:
 exponents = st.fractions(-6, 6, max_denominator=12)
 
 
+@patient
 @given(st.builds(Dimension, exponents, exponents, exponents, exponents))
 def test_a_product_of_units_reads_back(of: Dimension) -> None:
     for powers in (by_force(of, ("kN", "mm", "s", "K")), by_mass(of, ("lb", "ft", "s", "degF"))):
@@ -262,6 +273,7 @@ def test_feet_and_inches(inches: float, parts: int, printed: str) -> None:
     assert feet_and_inches(inches, parts) == printed
 
 
+@patient
 @given(st.floats(-1e6, 1e6), st.sampled_from([2, 4, 8, 16, 32, 64]))
 def test_feet_and_inches_read_back_to_the_nearest_part(inches: float, parts: int) -> None:
     text = feet_and_inches(inches, parts)

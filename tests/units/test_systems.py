@@ -6,13 +6,15 @@ import itertools
 from fractions import Fraction as F
 
 import pytest
-from hypothesis import given
+from hypothesis import given, settings
 from hypothesis import strategies as st
 
 import loadpath
 from loadpath.units import KINDS, SYSTEMS, UnitSystem, parse_unit
 from loadpath.units import dimension as d
 from loadpath.units.dimension import MOST_POWER, Dimension
+
+patient = settings(deadline=None)
 
 TOUGHNESS = d.STRESS.times(d.LENGTH.power(F(1, 2)))
 
@@ -103,6 +105,7 @@ exponents = st.fractions(-4, 4, max_denominator=6)
 within = st.builds(Dimension, exponents, exponents, exponents, exponents)
 
 
+@patient
 @given(within, st.sampled_from(sorted(SYSTEMS)))
 def test_the_unit_has_the_dimension_it_is_for_and_reads_back(of: Dimension, system: str) -> None:
     unit = UnitSystem(system).unit_for(of)
@@ -160,6 +163,7 @@ def test_a_scale_of_temperature_goes_with_its_steps(scale: str, step: str) -> No
     assert system.unit_for(d.TEMPERATURE).text == step
 
 
+@patient
 @given(within, st.lists(st.sampled_from(sorted(OWN)), unique=True), st.sampled_from(sorted(SYSTEMS)))
 def test_own_choices_never_break_a_product(of: Dimension, kinds: list[str], name: str) -> None:
     system = UnitSystem(name, tuple((kind, OWN[kind][0]) for kind in kinds))

@@ -12,12 +12,14 @@ from fractions import Fraction as F
 
 import pint
 import pytest
-from hypothesis import given
+from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from loadpath.units import BadUnit, is_unit, parse_unit
 from loadpath.units.dimension import AREA, PLAIN, STRESS, TEMPERATURE, Dimension, dimension
 from loadpath.units.unit import MOST_POWER, PREFIXED, PREFIXES, STEP_OF_DEGF, known_names
+
+patient = settings(deadline=None)
 
 # --- factors ------------------------------------------------------------------------------------------------
 
@@ -381,6 +383,7 @@ ordinary = st.floats(1e-30, 1e30) | st.floats(-1e30, -1e-30)
 ULP = 2.3e-16
 
 
+@patient
 @given(st.sampled_from(NAMES), ordinary)
 def test_to_si_is_the_exact_product_rounded(name: str, value: float) -> None:
     unit = parse_unit(name)
@@ -388,6 +391,7 @@ def test_to_si_is_the_exact_product_rounded(name: str, value: float) -> None:
     assert abs(F(unit.to_si(value)) - exact) <= 4 * F(ULP) * abs(exact)
 
 
+@patient
 @given(st.sampled_from(NAMES), ordinary)
 def test_there_and_back(name: str, value: float) -> None:
     unit = parse_unit(name)
@@ -406,6 +410,7 @@ factors = st.sampled_from(sorted(known_names() - TEMPERATURES - {"%"}))
 atoms = st.tuples(factors, st.integers(-4, 4).filter(bool))
 
 
+@patient
 @given(st.lists(atoms, min_size=1, max_size=4), st.lists(atoms, max_size=3))
 def test_products_multiply(above: list[tuple[str, int]], below: list[tuple[str, int]]) -> None:
     top = "*".join(f"{name}^{power}" for name, power in above)
@@ -418,6 +423,7 @@ def test_products_multiply(above: list[tuple[str, int]], below: list[tuple[str, 
     assert (unit.factor, unit.dimension) == (factor, of)
 
 
+@patient
 @given(st.text("kNm^*/()12.-%s °", max_size=30) | st.text(max_size=12))
 def test_any_text_is_a_unit_or_a_reason(text: str) -> None:
     try:

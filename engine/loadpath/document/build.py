@@ -42,6 +42,8 @@ from loadpath.trace.digits import ratio_text
 from loadpath.trace.file import verdict_words
 
 KINDS = ("strength", "stiffness", "stability")
+MOST_FINDINGS = 200
+"""Findings that a document lists; of more it says how many there are."""
 NO_REVIEW = "no review on record"
 
 
@@ -55,6 +57,7 @@ class _Builder:
         self.trace, self.version = trace, version
         self.front = trace.sheet.front
         self.writer = StepWriter(trace)
+        self.listed = trace.findings[:MOST_FINDINGS]
         self.judged = {s.number: s for s in trace.criteria}
         self.placed: dict[int, str] = {}
         """Anchor of the place where each finding stands, by its index."""
@@ -64,7 +67,7 @@ class _Builder:
         blocks = self._blocks()
         front = self.front
         loose = tuple(
-            f for i, f in enumerate(self.trace.findings) if i not in self.placed and f.severity != "note"
+            f for i, f in enumerate(self.listed) if i not in self.placed and f.severity != "note"
         )
         return Document(
             front.language or "en",
@@ -209,7 +212,7 @@ class _Builder:
         by_block: dict[int, tuple[Finding, ...]] = defaultdict(tuple)
         steps = [s.statement.span for s in self.trace.steps]
         blocks = [b.span for b in self.trace.sheet.blocks]
-        for number, finding in enumerate(self.trace.findings):
+        for number, finding in enumerate(self.listed):
             if finding.span is None or finding.source is not source or finding.severity == "note":
                 continue
             owner = _owner(steps, finding.span.start)
@@ -233,7 +236,7 @@ class _Builder:
                 cited[key].append(Ref(step.number))
         findings = tuple(
             (f, self.placed.get(i, f"f{i + 1}" if f.severity != "note" else ""))
-            for i, f in enumerate(self.trace.findings)
+            for i, f in enumerate(self.listed)
         )
         return Registers(
             tuple(self._input_entry(b) for b in blocks if isinstance(b, InputRow)),
@@ -247,6 +250,7 @@ class _Builder:
             ),
             tuple(self._criterion_entry(b) for b in blocks if isinstance(b, CriterionBox)),
             findings,
+            len(self.trace.findings) - len(self.listed),
             tuple(RevisionEntry(r.letter, r.date, r.by, r.change) for r in front.revisions),
             front.codes,
             front.drawings,

@@ -1,7 +1,7 @@
 """The document: what a reader sees, in reading order, before any format.
 
-Renderers read only this and never compute. Formulas stay trees (`formula.tree`); values are `Shown` nodes with
-plain numbers. How they look is up to the printers.
+Renderers read only this and never compute. Formulas stay trees (`formula.tree`); values are `Shown` nodes
+with plain numbers. How they look is up to the printers.
 """
 
 from __future__ import annotations
@@ -337,6 +337,8 @@ class Registers:
     criteria: tuple[CriterionEntry, ...]
     findings: tuple[tuple[Finding, str], ...]
     """Each with the anchor of the place where it stands, "" where it has none in the document."""
+    further_findings: int
+    """How many more there are than are listed."""
     revisions: tuple[RevisionEntry, ...]
     codes: tuple[str, ...]
     drawings: tuple[str, ...]

@@ -247,7 +247,7 @@ class StepWriter:
         name = criterion_name(step) if criterion_name(step) != step.id else ""
         return CriterionBox(
             head,
-            kind,
+            kind,  # type: ignore[arg-type]
             name,
             None,
             (),
@@ -257,7 +257,7 @@ class StepWriter:
             verdict_words(step, plain_symbol),
             True,
             False,
-            None,  # type: ignore[arg-type]
+            None,
             typed=_as_typed(step.statement),
         )
 

@@ -25,16 +25,21 @@ def lines(finding: Finding, *, bold: bool = False) -> list[str]:
     return out
 
 
-def _excerpt(finding: Finding) -> list[str]:
+def excerpt(finding: Finding) -> tuple[str, str, str]:
+    """The line of the sheet in three pieces, the middle one what is pointed at; cut where it is long."""
     assert finding.span is not None
     line = finding.source.line(finding.line).replace("\t", " ")
     start = finding.column - 1
     shift = max(start - WIDEST // 2, 0) if len(line) > WIDEST else 0
-    shown = _printable(line[shift : shift + WIDEST])
-    width = max(min(finding.span.end - finding.span.start, len(line) - start), 1)
-    width = min(width, WIDEST - (start - shift))
+    end = min(start + max(finding.span.end - finding.span.start, 1), shift + WIDEST)
+    return line[shift:start], line[start:end] or " ", line[end : shift + WIDEST]
+
+
+def _excerpt(finding: Finding) -> list[str]:
+    before, at, after = (_printable(piece) for piece in excerpt(finding))
     label = f" {finding.label}" if finding.label else ""
-    return [f"{finding.line:5} | {shown}", f"      | {' ' * (start - shift)}{'^' * width}{label}"]
+    shown = (before + at + after).rstrip()
+    return [f"{finding.line:5} | {shown}", f"      | {' ' * len(before)}{'^' * len(at)}{label}"]
 
 
 def _one_line(text: str) -> str:

@@ -62,7 +62,7 @@ class Quantities(Cursor):
             self._refuse_hyphenated(start, fraction)
             self.at = fraction.end()
             unit, place = self._unit_after_space()
-            return Part("", (fraction.group(1), fraction.group(2)), unit), place
+            return Part("", self._typed_fraction(fraction), unit), place
         text = self._number_text()
         mixed = _FRACTION.match(self.text, self._after_spaces())
         if (
@@ -73,11 +73,18 @@ class Quantities(Cursor):
         ):
             self.at = mixed.end()
             unit, place = self._unit_after_space()
-            return Part(text, (mixed.group(1), mixed.group(2)), unit), place
+            return Part(text, self._typed_fraction(mixed), unit), place
         if self._unit_follows(self.at):
             unit, place = self._unit_after_space()
             return Part(text, None, unit), place
         return Number(text, self.span(start))
+
+    def _typed_fraction(self, match: re.Match[str]) -> tuple[str, str]:
+        over, under = match.groups()
+        if int(under.replace("_", "")) == 0:
+            place = self.span(match.start(), match.end())
+            raise Mistake("division-by-zero", place, f"`{match.group()}` divides by 0", "check the fraction")
+        return over, under
 
     def _after_spaces(self) -> int:
         index = self.at

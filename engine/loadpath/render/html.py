@@ -13,6 +13,7 @@ from typing import Any
 from markupsafe import Markup, escape
 
 from loadpath.document.model import Block, Document, FigureBlock, Ref, TitleBlock
+from loadpath.findings.terminal import excerpt
 from loadpath.formula.names import symbol
 from loadpath.formula.tree import Name, Node, Shown
 from loadpath.render.math import COLUMN, PAGE, flow, mathml, widest
@@ -59,6 +60,7 @@ def _environment() -> Any:
             "ref": ref_html,
             "breaks": breaks,
             "names_in": names_in,
+            "excerpt": excerpt,
         }
     )
 
@@ -101,7 +103,6 @@ def title_block_strings(block: TitleBlock, alerts: tuple[str, ...]) -> str:
         "reviewed": block.reviewed_by,
         "approved": block.approved_by,
         "date": block.date,
-        "made": block.made,
     }
     rows = [
         max(
@@ -112,11 +113,18 @@ def title_block_strings(block: TitleBlock, alerts: tuple[str, ...]) -> str:
         ),
         max(_lines(t, CELL) for t in (block.created_by, block.reviewed_by, block.approved_by, block.date)),
     ]
-    lines = [f"--tb-{name}:{css_string(text)}" for name, text in texts.items()]
+    widths = {"title": 2 * CELL}
+    lines = [f"--tb-{n}:{css_string(_breakable(text, widths.get(n, CELL)))}" for n, text in texts.items()]
+    lines.append(f"--tb-made:{css_string(block.made)}")
     if alerts:
         lines.append(f"--tb-state:{css_string(alerts[0].rstrip('.'))}")
     lines += [f"--tb-lines-{i}:{count}" for i, count in enumerate(rows, 1)]
     return ":root{" + ";".join(lines) + "}"
+
+
+def _breakable(text: str, width: int) -> str:
+    """A text whose words may be broken where a cell can't hold them: margin boxes break no word by themselves."""
+    return re.sub(rf"(\S{{{width}}})(?=\S)", "\\1\u200b", text)
 
 
 def _lines(text: str, width: int) -> int:

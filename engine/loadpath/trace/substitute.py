@@ -35,6 +35,8 @@ from loadpath.units.dimension import LENGTH, MASS, PLAIN, TEMPERATURE, TIME, Dim
 from loadpath.units.printing import plain
 from loadpath.units.unit import PREFIXED, PREFIXES, STEP_OF_DEGF
 
+NOTHING = 1e-12
+"""A factor that differs from 1 by less is none."""
 FACTOR_DIGITS = 6
 """Significant digits of a conversion factor that no fewer digits hold exactly."""
 Scope = Callable[[str], Operand | None]
@@ -255,7 +257,10 @@ def _same_dimension(a: Scale, b: Scale) -> bool:
 
 
 def _dimension(atoms: Atoms) -> Dimension:
-    return parse_unit(_unit_text(atoms)).dimension if atoms else PLAIN
+    of = PLAIN
+    for name, power in atoms:
+        of = of.times(parse_unit(name).dimension.power(power))
+    return of
 
 
 def _is_zero(node: Node) -> bool:
@@ -268,18 +273,30 @@ def _steps_of(reading: Scale) -> Scale:
 
 
 def _converted(node: Node, have: Scale, want: Scale) -> Node:
-    """The node with the factor from one scale to the other, where it is no power of ten."""
+    """The node with the factor from one scale to the other, where SI prefixes alone don't make it."""
     if have.absolute and have.absolute != want.absolute:
         return _read_as(node, have, want)
-    ratio = have.size / want.size
-    if _is_power_of_ten(ratio):
+    ratio = have.size / want.size if have.size and want.size else 0.0
+    if not 0 < ratio < math.inf:
         return node
-    label = _best_label(_merge(want.atoms, tuple((n, -p) for n, p in have.atoms)))
-    ratio = 1 / _size(label) if label else ratio
-    divided = not _is_short(ratio) and _is_short(1 / ratio)
+    apart = _merge(want.atoms, tuple((n, -p) for n, p in have.atoms))
+    if abs(ratio - 1) < NOTHING or (_is_power_of_ten(ratio) and _is_decimal(apart)):
+        return node
+    label = _best_label(apart)
+    try:
+        ratio = 1 / _size(label) if label else ratio
+        1 / ratio
+    except (OverflowError, ZeroDivisionError):
+        return node
+    divided = _is_short(1 / ratio) and (ratio < 1 or not _is_short(ratio))
     if divided:
         ratio, label = 1 / ratio, tuple((n, -p) for n, p in label)
     return Factor(node, _short(ratio), _unit_text(label), divided)
+
+
+def _is_decimal(atoms: Atoms) -> bool:
+    """True where all are powers of ten of SI units: the thousand between kip and lbf is no SI prefix."""
+    return all(_is_power_of_ten(parse_unit(name).size) for name, _ in atoms)
 
 
 def _read_as(node: Node, have: Scale, want: Scale) -> Node:
@@ -295,6 +312,8 @@ def _read_as(node: Node, have: Scale, want: Scale) -> Node:
 def _is_power_of_ten(ratio: float) -> bool:
     """True for what SI prefixes alone give, under a square or cube root too; no other unit factor comes
     near."""
+    if not 0 < ratio < math.inf:
+        return False
     sixths = 6 * math.log10(ratio)
     return abs(sixths - round(sixths)) < 1e-8
 
