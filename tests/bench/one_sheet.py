@@ -7,6 +7,7 @@ times depend on the machine.
 
 from __future__ import annotations
 
+import gc
 import math
 import statistics
 import subprocess
@@ -159,6 +160,7 @@ def stages(members: int) -> dict[str, float]:
 
 
 def main() -> None:
+    gc.set_threshold(200_000, 20, 20)  # as the program does
     floats = median_time(lambda: plain_floats(MEMBERS))
     numbers = median_time(numbers_alone(MEMBERS))
     plan = make_plan(resolve(loadpath.read_text(sheet(MEMBERS))))

@@ -110,3 +110,47 @@ const lowContrast = () => {
   }
   return [...out]
 }
+
+// --- measures ---------------------------------------------------------------------------------------------------
+
+const box = element => element.getBoundingClientRect()
+const middle = element => (box(element).top + box(element).bottom) / 2
+
+// The first fraction: how far its parts are apart, its height in lines, and whether its bar covers both.
+const fractionShape = () => {
+  const fraction = document.querySelector('.flow mfrac, .side mfrac'), [top, bottom] = fraction.children
+  const line = box(document.querySelector('.flow mi, .side mi'))
+  return {
+    apart: box(bottom).top - box(top).bottom, height: box(fraction).height / line.height,
+    covers: box(fraction).width >= Math.max(box(top).width, box(bottom).width) - 1,
+  }
+}
+
+// How far the index or exponent of each `msub` or `msup` stands above its base; less than 0 below it.
+const rises = tag =>
+  [...document.querySelectorAll(`.flow ${tag}, .side ${tag}`)].map(e => middle(e.children[0]) - middle(e.children[1]))
+
+const signsOfRoots = () => [...document.querySelectorAll('msqrt')].map(e => box(e).width - box(e.firstElementChild).width)
+
+const rightEdgesOfResults = () =>
+  [...document.querySelectorAll('.step.result .work .val')].map(e => Math.round(box(e).right))
+
+// Of a paragraph: the left of its first letter and of its last, and its own right edge.
+const ends = start => {
+  const paragraph = [...document.querySelectorAll('.prose p')].find(p => p.textContent.startsWith(start))
+  const at = index => {
+    const range = document.createRange()
+    range.setStart(paragraph.firstChild, index)
+    range.setEnd(paragraph.firstChild, index + 1)
+    return range.getBoundingClientRect().left
+  }
+  return [at(0), at(paragraph.firstChild.length - 2), box(paragraph).right]
+}
+
+const focused = () => {
+  const element = document.activeElement, b = box(element)
+  return {
+    href: element.getAttribute('href'), outline: getComputedStyle(element).outlineStyle,
+    visible: b.left >= 0 && b.top >= 0 && b.right <= innerWidth && b.bottom <= innerHeight,
+  }
+}

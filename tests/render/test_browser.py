@@ -1,6 +1,6 @@
 """The page in a real browser: on a screen, on a telephone, in the dark, by keyboard and on paper.
 
-Skipped where Chromium is missing, never where LOADPATH_CI is 1; likewise what needs `pdftotext` to find words on paper.
+Skipped where Chromium is missing, never where LOADPATH_CI is 1; likewise what needs `pdftotext`.
 """
 
 from __future__ import annotations
@@ -29,7 +29,14 @@ from loadpath.units.printing import quantity
 if TYPE_CHECKING:
     from playwright.sync_api import Browser, Page
 
-CHROMIUM = next((p for p in ("/usr/bin/chromium", *map(shutil.which, ("chromium", "chromium-browser", "google-chrome"))) if p and Path(p).exists()), None)
+CHROMIUM = next(
+    (
+        p
+        for p in ("/usr/bin/chromium", *map(shutil.which, ("chromium", "chromium-browser", "google-chrome")))
+        if p and Path(p).exists()
+    ),
+    None,
+)
 PDFTOTEXT = shutil.which("pdftotext")
 IN_CI = os.environ.get("LOADPATH_CI") == "1"
 FLAGS = [
@@ -37,13 +44,18 @@ FLAGS = [
     "--disable-component-update", "--disable-sync",
 ]  # fmt: skip
 
-pytestmark = pytest.mark.skipif(CHROMIUM is None and not IN_CI, reason="Chromium is not installed (Debian: apt-get install chromium)")
-needs_pdftotext = pytest.mark.skipif(PDFTOTEXT is None and not IN_CI, reason="pdftotext is not installed (Debian: apt-get install poppler-utils)")
+pytestmark = pytest.mark.skipif(
+    CHROMIUM is None and not IN_CI, reason="Chromium is not installed (Debian: apt-get install chromium)"
+)
+needs_pdftotext = pytest.mark.skipif(
+    PDFTOTEXT is None and not IN_CI,
+    reason="pdftotext is not installed (Debian: apt-get install poppler-utils)",
+)
 
 SCREEN, TELEPHONE = 1000, 360
 
 
-# --- sheets -----------------------------------------------------------------------------------------------------
+# --- sheets -------------------------------------------------------------------------------------------------
 
 LONG = "a_name_that_somebody_made_out_of_words_because_letters_were_not_enough"
 LONG_NAMES = f"""---
@@ -60,10 +72,10 @@ reviewed_by: Donaudampfschifffahrtselektrizitätenhauptbetriebswerkbauunterbeamt
     {LONG} = 12.5 kN -- an input with a name that fills the line
     {LONG}_too = 12.5 kN*m -- another
     resistance_of_the_whole_cross_section_in_bending_about_the_strong_axis = {LONG}_too*2
-    x = ({LONG} + {LONG})*{LONG}/({LONG} - 2*{LONG}) -- a note with_a_word_that_cannot_be_broken_anywhere_at_all_not_even_once_in_its_length
+    x = ({LONG} + {LONG})*{LONG}/({LONG} - 2*{LONG}) -- with_a_word_that_cannot_be_broken_anywhere
     strength the-criterion-that-has-the-longest-name-of-all-criteria: x <= {LONG}*1000
     limit: {LONG}_too/resistance_of_the_whole_cross_section_in_bending_about_the_strong_axis <= 1
-    valid: 1 N <= {LONG} <= 100_000_000 N for resistance_of_the_whole_cross_section_in_bending_about_the_strong_axis
+    valid: 1 N <= {LONG} <= 100_000_000 N for x
 """
 MANY_STEPS = "---\ntitle: Two hundred steps\nnumber: SB-200\n---\n\n" + "".join(
     f"## Part {part}\n\nWhat part {part} is about.\n\n    a_{part} = {part}.5 kN -- load\n"
@@ -106,11 +118,18 @@ def sheets() -> dict[str, Document]:
     }
 
 
-NAMES = [*(path.name.removesuffix(".sheet.md") for path in CALCSHEETS), "everything", "long names", "many steps", "other writings", "hostile"]
+NAMES = [
+    *(path.name.removesuffix(".sheet.md") for path in CALCSHEETS),
+    "everything",
+    "long names",
+    "many steps",
+    "other writings",
+    "hostile",
+]
 PRINTED = ["hoist-beam", "lifting-lug", "everything", "long names", "many steps", "other writings"]
 
 
-# --- the browser ------------------------------------------------------------------------------------------------
+# --- the browser --------------------------------------------------------------------------------------------
 
 
 @pytest.fixture(scope="module")
@@ -157,7 +176,7 @@ def show(browser: Browser, folder: Path) -> Iterator[Any]:
         context.close()
 
 
-# --- the checks themselves --------------------------------------------------------------------------------------
+# --- the checks themselves ----------------------------------------------------------------------------------
 
 
 @pytest.mark.parametrize(
@@ -184,7 +203,7 @@ def test_the_checks_pass_what_is_in_order(show: Any) -> None:
         assert page.evaluate(f"{check}()") == []
 
 
-# --- on a screen ------------------------------------------------------------------------------------------------
+# --- on a screen --------------------------------------------------------------------------------------------
 
 
 @pytest.mark.parametrize("width", [SCREEN, TELEPHONE])
@@ -249,68 +268,53 @@ def test_the_page_is_the_same_without_script(show: Any) -> None:
 
 def test_the_fonts_inside_are_used(show: Any) -> None:
     page = show("hoist-beam")
-    loaded = page.evaluate("[...document.fonts].filter(f => f.status === 'loaded').map(f => f.family.replaceAll('\"', ''))")
+    loaded = page.evaluate(
+        "[...document.fonts].filter(f => f.status === 'loaded').map(f => f.family.replaceAll('\"', ''))"
+    )
     assert {"Loadpath Text", "Loadpath Math"} <= set(loaded)
-    assert page.evaluate("getComputedStyle(document.querySelector('math')).fontFamily").startswith('"Loadpath Math"')
+    assert page.evaluate("getComputedStyle(document.querySelector('math')).fontFamily").startswith(
+        '"Loadpath Math"'
+    )
 
 
 def test_formulas_are_set_as_formulas(show: Any) -> None:
-    """A fraction stands above its line and below it, an exponent above, an index below, and a root covers what is under it."""
+    """A fraction is high, exponents stand above and indices below, and a root has its sign in front."""
     page = show("hoist-beam")
-    fraction = page.evaluate(
-        """() => {
-          const f = document.querySelector('.flow mfrac, .side mfrac'), [top, bottom] = f.children
-          const box = e => e.getBoundingClientRect(), line = box(document.querySelector('.flow mi, .side mi'))
-          return {apart: box(bottom).top - box(top).bottom, height: box(f).height / line.height,
-                  within: box(f).width >= Math.max(box(top).width, box(bottom).width) - 1}
-        }"""
-    )
-    assert fraction["apart"] > -8 and fraction["height"] > 1.4 and fraction["within"]
-    middle = "(e => (e.getBoundingClientRect().top + e.getBoundingClientRect().bottom) / 2)"
+    fraction = page.evaluate("fractionShape()")
+    assert fraction["apart"] > -8 and fraction["height"] > 1.4 and fraction["covers"]
     for tag, sign in (("msup", 1), ("msub", -1)):
-        rises = page.evaluate(f"[...document.querySelectorAll('.flow {tag}, .side {tag}')].map(e => {middle}(e.children[0]) - {middle}(e.children[1]))")
+        rises = page.evaluate(f"rises('{tag}')")
         assert rises and all(rise * sign > 0 for rise in rises)
-    roots = page.evaluate("[...document.querySelectorAll('msqrt')].map(e => e.getBoundingClientRect().width - e.firstElementChild.getBoundingClientRect().width)")
+    roots = page.evaluate("signsOfRoots()")
     assert roots and all(over > 2 for over in roots)
 
 
 def test_results_stand_one_below_the_other_at_the_right_edge(show: Any) -> None:
-    page = show("hoist-beam")
-    edges = page.evaluate("[...document.querySelectorAll('.step.result .work .val')].map(e => Math.round(e.getBoundingClientRect().right))")
+    edges = show("hoist-beam").evaluate("rightEdgesOfResults()")
     assert len(edges) > 10
     assert max(edges) - min(edges) <= 1
 
 
 def test_writing_from_right_to_left(show: Any) -> None:
-    page = show("other writings")
-    first, last, box = page.evaluate(
-        """() => {
-          const p = [...document.querySelectorAll('.prose p')].find(p => p.textContent.startsWith('האוזן')), t = p.firstChild
-          const at = i => { const r = document.createRange(); r.setStart(t, i); r.setEnd(t, i + 1); return r.getBoundingClientRect() }
-          return [at(0).left, at(t.length - 2).left, p.getBoundingClientRect().right]
-        }"""
-    )
+    first, last, edge = show("other writings").evaluate("ends('האוזן')")
     assert first > last
-    assert box - first < 40, "a paragraph from right to left begins at the right"
+    assert edge - first < 40, "a paragraph from right to left begins at the right"
 
 
-# --- by keyboard ------------------------------------------------------------------------------------------------
+# --- by keyboard --------------------------------------------------------------------------------------------
 
 
 def test_the_keyboard_reaches_the_summary_and_then_the_steps(show: Any) -> None:
     page = show("hoist-beam")
-    focused = "(() => { const e = document.activeElement, b = e.getBoundingClientRect(); return [e.className, e.getAttribute('href'), b.left >= 0 && b.top >= 0 && b.right <= innerWidth, getComputedStyle(e).outlineStyle] })()"
     page.keyboard.press("Tab")
-    assert page.evaluate(focused) == ["skip", "#summary", True, "solid"]
+    assert page.evaluate("focused()") == {"href": "#summary", "outline": "solid", "visible": True}
     page.keyboard.press("Enter")
     assert page.evaluate("location.hash") == "#summary"
-    walked = []
     for _ in range(12):
         page.keyboard.press("Tab")
-        kind, href, visible, outline = page.evaluate(focused)
-        walked.append(href)
-        assert outline == "solid" and visible
-    assert all(re.match(r"#(s\d|a-|sec)", href) for href in walked)
+        reached = page.evaluate("focused()")
+        assert reached["outline"] == "solid" and reached["visible"]
+        assert re.match(r"#(s\d|a-|sec)", reached["href"])
 
 
 def test_the_skip_link_is_out_of_sight_until_it_is_reached(show: Any) -> None:
@@ -318,7 +322,7 @@ def test_the_skip_link_is_out_of_sight_until_it_is_reached(show: Any) -> None:
     assert page.evaluate("document.querySelector('.skip').getBoundingClientRect().right") <= 0
 
 
-# --- on paper ---------------------------------------------------------------------------------------------------
+# --- on paper -----------------------------------------------------------------------------------------------
 
 PAPER = {"A4": (594.96, 841.92), "Letter": (612.0, 792.0)}
 
@@ -369,11 +373,23 @@ def printed(browser: Browser, folder: Path) -> Any:
 
 def sheets_of(pdf: Path) -> list[Sheet]:
     assert PDFTOTEXT, "LOADPATH_CI asks for pdftotext"
-    found = subprocess.run([PDFTOTEXT, "-bbox", str(pdf), "-"], capture_output=True, text=True, check=True).stdout
+    found = subprocess.run(
+        [PDFTOTEXT, "-bbox", str(pdf), "-"], capture_output=True, text=True, check=True
+    ).stdout
     out = []
-    for width, height, inside in re.findall(r'<page width="([\d.]+)" height="([\d.]+)">(.*?)</page>', found, re.DOTALL):
-        words = re.findall(r'<word xMin="([-\d.]+)" yMin="([-\d.]+)" xMax="([-\d.]+)" yMax="([-\d.]+)">(.*?)</word>', inside)
-        out.append(Sheet(float(width), float(height), tuple(Word(*map(float, w[:4]), html.unescape(w[4])) for w in words)))
+    for width, height, inside in re.findall(
+        r'<page width="([\d.]+)" height="([\d.]+)">(.*?)</page>', found, re.DOTALL
+    ):
+        words = re.findall(
+            r'<word xMin="([-\d.]+)" yMin="([-\d.]+)" xMax="([-\d.]+)" yMax="([-\d.]+)">(.*?)</word>', inside
+        )
+        out.append(
+            Sheet(
+                float(width),
+                float(height),
+                tuple(Word(*map(float, w[:4]), html.unescape(w[4])) for w in words),
+            )
+        )
     return out
 
 
@@ -382,14 +398,18 @@ def squeezed(text: str) -> str:
 
 
 @needs_pdftotext
-@pytest.mark.parametrize(("name", "paper"), [(n, "") for n in PRINTED] + [("hoist-beam", "Letter"), ("lifting-lug", "A4")])
+@pytest.mark.parametrize(
+    ("name", "paper"), [(n, "") for n in PRINTED] + [("hoist-beam", "Letter"), ("lifting-lug", "A4")]
+)
 def test_every_sheet_carries_the_title_block_and_its_number(printed: Any, name: str, paper: str) -> None:
     document = documents()[name]
     found = printed(name, paper)
     width, height = PAPER[paper or document.page]
     for number, sheet in enumerate(found, 1):
         assert (sheet.width, sheet.height) == (pytest.approx(width, abs=0.5), pytest.approx(height, abs=0.5))
-        assert cells(sheet) == [Counter(squeezed(text)) for text in fields(document, f"{number} of {len(found)}")]
+        assert cells(sheet) == [
+            Counter(squeezed(text)) for text in fields(document, f"{number} of {len(found)}")
+        ]
         assert squeezed(document.title_block.made) in sheet.text
         if number > 1:
             assert squeezed(document.alerts[0].rstrip(".")) in sheet.text
@@ -400,36 +420,56 @@ def fields(document: Document, number: str) -> list[str]:
     block = document.title_block
     return [
         f"Legal owner {block.owner}", f"Title, supplementary title {block.title} {block.subtitle}",
-        f"Identification number {block.number}", f"Rev., status {block.revision}", f"Created by {block.created_by}",
-        f"Reviewed by {block.reviewed_by}", f"Approved by {block.approved_by}", f"Date of issue {block.date}", f"Sheet {number}",
+        f"Identification number {block.number}", f"Rev., status {block.revision}",
+        f"Created by {block.created_by}", f"Reviewed by {block.reviewed_by}",
+        f"Approved by {block.approved_by}", f"Date of issue {block.date}", f"Sheet {number}",
     ]  # fmt: skip
 
 
 def cells(sheet: Sheet) -> list[Counter[str]]:
     """The letters in each cell of the title block; in no order, for writing may run either way."""
-    rows = [["Legal", "Title,", "Identification", "Rev.,"], ["Created", "Reviewed", "Approved", "Date", "Sheet"]]
-    labels = [[max((w for w in sheet.words if w.text == label), key=lambda w: w.top) for label in row] for row in rows]
-    ends = [labels[1][0].top - 2, min(w.top for w in sheet.words if w.text == "loadpath" and w.top > labels[1][0].top) - 2]
+    rows = [
+        ["Legal", "Title,", "Identification", "Rev.,"],
+        ["Created", "Reviewed", "Approved", "Date", "Sheet"],
+    ]
+    labels = [
+        [max((w for w in sheet.words if w.text == label), key=lambda w: w.top) for label in row]
+        for row in rows
+    ]
+    ends = [
+        labels[1][0].top - 2,
+        min(w.top for w in sheet.words if w.text == "loadpath" and w.top > labels[1][0].top) - 2,
+    ]
     out = []
     for row, end in zip(labels, ends, strict=True):
         inside = [w for w in sheet.words if row[0].top - 2 <= w.top < end and w.left > row[0].left - 3]
         for label, following in zip(row, [*row[1:], None], strict=True):
             right = following.left - 3 if following else sheet.width
-            out.append(Counter("".join(w.text for w in inside if label.left - 3 <= w.left < right).replace("\u200b", "")))
+            out.append(
+                Counter(
+                    "".join(w.text for w in inside if label.left - 3 <= w.left < right).replace("\u200b", "")
+                )
+            )
     return out
 
 
 @needs_pdftotext
-@pytest.mark.parametrize(("name", "paper"), [(n, "") for n in PRINTED] + [("hoist-beam", "Letter"), ("lifting-lug", "A4")])
+@pytest.mark.parametrize(
+    ("name", "paper"), [(n, "") for n in PRINTED] + [("hoist-beam", "Letter"), ("lifting-lug", "A4")]
+)
 def test_nothing_on_paper_leaves_the_sheet_or_lies_over_another(printed: Any, name: str, paper: str) -> None:
     for number, sheet in enumerate(printed(name, paper), 1):
-        outside = [w.text for w in sheet.words if w.left < 25 or w.right > sheet.width - 20 or w.top < 5 or w.bottom > sheet.height - 15]
+        outside = [
+            w.text
+            for w in sheet.words
+            if w.left < 25 or w.right > sheet.width - 20 or w.top < 5 or w.bottom > sheet.height - 15
+        ]
         assert outside == [], f"sheet {number}"
         assert [f"{a.text} over {b.text}" for a, b in _overlapping(sheet.words)] == [], f"sheet {number}"
 
 
 def _overlapping(words: tuple[Word, ...]) -> Iterator[tuple[Word, Word]]:
-    """Pairs of words whose letters share room; boxes are higher than letters, so that a third of each is left aside."""
+    """Pairs of words whose letters share room; boxes are higher than letters."""
     ordered = sorted(words, key=lambda w: w.top)
     for i, a in enumerate(ordered):
         inset = 0.3 * (a.bottom - a.top)
@@ -446,10 +486,18 @@ def _overlapping(words: tuple[Word, ...]) -> Iterator[tuple[Word, Word]]:
 @needs_pdftotext
 @pytest.mark.parametrize("name", ["hoist-beam", "lifting-lug", "many steps"])
 def test_every_printed_value_and_every_step_is_on_paper(printed: Any, name: str) -> None:
-    trace: Trace = audited(read_input("-", MANY_STEPS)) if name == "many steps" else audited(read_input(ROOT / "calcsheets" / f"{name}.sheet.md"))
+    trace: Trace = (
+        audited(read_input("-", MANY_STEPS))
+        if name == "many steps"
+        else audited(read_input(ROOT / "calcsheets" / f"{name}.sheet.md"))
+    )
     paper = "".join(sheet.text for sheet in printed(name))
     shown = [(step.number, texts.display(step)) for step in trace]
-    gone = [(number, v.number) for number, v in shown if v and not v.word and squeezed(quantity(v.number, v.unit)) not in paper]
+    gone = [
+        (number, v.number)
+        for number, v in shown
+        if v and not v.word and squeezed(quantity(v.number, v.unit)) not in paper
+    ]
     assert gone == []
     everywhere_on_paper = {w.text for sheet in printed(name) for w in sheet.words}
     assert [number for number, _ in shown if number not in everywhere_on_paper] == []
@@ -462,5 +510,9 @@ def test_a_row_of_a_step_is_never_torn_apart(printed: Any) -> None:
     for step in trace:
         shown = texts.display(step)
         if step.kind == "result" and shown is not None:
-            (sheet,) = (s for s in printed("many steps") if any(w.text == step.number and w.left < 110 for w in s.words))
+            (sheet,) = (
+                s
+                for s in printed("many steps")
+                if any(w.text == step.number and w.left < 110 for w in s.words)
+            )
             assert squeezed(quantity(shown.number, shown.unit)) in sheet.text

@@ -17,6 +17,7 @@ from pages import (
     EVERYTHING,
     HOSTILE,
     PLAIN_HOSTILE,
+    ROOT,
     as_xml,
     built,
     everywhere,
@@ -28,6 +29,7 @@ from pages import (
 from loadpath.document.model import CAUTION, TitleBlock
 from loadpath.pipeline import audited, read_input
 from loadpath.render.html import css_string, render, style, title_block_strings
+from loadpath.render.markdown import render as markdown
 from loadpath.render.templates import folder
 from loadpath.trace import texts
 from loadpath.units.printing import quantity
@@ -39,6 +41,7 @@ PAGES = {
     "no sheet": lambda: render(built("no front matter\n")),
     **{f"hostile {i}": (lambda t=text: render(built(everywhere(t)))) for i, text in enumerate(HOSTILE)},
 }
+MISTAKES = sorted((ROOT / "tests" / "cases" / "mistakes").glob("*.case"))
 each_page = pytest.mark.parametrize("name", PAGES)
 
 
@@ -340,6 +343,7 @@ def test_the_style_of_the_title_block_holds_hostile_texts(text: str) -> None:
         ),
         ("Lug", "", "R.M. (typed, not on record)", (2, 2)),
         ("Lug", "", "x" * 60, (2, 4)),
+        ("Lug", "", "ABCDEFGHIJ-ABCDEFGHIJ-ABCDEFGHIJ", (2, 3)),
     ],
 )
 def test_rows_of_the_title_block_grow_with_their_texts(
@@ -417,6 +421,23 @@ def test_a_finding_in_another_file_names_it() -> None:
     (finding,) = (e for e in root.iter("div") if "error" in e.get("class", ""))
     assert words(finding).startswith("Error, line 2 of project.yaml.")
     assert words(finding).endswith("Did you mean `owner`?")
+
+
+@pytest.mark.parametrize("path", MISTAKES, ids=lambda p: p.stem)
+def test_every_mistyped_sheet_gives_a_whole_page_with_its_findings_in_place(path: Path) -> None:
+    sheet = path.read_text(encoding="utf-8").split("=====\n")[1]
+    document = built(sheet)
+    root = as_xml(render(document))
+    text = words(root)
+    for finding, _ in document.registers.findings:
+        assert text.count(words_of(finding.message)) >= (1 if finding.severity == "note" else 2), finding.slug
+    links = {a.attrib["href"][1:] for a in root.iter("a") if a.attrib.get("href", "").startswith("#")}
+    assert links <= set(ids(root))
+    assert markdown(document, "case")[0].count(f"({document.registers.findings[0][0].slug})") >= 1
+
+
+def words_of(text: str) -> str:
+    return " ".join(re.sub("[\u202a-\u202e\u2066-\u2069]", "\ufffd", text).split())
 
 
 def test_paper_and_language_are_those_of_the_sheet() -> None:

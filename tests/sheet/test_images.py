@@ -141,5 +141,14 @@ def test_bytes_that_are_no_text_are_refused() -> None:
         check_svg(SVG.format("").encode("utf-16"))
 
 
-def test_deep_drawings_are_no_trouble() -> None:
-    check_svg(SVG.format("<g>" * 50_000 + "</g>" * 50_000).encode())
+def test_drawings_are_not_deep() -> None:
+    check_svg(SVG.format("<g>" * 50 + "</g>" * 50).encode())
+    with pytest.raises(Refused, match="deep"):
+        check_svg(SVG.format("<g>" * 50_000 + "</g>" * 50_000).encode())
+
+
+def test_repeats_within_repeats_are_refused() -> None:
+    once = '<g id="a"><path d="M0 0h9"/></g><use href="#a"/><use href="#a"/>'
+    check_svg(SVG.format(once).encode())
+    with pytest.raises(Refused, match="repeats"):
+        check_svg(SVG.format(once + '<g id="b"><use href="#a"/></g><use href="#b"/>').encode())

@@ -105,7 +105,7 @@ def _targets(paths: list[str], sheets: tuple[str, ...], out: str) -> list[str]:
     roots = [Path(name) for name in sheets if Path(name).is_dir()]
     targets: list[str] = []
     taken: dict[Path, str] = {}
-    typed = {Path(path).resolve() for path in paths if path != "-"}
+    typed = {_real(path) for path in paths if path != "-"}
     for path in paths:
         root = next((r for r in roots if path != "-" and Path(path).is_relative_to(r)), None)
         target = Path(out) / Path(path).parent.relative_to(root) if root else Path(out)
@@ -115,13 +115,23 @@ def _targets(paths: list[str], sheets: tuple[str, ...], out: str) -> list[str]:
                 f"{path} and {taken[key]} would both write {key}.html; "
                 "issue them to different folders with --out"
             )
-        if (written := target / f"{stem_of(path)}.md").resolve() in typed:
+        if _real(written := target / f"{stem_of(path)}.md") in typed:
             raise click.UsageError(
                 f"{written} is a sheet, and would be written over; name another folder with --out"
             )
         taken[key] = path
         targets.append(str(target))
     return targets
+
+
+def _real(path: str | Path) -> str:
+    """The path with links followed; one that leads in a circle ends the program with code 2."""
+    from os.path import realpath
+
+    try:
+        return realpath(path, strict=False)
+    except (OSError, RuntimeError) as error:
+        raise click.UsageError(f"cannot follow {path}: {error}") from None
 
 
 def _run(

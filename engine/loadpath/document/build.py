@@ -354,8 +354,10 @@ def _conclusion(criteria: tuple[Step, ...]) -> tuple[tuple[str, bool], ...]:
 
 
 def conclusion(trace: Trace) -> str:
-    """The first line of the summary as plain text."""
-    return ", ".join(phrase for phrase, _ in _conclusion(trace.criteria))
+    """The first line of the summary as plain text, errors first."""
+    errors = sum(f.severity == "error" for f in trace.findings)
+    said = ", ".join(phrase for phrase, _ in _conclusion(trace.criteria))
+    return f"not for use, {_count(errors, 'error')}; {said}" if errors else said
 
 
 def _criteria(number: int) -> str:

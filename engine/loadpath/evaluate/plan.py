@@ -40,6 +40,8 @@ class Planned:
     """Keys of assumptions still to be confirmed that it hangs on."""
     ranged: frozenset[str]
     """Names with a stated range that it hangs on."""
+    unread: tuple[str, ...]
+    """Keys cited behind it that are neither a source nor an assumption: one may be an open assumption."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -59,20 +61,19 @@ def make_plan(resolved: Resolved) -> Plan:
     sections, numbers = _numbering(resolved.sheet)
     reach = _Reach(resolved)
     outlines = _outlines(resolved, numbers, reach)
-    steps = tuple(_planned(outline, compiler, *reach.of(outline.entry)) for outline in outlines)
+    steps = tuple(_planned(outline, compiler, reach) for outline in outlines)
     return Plan(resolved, compiler, steps, sections)
 
 
-def _planned(
-    outline: Outline, compiler: Compiler, assumed: tuple[str, ...], ranged: frozenset[str]
-) -> Planned:
+def _planned(outline: Outline, compiler: Compiler, reach: _Reach) -> Planned:
     entry = outline.entry
+    hangs_on = reach.of(entry)
     tree = tree_of(entry.statement)
     if tree is None or entry.blocked_by:
-        return Planned(outline, tree, None, (), None, assumed, ranged)
+        return Planned(outline, tree, None, (), None, *hangs_on)
     seen = None if any(isinstance(n, Call | Cases | As) for n in walk(tree)) else Working(tree)
     sides = () if isinstance(entry.statement, Definition) else _sides(tree, compiler)
-    return Planned(outline, tree, compiler.compile_tree(tree), sides, seen, assumed, ranged)
+    return Planned(outline, tree, compiler.compile_tree(tree), sides, seen, *hangs_on)
 
 
 def tree_of(statement: Statement) -> Node | None:
@@ -146,7 +147,10 @@ class _Reach:
 
     def __init__(self, resolved: Resolved) -> None:
         self.assumptions = [a.key for a in resolved.sheet.front.assumptions if a.confirm]
-        self.open = frozenset(self.assumptions)
+        front = resolved.sheet.front
+        closed = {s.key for s in front.sources} | {a.key for a in front.assumptions if not a.confirm}
+        self.closed = frozenset(closed)
+        """Keys whose citation leaves nothing open; any other may be an assumption to be confirmed."""
         self.ranged = {name for entry in resolved.entries for name in guarded_by(entry.statement)}
         self.known: dict[str, tuple[frozenset[str], frozenset[str]]] = {}
         self.by_id: dict[str, tuple[frozenset[str], frozenset[str]]] = {}
@@ -159,7 +163,7 @@ class _Reach:
     def _enter(self, entry: Entry) -> None:
         feeds = fed_by(entry)
         feeding = [self.known[name] for name in feeds if name in self.known]
-        assumed = (frozenset(cited(entry.statement)) & self.open).union(*(a for a, _ in feeding))
+        assumed = (frozenset(cited(entry.statement)) - self.closed).union(*(a for a, _ in feeding))
         ranged = frozenset(n for n in feeds if n in self.ranged).union(*(r for _, r in feeding))
         self.by_id[entry.id] = (assumed, ranged)
         for name in defined_by(entry):
@@ -176,11 +180,12 @@ class _Reach:
         ranged = self.by_id[entry.id][1]
         return tuple(id for id, names in self.ranges if names & ranged) if ranged else ()
 
-    def of(self, entry: Entry) -> tuple[tuple[str, ...], frozenset[str]]:
-        """What a statement hangs on; the assumptions behind the ranges of its names count too."""
+    def of(self, entry: Entry) -> tuple[tuple[str, ...], frozenset[str], tuple[str, ...]]:
+        """Open assumptions, names with ranges and unread keys; those behind the ranges of its names count too."""
         assumed, ranged = self.by_id[entry.id]
         assumed = assumed.union(*(self.behind[name] for name in ranged))
-        return tuple(key for key in self.assumptions if key in assumed), ranged
+        still_open = tuple(key for key in self.assumptions if key in assumed)
+        return still_open, ranged, tuple(sorted(assumed - set(still_open)))
 
 
 # --- numbers of sections and steps --------------------------------------------------------------------------

@@ -99,4 +99,9 @@ def finding(
     help: str = "",
 ) -> Finding:
     """A finding with the severity that the registry states for its slug."""
-    return Finding(slug, SLUGS[slug][0], message, span, source, label, remarks, help)
+    return Finding(slug, SLUGS[slug][0], printable(message), span, source, label, remarks, printable(help))
+
+
+def printable(text: str) -> str:
+    """A text without control characters, which a sheet may have put into it: each is shown as a mark."""
+    return text if text.isprintable() else "".join(c if c.isprintable() else "\ufffd" for c in text)

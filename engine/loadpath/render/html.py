@@ -123,22 +123,23 @@ def title_block_strings(block: TitleBlock, alerts: tuple[str, ...]) -> str:
 
 
 def _breakable(text: str, width: int) -> str:
-    """A text whose words may be broken where a cell can't hold them: margin boxes break no word by themselves."""
-    return re.sub(rf"(\S{{{width}}})(?=\S)", "\\1\u200b", text)
+    """A text whose words may be broken where a cell can't hold them: margin boxes break no word."""
+    return re.sub(rf"([^\s-]{{{width}}})(?=[^\s-])", "\\1\u200b", text)
 
 
 def _lines(text: str, width: int) -> int:
-    """Lines that a text takes in a cell, by words; wide characters count twice."""
+    """Lines that a text takes in a cell, by words and their hyphens; wide characters count twice."""
     total = 0
     for line in text.split("\n"):
         used = 0
         total += 1
-        for word in line.split():
-            size = sum(2 if unicodedata.east_asian_width(c) in "WF" else 1 for c in word)
-            if used and used + 1 + size > width:
-                total, used = total + 1, 0
+        for piece in re.findall(r"\s*(?:[^\s-]*-+|[^\s-]+)", line):
+            size = sum(2 if unicodedata.east_asian_width(c) in "WF" else 1 for c in piece.strip())
+            space = int(bool(used) and piece[0].isspace())
+            if used and used + space + size > width:
+                total, used, space = total + 1, 0, 0
             total += max(math.ceil(size / width) - 1, 0)
-            used += size + bool(used)
+            used += size + space
     return max(total, 1)
 
 

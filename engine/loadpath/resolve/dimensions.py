@@ -135,7 +135,13 @@ class Checker:
         found = Type()
         for part in node.parts:
             place = node.unit_span if part is node.parts[-1] else node.span
-            unit = read_unit(part.unit, place, self.is_name)
+            try:
+                unit = read_unit(part.unit, place, self.is_name)
+            except Mistake as mistake:
+                if mistake.slug == "implied-multiplication":
+                    number = part.whole or "/".join(part.over or ())
+                    mistake.help = f"a product is typed with `*`: `{number}*{part.unit}`"
+                raise
             self.warnings += names_behind_operators(unit, place, self.is_name)
             found = type_of_unit(unit, place)
         return found

@@ -15,7 +15,7 @@ USUAL_POWER, USUAL_PARTS = 24, (1, 2, 3, 4, 6)
 """Exponents within these, with these denominators, have a unit in every system."""
 MASS_UNITS = {
     "lb": "lbf",
-    "kg": "kgf or N",
+    "kg": "kgf",
     "g": "N",
     "tonne": "kN",
     "slug": "lbf",

@@ -70,6 +70,9 @@ class _Resolver:
         self.warned: set[str] = set()
         self.work: dict[str, int] = {}
         self.depth: dict[str, int] = {}
+        self.said: dict[tuple[str, int | str], int] = {}
+        """Line of the first of several findings that are one mistake."""
+        self.once: set[tuple[str, int | str]] = set()
         """Operations of each function of the sheet."""
         self.work_in_all = 0
 
@@ -91,7 +94,8 @@ class _Resolver:
             message = f"more than {MOST_STATEMENTS} statements on one sheet"
             place = statements[MOST_STATEMENTS].span
             self._report(Mistake("over-limit", place, message, "split it into several sheets"))
-        return statements[:MOST_STATEMENTS]
+            return ()
+        return statements
 
     def _overrides(self) -> tuple[tuple[str, str], ...]:
         """The sheet's own units by kind; those of another dimension are mistakes."""
@@ -136,7 +140,8 @@ class _Resolver:
     def _line_of(self, mistakes: list[Mistake], statement: Statement, kind: Kind) -> int:
         """The line of the statement's own mistake, 0 where it has none."""
         if mistakes:
-            return self.source.line_number(mistakes[0].span.start)
+            line = self.source.line_number(mistakes[0].span.start)
+            return self.said.get((mistakes[0].slug, mistakes[0].message), line)
         if kind != "faulty":
             return 0
         trouble: Span = getattr(statement, "trouble", Span(0, 0))
@@ -159,7 +164,14 @@ class _Resolver:
         self.entries.append(entry)
 
     def _report(self, mistake: Mistake) -> None:
-        self.found.append(mistake.as_finding(self.source))
+        """A mass used as a force in several places, or a name missing in several, is one mistake: at the first."""
+        new = mistake.as_finding(self.source)
+        if new.slug in ("mass-as-force", "unknown-name"):
+            key = (new.slug, new.line if new.slug == "mass-as-force" else new.message)
+            if self.said.setdefault(key, new.line) != new.line or key in self.once:
+                return
+            self.once.add(key)
+        self.found.append(new)
 
     def _warn(self) -> None:
         """Reports what the checker gathered; that a unit is also a name is said once for each name."""

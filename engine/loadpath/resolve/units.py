@@ -41,8 +41,11 @@ def _name_in_unit(unit: str, bad: BadUnit, span: Span) -> Mistake:
     name = bad.part
     if name == unit:
         message = f"no operator stands before `{name}`, which is a name of this sheet and no unit"
-        return Mistake("implied-multiplication", span, message, f"a product is typed with `*`: `2*{name}`")
+        return Mistake("implied-multiplication", span, message, f"a product is typed with `*`: `...*{name}`")
     before, sign = unit[: bad.at].rstrip("*/"), unit[bad.at - 1 : bad.at]
+    if not before:
+        message = f"no operator stands before `{name}`, which is a name of this sheet and no unit"
+        return Mistake("implied-multiplication", span, message, f"a product is typed with `*`: `...*{unit}`")
     help = (
         f"`{name}` is a name of this sheet: put spaces round the `{sign}`, as in `12 {before} {sign} {name}`"
     )

@@ -11,6 +11,8 @@ from xml.parsers import expat
 from loadpath.project import LARGEST_FILE, Refused, TooLarge, World
 
 PNG, JPEG, SVG = "image/png", "image/jpeg", "image/svg+xml"
+DEEPEST_SVG = 100
+"""Elements of a drawing within one another."""
 LARGEST_SVG = 2_000_000
 """Bytes of a drawing, which is read whole before it is let through."""
 
@@ -102,9 +104,11 @@ def check_svg(data: bytes) -> None:
     except UnicodeDecodeError:
         raise Refused("it is not UTF-8 text") from None
     parser = expat.ParserCreate(namespace_separator=" ")
-    _Drawing().watch(parser)
+    drawing = _Drawing()
+    drawing.watch(parser)
     try:
         parser.Parse(text, True)
+        drawing.finish()
     except expat.ExpatError as error:
         raise Refused(f"it is not well-formed XML (line {error.lineno})") from None
 
@@ -116,6 +120,12 @@ class _Drawing:
         self.depth = 0
         self.in_style = False
         self.style: list[str] = []
+        self.ids: list[str] = []
+        """Of the elements that are open, "" for one without."""
+        self.repeated: set[str] = set()
+        """What a `use` repeats."""
+        self.repeating: set[str] = set()
+        """What holds a `use`."""
 
     def watch(self, parser: expat.XMLParserType) -> None:
         parser.StartElementHandler = self.start
@@ -134,6 +144,12 @@ class _Drawing:
         for key, value in attributes.items():
             self.attribute(key.rpartition(" ")[2].lower(), value)
         self.depth += 1
+        if self.depth > DEEPEST_SVG:
+            raise Refused(f"its elements lie more than {DEEPEST_SVG} deep")
+        self.ids.append(attributes.get("id", ""))
+        if local == "use":
+            self.repeated |= {v[1:] for k, v in attributes.items() if k.endswith("href") and v.startswith("#")}
+            self.repeating |= set(self.ids)
         self.in_style, self.style = local.lower() == "style", []
 
     def attribute(self, name: str, value: str) -> None:
@@ -148,8 +164,14 @@ class _Drawing:
         if self.in_style:
             self.style.append(text)
 
+    def finish(self) -> None:
+        """Repeats within repeats multiply: a small file of them stops a browser."""
+        if (self.repeated & self.repeating) - {""}:
+            raise Refused("a `use` repeats what holds a `use`")
+
     def end(self, _name: str) -> None:
         self.depth -= 1
+        self.ids.pop()
         if self.in_style:
             self.css("".join(self.style))
         self.in_style = False

@@ -131,6 +131,9 @@ def _atom(name: str) -> tuple[Fraction, Dimension, Fraction]:
 # --- compound units -----------------------------------------------------------------------------------------
 
 
+_OTHER_SIGNS = str.maketrans({"²": "^2", "³": "^3", "⁴": "^4", "·": "*", "⋅": "*", "×": "*"})
+
+
 @lru_cache(maxsize=4096)
 def parse_unit(text: str) -> Unit:
     """The unit that a text names. Raises `BadUnit` with slug, message, mend and the part that is wrong."""
@@ -141,6 +144,8 @@ def parse_unit(text: str) -> Unit:
         return Unit(f"ft-in 1/{feet.group(1)}", inch.factor, inch.dimension, atoms=inch.atoms)
     if len(text) > LONGEST:
         raise BadUnit("bad-unit", f"a unit of more than {LONGEST} characters", "", text[:20])
+    if text != (plain := text.translate(_OTHER_SIGNS)):
+        raise BadUnit("bad-unit", f"`{text}` holds signs that are not typed in a unit", f"write `{plain}`", text)
     for match in _ATOM.finditer(text):
         if not is_unit(match.group()):
             raise unknown_unit(match.group(), text, match.start())
