@@ -1,4 +1,4 @@
-"""One setting for every property test: the same examples at each run, no wall clock. Campaigns look further."""
+"""One setting for every property test: the same examples at each run, no clock. Campaigns look further."""
 
 from __future__ import annotations
 

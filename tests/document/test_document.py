@@ -104,7 +104,8 @@ def sheet_of(*outcomes: str) -> str:
 def test_the_first_line(outcomes: list[str], said: str) -> None:
     trace = traced(sheet_of(*outcomes), ASSUMED)
     document = build(trace, "9.9.9")
-    assert conclusion(trace) == said
+    unfit = "not for use, 1 error; " if "unread" in outcomes else ""
+    assert conclusion(trace) == unfit + said
     assert ", ".join(phrase for phrase, _ in document.summary.conclusion) == said
     weak = [phrase for phrase, strong in document.summary.conclusion if not strong]
     all_satisfied = "conditional" in outcomes and set(outcomes) <= {"ok", "conditional"}

@@ -221,7 +221,8 @@ class _Run:
             if planned.unread:
                 keys = ", ".join(f"[{key}]" for key in planned.unread)
                 why = step.why or f"{keys} is no source or assumption that could be read"
-                self.steps[index] = replace(step, verdict=Verdict(None, conditional_on=planned.assumed), why=why)
+                verdict = Verdict(None, conditional_on=planned.assumed)
+                self.steps[index] = replace(step, verdict=verdict, why=why)
             elif missed := tuple(sorted(planned.ranged & (outside | set(unknown)))):
                 why = step.why or next((unknown[name] for name in missed if name in unknown), "")
                 verdict = Verdict(None, outside=missed, conditional_on=verdict.conditional_on)

@@ -181,7 +181,7 @@ class _Reach:
         return tuple(id for id, names in self.ranges if names & ranged) if ranged else ()
 
     def of(self, entry: Entry) -> tuple[tuple[str, ...], frozenset[str], tuple[str, ...]]:
-        """Open assumptions, names with ranges and unread keys; those behind the ranges of its names count too."""
+        """Open assumptions, names with ranges and unread keys; those behind the ranges count too."""
         assumed, ranged = self.by_id[entry.id]
         assumed = assumed.union(*(self.behind[name] for name in ranged))
         still_open = tuple(key for key in self.assumptions if key in assumed)

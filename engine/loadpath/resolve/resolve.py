@@ -164,7 +164,7 @@ class _Resolver:
         self.entries.append(entry)
 
     def _report(self, mistake: Mistake) -> None:
-        """A mass used as a force in several places, or a name missing in several, is one mistake: at the first."""
+        """A mass used as a force, or a name missing, in several places is one mistake: at the first."""
         new = mistake.as_finding(self.source)
         if new.slug in ("mass-as-force", "unknown-name"):
             key = (new.slug, new.line if new.slug == "mass-as-force" else new.message)

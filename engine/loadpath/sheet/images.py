@@ -148,7 +148,8 @@ class _Drawing:
             raise Refused(f"its elements lie more than {DEEPEST_SVG} deep")
         self.ids.append(attributes.get("id", ""))
         if local == "use":
-            self.repeated |= {v[1:] for k, v in attributes.items() if k.endswith("href") and v.startswith("#")}
+            links = [value for key, value in attributes.items() if key.endswith("href")]
+            self.repeated |= {link[1:] for link in links if link.startswith("#")}
             self.repeating |= set(self.ids)
         self.in_style, self.style = local.lower() == "style", []
 

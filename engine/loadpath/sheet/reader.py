@@ -13,6 +13,8 @@ from loadpath.sheet.model import FrontMatter, Sheet
 from loadpath.text import Source, Span
 
 MOST_LINES = 50_000
+LONGEST_PARAGRAPH = 50_000
+"""Characters of a run of lines of prose."""
 
 
 def read_sheet(source: Source, world: World) -> Sheet:
@@ -47,6 +49,17 @@ def read_sheet_file(path: Path, root: Path | None = None) -> Sheet:
     return read_sheet(Source(str(path), text), FolderWorld(path, root))
 
 
+def _endless_paragraph(source: Source) -> Span | None:
+    """The line at which a run of lines of prose, unbroken by an empty one, becomes too long to be read."""
+    length = 0
+    for number, start in enumerate(source.line_starts, 1):
+        line = source.text[start : start + LONGEST_PARAGRAPH + 1].partition("\n")[0]
+        length = 0 if not line.strip() or line.startswith(("    ", "\t")) else length + len(line)
+        if length > LONGEST_PARAGRAPH:
+            return source.line_span(number)
+    return None
+
+
 def _refusal(source: Source) -> Finding | None:
     if len(source.text) > LARGEST_SHEET:
         return finding(
@@ -55,6 +68,14 @@ def _refusal(source: Source) -> Finding | None:
     if len(source.line_starts) > MOST_LINES:
         return finding(
             "over-limit", f"the sheet has more than {MOST_LINES} lines", source, None, help="split it"
+        )
+    if (place := _endless_paragraph(source)) is not None:
+        return finding(
+            "over-limit",
+            f"a paragraph of more than {LONGEST_PARAGRAPH} characters",
+            source,
+            place,
+            help="part it by empty lines",
         )
     match = forbidden(source.text)
     if match is None:

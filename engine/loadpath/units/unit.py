@@ -145,7 +145,7 @@ def parse_unit(text: str) -> Unit:
     if len(text) > LONGEST:
         raise BadUnit("bad-unit", f"a unit of more than {LONGEST} characters", "", text[:20])
     if text != (plain := text.translate(_OTHER_SIGNS)):
-        raise BadUnit("bad-unit", f"`{text}` holds signs that are not typed in a unit", f"write `{plain}`", text)
+        raise BadUnit("bad-unit", f"`{text}` holds signs that no unit takes", f"write `{plain}`", text)
     for match in _ATOM.finditer(text):
         if not is_unit(match.group()):
             raise unknown_unit(match.group(), text, match.start())
