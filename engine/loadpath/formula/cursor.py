@@ -181,10 +181,12 @@ class Cursor:
         return Mistake("bad-syntax", place, f"`{word}` cannot stand here", mend)
 
     def _no_operator(self, shown: str) -> Mistake:
-        return Mistake(
-            "implied-multiplication", self.here(len(shown)), f"no operator stands before `{shown}`",
-            f"a product is typed with `*`: `{self.before()}*{shown}`; a unit stands behind a number only",
-        )  # fmt: skip
+        before = self.before()
+        mend = f"a product is typed with `*`: `{before}*{shown}`; a unit stands behind a number only"
+        if before.isdigit() and (digits := re.match(r"\d{3}(?!\d)", self.text[self.at :])):
+            mend = f"groups of digits are joined by `_`: `{before}_{digits.group()}`"
+        place = self.here(len(shown))
+        return Mistake("implied-multiplication", place, f"no operator stands before `{shown}`", mend)
 
     def _stray_bracket(self) -> Mistake:
         number, unit = self.before(), self.text[self.at + 1 :].partition("]")[0].strip()
