@@ -23,7 +23,7 @@ def citation_findings(trace: Trace) -> Iterator[Finding]:
         for entry in entries:
             if entry.key not in cited and _is_own(trace, entry):
                 yield _unused(trace, kind, entry)
-    yield from _annex(trace)
+    yield from _annex(trace, cited)
 
 
 def _cited(trace: Trace) -> set[str]:
@@ -48,13 +48,15 @@ def _unused(trace: Trace, kind: str, entry: SourceEntry | Assumption) -> Finding
     )  # fmt: skip
 
 
-def _annex(trace: Trace) -> Iterator[Finding]:
+def _annex(trace: Trace, cited: set[str]) -> Iterator[Finding]:
+    """Of the sources of a `project.yaml` only those that this sheet cites."""
     front = trace.sheet.front
     if "codes" in front.unread or any(_ANNEX.search(code) for code in front.codes):
         return
     help = "name it in `codes`: `EN 1993-1-1:2005 with its national annex`"
     for entry in front.sources:
-        if (match := _EUROCODE.search(entry.text)) is not None:
+        used = entry.key in cited or _is_own(trace, entry)
+        if used and (match := _EUROCODE.search(entry.text)) is not None:
             message = (
                 f"the source `{entry.key}` is a Eurocode, {match.group()}, and `codes` names no annex to it"
             )

@@ -229,7 +229,7 @@ class Values:
 
     def file(self, node: Yaml) -> str:
         text = self.text(node) or ""
-        if not text.startswith("/") and not re.search(r"[\\:]", text):
+        if not text.startswith("/") and not re.search(r"[\\:]", text) and ".." not in text.split("/"):
             return text
         help = "write its path from the folder that this is typed in: `data-sheet.pdf`"
         self.wrong("the file of a source is one of the project's", node.span, help)
