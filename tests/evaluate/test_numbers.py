@@ -12,10 +12,11 @@ from hypothesis import strategies as st
 import loadpath
 from loadpath.evaluate.explain import run
 from loadpath.evaluate.failure import Failure
-from loadpath.evaluate.numbers import Compiler, holds, nearly
+from loadpath.evaluate.numbers import Compiler
 from loadpath.formula.lines import Item
 from loadpath.formula.parser import parse_block
 from loadpath.formula.reader import Reader
+from loadpath.formula.signs import holds, nearly
 from loadpath.formula.statements import FunctionDefinition
 from loadpath.formula.tree import Binary, Negative, Node, Number
 from loadpath.text import Source, Span

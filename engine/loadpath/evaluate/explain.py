@@ -8,7 +8,8 @@ from collections.abc import Callable, Iterator
 from typing import Any
 
 from loadpath.evaluate.failure import Failure, Show, short
-from loadpath.evaluate.numbers import Compiler, Values, Work, holds
+from loadpath.evaluate.numbers import Compiler, Values, Work
+from loadpath.formula.signs import holds
 from loadpath.formula.tree import (
     As,
     Binary,

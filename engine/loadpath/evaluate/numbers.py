@@ -10,6 +10,7 @@ import math
 from collections.abc import Callable, Mapping
 from typing import Any
 
+from loadpath.formula.signs import holds
 from loadpath.formula.statements import FunctionDefinition
 from loadpath.formula.tree import (
     As,
@@ -37,31 +38,8 @@ Values = Mapping[str, Any]
 Work = Callable[[Values, Values], Any]
 """Takes the values of the sheet's names and of the enclosing function's parameters."""
 
-EQUAL = 1e-9
-"""Sides of a relation within this much of the larger are equal."""
 ON_THE_BRACKET = 1e-12
 """A difference within this much of its larger operand is zero inside a Macaulay bracket."""
-
-
-def nearly(a: float, b: float) -> bool:
-    """True where two sides count as equal."""
-    return abs(a - b) <= EQUAL * max(abs(a), abs(b))
-
-
-_COMPARE: dict[str, Callable[[float, float], bool]] = {
-    "<=": lambda a, b: a < b or nearly(a, b),
-    "<": lambda a, b: a < b and not nearly(a, b),
-    ">=": lambda a, b: a > b or nearly(a, b),
-    ">": lambda a, b: a > b and not nearly(a, b),
-    "=": nearly,
-}
-
-
-def holds(sign: str, a: float | str, b: float | str) -> bool:
-    """One relation between two values, words included."""
-    if isinstance(a, str) or isinstance(b, str):
-        return a == b
-    return _COMPARE[sign](a, b)
 
 
 def part_value(part: Part) -> float:

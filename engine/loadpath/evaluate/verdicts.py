@@ -8,8 +8,8 @@ from __future__ import annotations
 from dataclasses import dataclass, replace
 from math import isfinite
 
-from loadpath.evaluate.numbers import holds, nearly
 from loadpath.formula.canonical import text
+from loadpath.formula.signs import holds, nearly
 from loadpath.formula.tree import Call, Logic, Name, Negative, Node, Relation, Sign, walk
 from loadpath.trace.model import Verdict
 

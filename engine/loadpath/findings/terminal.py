@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections.abc import Iterable
 
 from loadpath.findings.model import Finding
+from loadpath.findings.registry import printable
 
 WIDEST = 110
 """Characters of a line of the sheet that are shown."""
@@ -36,19 +37,14 @@ def excerpt(finding: Finding) -> tuple[str, str, str]:
 
 
 def _excerpt(finding: Finding) -> list[str]:
-    before, at, after = (_printable(piece) for piece in excerpt(finding))
+    before, at, after = (printable(piece) for piece in excerpt(finding))
     label = f" {finding.label}" if finding.label else ""
     shown = (before + at + after).rstrip()
     return [f"{finding.line:5} | {shown}", f"      | {' ' * len(before)}{'^' * len(at)}{label}"]
 
 
 def _one_line(text: str) -> str:
-    return _printable(" ".join(text.split("\n")))
-
-
-def _printable(text: str) -> str:
-    """A control character could move a terminal's cursor: it is shown as a mark."""
-    return "".join(c if c.isprintable() else "\ufffd" for c in text)
+    return printable(" ".join(text.split("\n")))
 
 
 def text(findings: Iterable[Finding], *, bold: bool = False) -> str:

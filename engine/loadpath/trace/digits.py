@@ -6,6 +6,7 @@ import math
 from collections.abc import Sequence
 from itertools import chain, pairwise
 
+from loadpath.formula.signs import EQUAL, nearly
 from loadpath.formula.statements import Criterion
 from loadpath.formula.tree import Logic, Name, Negative, Node, Number, Quantity, Relation
 from loadpath.trace.model import Step, Verdict
@@ -14,7 +15,6 @@ from loadpath.units.printing import MOST_DIGITS, plain, read_plain, typeset
 
 RATIO_PLACES = 3
 """Decimals of a utilisation, before they grow."""
-EQUAL = 1e-9
 
 
 def digits_of_verdict(step: Step, base: int) -> tuple[int, list[str]]:
@@ -53,7 +53,7 @@ def in_order(a: float, b: float, first: str, second: str) -> bool:
     """True where two plain numbers stand to each other as the values that they print; values that count as
     equal print alike."""
     left, right = read_plain(first), read_plain(second)
-    if abs(a - b) <= EQUAL * max(abs(a), abs(b)):
+    if nearly(a, b):
         return left == right
     return left != right and (left < right) == (a < b)
 

@@ -11,10 +11,11 @@ from dataclasses import dataclass, replace
 from itertools import pairwise
 
 from loadpath.formula.canonical import statement_text
+from loadpath.formula.signs import holds
 from loadpath.formula.statements import Check, Criterion, Definition, Validity
 from loadpath.formula.tree import Binary, Call, Logic, Name, Node, Number, Relation, Shown, Sign, walk
 from loadpath.resolve import expressions
-from loadpath.trace.digits import EQUAL, exact_digits, in_order, order_digits, typed_number
+from loadpath.trace.digits import exact_digits, in_order, order_digits, typed_number
 from loadpath.trace.model import Called, Operand, Step, Trace, Working
 from loadpath.trace.substitute import Scope, natural_unit, shown, substitute, with_factors
 from loadpath.units import ONE, Unit
@@ -224,17 +225,7 @@ _OPPOSITE: dict[Sign, Sign] = {"<=": ">", "<": ">=", ">=": "<", ">": "<=", "=": 
 
 def _sign_that_holds(asked: Sign, a: float | str, b: float | str) -> Sign:
     """The sign asked for, or its opposite where it does not hold."""
-    if isinstance(a, str) or isinstance(b, str):
-        return asked if a == b else _OPPOSITE[asked]
-    equal = abs(a - b) <= EQUAL * max(abs(a), abs(b))
-    held = {
-        "<=": a < b or equal,
-        "<": a < b and not equal,
-        ">=": a > b or equal,
-        ">": a > b and not equal,
-        "=": equal,
-    }
-    return asked if held[asked] else _OPPOSITE[asked]
+    return asked if holds(asked, a, b) else _OPPOSITE[asked]
 
 
 def _is_worked(node: Node, unit: Unit, scope: Scope) -> bool:
