@@ -12,8 +12,8 @@ ROOT = Path(__file__).parents[1]
 PACKAGE = ROOT / "engine" / "loadpath"
 
 LAYERS = [
-    "text", "findings", "functions", "formula", "units", "project", "sheet", "resolve", "trace", "evaluate",
-    "checking", "document", "render", "pipeline", "cli", "__main__",
+    "text", "findings", "functions", "formula", "units", "algebra", "numeric", "figures", "project", "sheet",
+    "resolve", "trace", "evaluate", "checking", "document", "render", "pipeline", "cli", "__main__",
 ]  # fmt: skip
 """In the order that data flows; each may import from those before it."""
 

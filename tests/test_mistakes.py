@@ -32,6 +32,7 @@ NO_SHEET_ALONE = {
     "unreadable-file": "a file that is not there or not text is no sheet",
     "image-type": "takes an image file beside the sheet",
     "engine-fault": "no sheet should cause one",
+    "algebra-time-out": "what takes longer than the limit hangs on the machine; tests/algebra cause it",
 }
 """Slugs without a case here, and why."""
 

@@ -1,91 +1,37 @@
-"""Sheets against published results: every case of open.yaml, each with its source beside it in the file.
+"""Sheets against published results: every case of open.yaml and algebra.yaml, each with its source beside it.
 
 A case has a sheet `<id>.sheet.md` or a reason in not_yet.yaml, never both and never neither. The expected
-values are turned into SI here, by a small table of exact factors of this test's own, so that a wrong factor
-in the engine can't cancel itself out.
+values are turned into SI by a table of exact factors of the tests' own (si_factors.py). Those of algebra.yaml
+are worked again by general libraries (recompute.py).
 """
 
 import math
 import re
-from fractions import Fraction
 from pathlib import Path
 from typing import Any
 
 import pytest
 import yaml
+from recompute import WORKED, compared
+from si_factors import si
 
 import loadpath
 
 HERE = Path(__file__).parent
-CASES: dict[str, dict[str, Any]] = {
-    case["id"]: case for case in yaml.safe_load((HERE / "open.yaml").read_text(encoding="utf-8"))
-}
+
+
+def cases(name: str) -> dict[str, dict[str, Any]]:
+    return {case["id"]: case for case in yaml.safe_load((HERE / name).read_text(encoding="utf-8"))}
+
+
+OPEN, ALGEBRA = cases("open.yaml"), cases("algebra.yaml")
+CASES = OPEN | ALGEBRA
 NOT_YET: dict[str, str] = yaml.safe_load((HERE / "not_yet.yaml").read_text(encoding="utf-8"))
-
-# source: NIST SP 811 (2008), appendix B (from memory): the definitions, from which all other factors follow.
-INCH = Fraction(254, 10_000)
-FOOT = 12 * INCH
-POUND = Fraction(45_359_237, 100_000_000)
-GRAVITY = Fraction(980_665, 100_000)
-LBF = POUND * GRAVITY
-HORSEPOWER = 550 * FOOT * LBF
-
-TO_SI: dict[str, Fraction] = {
-    "1": Fraction(1),
-    "N": Fraction(1),
-    "kN": Fraction(1_000),
-    "lbf": LBF,
-    "kip": 1_000 * LBF,
-    "kgf": GRAVITY,
-    "ton_force": 2_000 * LBF,
-    "m": Fraction(1),
-    "mm": Fraction(1, 1_000),
-    "cm": Fraction(1, 100),
-    "in": INCH,
-    "ft": FOOT,
-    "Pa": Fraction(1),
-    "kPa": Fraction(1_000),
-    "MPa": Fraction(1_000_000),
-    "GPa": Fraction(1_000_000_000),
-    "psi": LBF / INCH**2,
-    "ksi": 1_000 * LBF / INCH**2,
-    "kg": Fraction(1),
-    "lb": POUND,
-    "slug": LBF / FOOT,
-    "s": Fraction(1),
-    "W": Fraction(1),
-    "kW": Fraction(1_000),
-    "hp": HORSEPOWER,
-    "hp_metric": 75 * GRAVITY,
-    "microstrain": Fraction(1, 1_000_000),
-    "delta_degF": Fraction(5, 9),
-    "delta_degC": Fraction(1),
-    "rad": Fraction(1),
-    "deg": Fraction(1, 180),  # times pi
-    "rpm": Fraction(2, 60),  # times pi
-}
-TIMES_PI = ("deg", "rpm")
-
-
-def si(value: float, unit: str) -> float:
-    """A value of open.yaml in coherent SI units; an absolute temperature in kelvin."""
-    if unit == "degF":
-        return float((Fraction(str(value)) + Fraction(45_967, 100)) * Fraction(5, 9))
-    factor, pis, sign = Fraction(1), 0, 1
-    for part in re.split(r"([*/])", unit):
-        if part in ("*", "/"):
-            sign = 1 if part == "*" else -1
-            continue
-        name, _, power = part.partition("^")
-        exponent = sign * int(power or 1)
-        factor *= TO_SI[name] ** exponent
-        pis += exponent * (name in TIMES_PI)
-    return float(Fraction(str(value)) * factor) * math.pi**pis
 
 
 def test_every_case_has_a_sheet_or_a_reason_and_not_both() -> None:
     sheets = {path.name.removesuffix(".sheet.md") for path in HERE.glob("*.sheet.md")}
-    assert len(CASES) == 70
+    assert (len(OPEN), len(ALGEBRA)) == (70, 51)
     assert sheets.isdisjoint(NOT_YET)
     assert sheets | set(NOT_YET) == set(CASES)
 
@@ -107,10 +53,39 @@ def test_case(case_id: str) -> None:
             wrong.append(f"{given['name']}: {step.kind} {step.si}, the case has the input {value}")
     for expected in case["expected"]:
         step, value = trace[expected["name"]], si(expected["value"], expected["unit"])
-        if step.kind != "result" or not abs(step.si - value) <= expected["rel_tol"] * abs(value):
-            tolerance = expected["rel_tol"] * abs(value)
+        tolerance = expected["rel_tol"] * abs(value)
+        if step.kind not in ("result", "solution") or not abs(step.si - value) <= tolerance:
             wrong.append(f"{expected['name']}: {step.kind} {step.si}, published {value} +- {tolerance:.2g}")
     assert wrong == [], f"source: {case['source']}"
+
+
+@pytest.mark.parametrize("case_id", [case_id for case_id in ALGEBRA if "tables" in ALGEBRA[case_id]])
+def test_the_tables_of_the_case_stand_on_the_sheet(case_id: str) -> None:
+    lines = (HERE / f"{case_id}.sheet.md").read_text(encoding="utf-8").splitlines()
+    rows = [[cell.strip() for cell in line.strip("|").split("|")] for line in lines if line.startswith("|")]
+    typed = []
+    for table in ALGEBRA[case_id]["tables"]:
+        heads = [head if isinstance(head, str) else heading(**head) for head in table["columns"]]
+        typed += [heads, *[[str(cell) for cell in row] for row in table["rows"]]]
+    assert [row for row in rows if set("".join(row)) != {"-"}] == typed
+
+
+def heading(name: str, unit: str = "") -> str:
+    return f"{name} [{unit}]" if unit else name
+
+
+@pytest.mark.parametrize("case_id", ALGEBRA)
+def test_general_libraries_give_the_expected_values(case_id: str) -> None:
+    """source: the libraries named in the case; see recompute.py."""
+    assert list(WORKED) == list(ALGEBRA)
+    assert [row for row in compared(ALGEBRA[case_id]) if not row[3]] == []
+
+
+def test_a_wrong_expected_value_is_noticed() -> None:
+    case = ALGEBRA["A27-bar-between-walls"]
+    first, *others = case["expected"]
+    changed = {**case, "expected": [{**first, "value": first["value"] * (1 + 3 * first["rel_tol"])}, *others]}
+    assert [same for *_, same in compared(changed)] == [False, *[True] * len(others)]
 
 
 @pytest.mark.parametrize("case_id", ["O68-units-force-stress", "O69-units-mass-power"])
@@ -126,7 +101,7 @@ def test_the_factors_of_this_test_give_the_printed_ones(case_id: str) -> None:
 
 def test_the_readme_has_one_row_for_each_case() -> None:
     readme = (HERE / "README.md").read_text(encoding="utf-8")
-    rows = re.findall(r"^\| (O\d\d-\S+) \|.*\| (.+) \|$", readme, re.M)
+    rows = re.findall(r"^\| ([AO]\d\d-\S+) \|.*\| (.+) \|$", readme, re.M)
     assert [case_id for case_id, _ in rows] == list(CASES)
     for case_id, last in rows:
         if case_id in NOT_YET:

@@ -10,6 +10,7 @@ from loadpath.formula.lines import Item
 from loadpath.formula.reader import Reader
 from loadpath.formula.tree import (
     As,
+    At,
     Binary,
     Bracket,
     Branch,
@@ -73,6 +74,8 @@ def with_values(node: Any, values: dict[str, Node]) -> Any:
             return Bracket(with_values(inner, values), power)
         case As(operand=operand, unit=unit):
             return As(with_values(operand, values), unit)
+        case At(operand=operand, row=row):
+            return At(with_values(operand, values), with_values(row, values))
         case Relation(operands=operands, signs=signs):
             return Relation(tuple(with_values(o, values) for o in operands), signs)
     return node
@@ -115,7 +118,23 @@ def _grown(inner: st.SearchStrategy[Node]) -> st.SearchStrategy[Node]:
         st.builds(Call, many, st.lists(inner, max_size=3).map(tuple)),
         st.builds(Bracket, inner, st.integers(0, 3)),
         st.builds(As, inner, st.sampled_from(["psi", "in", "<b>"])),
+        st.builds(
+            At, inner, st.builds(Word, st.sampled_from(HOSTILE)) | st.builds(Name, st.sampled_from(NAMES))
+        ),
+        _calculus(inner),
         st.builds(Factor, inner, st.just("12"), st.sampled_from(["in/ft", "rad"]), st.booleans()),
+    )
+
+
+def _calculus(inner: st.SearchStrategy[Node]) -> st.SearchStrategy[Node]:
+    """Calls that print with a sign of their own."""
+    own = st.builds(Name, st.sampled_from(["x", "k", "xi"])) | inner
+    ranged = ["integral", "sum", "largest", "smallest", "where_largest", "where_smallest"]
+    return st.one_of(
+        st.builds(Call, st.sampled_from(["sum", "simplified"]), st.tuples(inner)),
+        st.builds(Call, st.sampled_from(["integral", "derivative"]), st.tuples(inner, own)),
+        st.builds(Call, st.just("limit_of"), st.tuples(inner, own, inner)),
+        st.builds(Call, st.sampled_from(ranged), st.tuples(inner, own, inner, inner)),
     )
 
 

@@ -11,8 +11,8 @@ from hypothesis import strategies as st
 from markdown_it import MarkdownIt
 
 from loadpath.formula.names import GREEK
-from loadpath.formula.tree import Branch, Cases, Factor, Name, Node, Relation, Shown, Word
-from loadpath.render.math import latex, latex_lines, mathml
+from loadpath.formula.tree import At, Branch, Cases, Factor, Name, Node, Relation, Shown, Word
+from loadpath.render.math import latex, latex_equations, latex_lines, mathml
 
 FORMULAS = [
     ("P_Ed*L/4", r"\dfrac{P_{\mathrm{Ed}} \cdot L}{4}"),
@@ -103,6 +103,37 @@ def test_conversion_factors() -> None:
     assert latex(divided) == r"(a + b) \div (12\thinspace \mathrm{in/ft})"
 
 
+CALCULUS = [
+    ("integral(w*x, x, 0 m, L)", r"\int_{0\thinspace \mathrm{m}}^{L} w \cdot x\thinspace \mathrm{d}x"),
+    ("integral(a + x, x)", r"\int (a + x)\thinspace \mathrm{d}x"),
+    ("c*integral(x, x, 0, L)*d", r"c \cdot \left(\int_{0}^{L} x\thinspace \mathrm{d}x\right) \cdot d"),
+    ("derivative(M(x), x)", r"\dfrac{\mathrm{d}}{\mathrm{d}x}\thinspace M(x)"),
+    ("derivative(a + x, x)/2", r"\dfrac{\frac{\mathrm{d}}{\mathrm{d}x}\thinspace (a + x)}{2}"),
+    ("limit_of(sin(x)/x, x, 0)", r"\lim_{x \to 0} \thinspace \dfrac{\sin(x)}{x}"),
+    ("sum(k^2, k, 0, 5)", r"\sum_{k = 0}^{5} k^{2}"),
+    ("sum(plates.A)", r"\sum \mathrm{plates.}A"),
+    ("largest(M(x), x, 0 m, L)", r"\max_{0\thinspace \mathrm{m} \le x \le L} \thinspace M(x)"),
+    ("smallest(V(x) + q, x, 0, L)", r"\min_{0 \le x \le L} \thinspace (V(x) + q)"),
+    ("where_largest(M(x), x, 0, L)", r"x\text{ at }\max_{0 \le x \le L} \thinspace M(x)"),
+    (
+        "where_smallest(M(x), x, 0, L) + a",
+        r"\left(x\text{ at }\min_{0 \le x \le L} \thinspace M(x)\right) + a",
+    ),
+    ("simplified(a*x + b*x)", r"\mathrm{simplified}(a \cdot x + b \cdot x)"),
+    ("interp(x, plates.y, plates.A)", r"\mathrm{interp}(x, \mathrm{plates.}y, \mathrm{plates.}A)"),
+]  # fmt: skip
+
+
+@pytest.mark.parametrize(("typed", "expected"), CALCULUS)
+def test_calculus_reads(typed: str, expected: str) -> None:
+    assert latex(formula(typed)) == expected
+
+
+def test_cells_read() -> None:
+    assert latex(At(Name("plates.A"), Word("top flange"))) == r"\mathrm{plates.}A\text{ at top flange}"
+    assert latex(At(Name("loads.P"), Name("case"))) == r"\mathrm{loads.}P\text{ at }\mathit{case}"
+
+
 CONDITIONS = [
     ("sigma <= f_y/gamma_M0", r"\sigma \le \dfrac{f_{\mathrm{y}}}{\gamma_{\mathrm{M0}}}"),
     ("a < b and c > d", r"a \lt b\enspace \text{and}\enspace c \gt d"),
@@ -153,11 +184,64 @@ def test_what_is_too_wide_is_aligned_and_broken_before_operators() -> None:
     ]
 
 
+def test_what_begins_within_a_bracket_is_set_in_deeper_and_a_long_term_stands_alone() -> None:
+    typed = "q + w*(a_long_name/2 + b_long_name - c_long_name + d_long_name) + e"
+    assert latex_lines(Name("M"), [formula(typed)], most=15).split("\n") == [
+        r"\begin{aligned}",
+        r"M & = q \cr",
+        r"& \qquad {} + w \cdot \Bigl(\dfrac{a_{\mathrm{long{,}name}}}{2} \cr",
+        r"& \qquad \quad {} + b_{\mathrm{long{,}name}} - c_{\mathrm{long{,}name}} \cr",
+        r"& \qquad \quad {} + d_{\mathrm{long{,}name}}\Bigr) \cr",
+        r"& \qquad {} + e",
+        r"\end{aligned}",
+    ]
+
+
+def test_a_range_that_is_too_wide_comes_down_to_the_line() -> None:
+    typed = "largest(M(x), x, a_first_of, b_second_of)"
+    assert latex_lines(None, [formula(typed)], most=11).split("\n")[1:-1] == [
+        r"& = \max[a_{\mathrm{first{,}of}} \le x \cr",
+        r"& \qquad \quad {} \le b_{\mathrm{second{,}of}}] \thinspace M(x)",
+    ]
+
+
+# --- equations ----------------------------------------------------------------------------------------------
+
+
+def test_equations_are_aligned_at_their_relations() -> None:
+    block = latex_equations([condition("R_A + R_B = P"), condition("0 = C_2"), condition("-a <= b <= c/2")])
+    assert block.split("\n") == [
+        r"\begin{aligned}",
+        r"R_{\mathrm{A}} + R_{\mathrm{B}} & = P \cr",
+        r"{} 0 & = C_{\mathrm{2}} \cr",
+        r"{} -a & \le b \le \dfrac{c}{2}",
+        r"\end{aligned}",
+    ]
+
+
+def test_each_equation_is_broken_by_itself() -> None:
+    chain = "y = a_long_name + b_long_name = c_long_name + d_long_name + e_long_name"
+    long_left = "a_long_name + b_long_name + c_long_name + d_long_name = 0"
+    block = latex_equations([condition(chain), condition(long_left), formula("a")], most=14)
+    assert block.split("\n") == [
+        r"\begin{aligned}",
+        r"y & = a_{\mathrm{long{,}name}} + b_{\mathrm{long{,}name}} \cr",
+        r"& = c_{\mathrm{long{,}name}} + d_{\mathrm{long{,}name}} \cr",
+        r"& \qquad {} + e_{\mathrm{long{,}name}} \cr",
+        r"& a_{\mathrm{long{,}name}} + b_{\mathrm{long{,}name}} \cr",
+        r"& \qquad {} + c_{\mathrm{long{,}name}} + d_{\mathrm{long{,}name}} \cr",
+        r"& = 0 \cr",
+        r"& a",
+        r"\end{aligned}",
+    ]
+
+
 # --- properties ---------------------------------------------------------------------------------------------
 
 MACROS = r"""
 \dfrac \frac \tfrac \sqrt \mathrm \mathit \text \cdot \times \div \thinspace \enspace \quad \qquad
 \le \ge \lt \gt \left \right \lvert \rvert \langle \rangle \circ \prime \begin \end \cr \surd \wedge
+\Bigl \Bigr \int \sum \lim \to \ldots
 \sin \cos \tan \sec \sinh \cosh \tanh \arcsin \arccos \arctan \exp \ln \log \min \max
 \alpha \beta \gamma \delta \varepsilon \zeta \eta \theta \iota \kappa \lambda \mu \nu \xi \pi \rho \sigma \tau
 \upsilon \varphi \chi \psi \omega \Gamma \Delta \Theta \Lambda \Xi \Pi \Sigma \Upsilon \Phi \Psi \Omega
@@ -212,10 +296,19 @@ def test_every_block_is_tame_and_passes_through_markdown(tree: Node, other: Node
     assert_markdown_leaves_it(text)
 
 
+@settings(max_examples=100, deadline=None)
+@given(st.lists(trees(), min_size=1, max_size=3), st.sampled_from([15.0, 42.0]))
+def test_every_block_of_equations_is_tame_and_passes_through_markdown(some: list[Node], most: float) -> None:
+    text = latex_equations(some, most=most)
+    assert_tame(text)
+    assert_markdown_leaves_it(text)
+
+
 @pytest.mark.parametrize("text", HOSTILE)
 def test_nothing_typed_gets_out(text: str) -> None:
     relation = Relation((Name("x"), Word(text)), ("=",))
-    for tree in (Word(text), Shown(text, "", True), Shown("2", text), relation):
+    cell = At(Name("plates.A"), Word(text))
+    for tree in (Word(text), Shown(text, "", True), Shown("2", text), relation, cell):
         assert_tame(latex(tree))
         assert_markdown_leaves_it(latex_lines(None, [tree]))
 

@@ -10,10 +10,11 @@ from formula_trees import HOSTILE, arithmetic, condition, formula, trees, with_v
 from hypothesis import given, settings
 from hypothesis import strategies as st
 
-from loadpath.formula.tree import Branch, Cases, Factor, Name, Node, Number, Relation, Shown, Word
-from loadpath.render.math import COLUMN, flow, mathml, pieces, widest
+from loadpath.formula.tree import At, Binary, Branch, Cases, Factor, Name, Node, Number, Relation, Shown, Word
+from loadpath.render.math import COLUMN, equations, flow, mathml, pieces, widest
+from loadpath.render.math.boxes import Box, Fraction, Power, Ranged, inside
 from loadpath.render.math.breaking import cuts
-from loadpath.render.math.layout import lay_out
+from loadpath.render.math.layout import MOST_FRACTIONS, lay_out
 from loadpath.render.math.width import width
 
 VALUES: dict[str, Node] = {
@@ -28,7 +29,7 @@ VALUES: dict[str, Node] = {
 
 
 def seen(text: str) -> str:
-    """MathML in one line: `{top | bottom}`, `x_{a}^{2}`, `√[x]`, `~word~`; a space is `·`."""
+    """MathML in one line: `{top | bottom}`, `x_{a}^{2}`, `∑[below][above]`, `√[x]`, `~word~`; `·` a space."""
     return _seen(ElementTree.fromstring(text))
 
 
@@ -50,6 +51,10 @@ def _seen(element: ElementTree.Element) -> str:
             return f"{inner[0]}^{{{inner[1]}}}"
         case "msubsup":
             return f"{inner[0]}_{{{inner[1]}}}^{{{inner[2]}}}"
+        case "munder":
+            return f"{inner[0]}[{inner[1]}]"
+        case "munderover":
+            return f"{inner[0]}[{inner[1]}][{inner[2]}]"
         case "mroot":
             return f"{inner[1]}√[{inner[0]}]"
         case "msqrt":
@@ -182,6 +187,90 @@ def test_conversion_factors() -> None:
     assert seen(mathml(Factor(formula("a + b"), "12", "in/ft", True))) == "(a+b)÷(12·in/ft)"
 
 
+CALCULUS = [
+    ("integral(w*x, x, 0 m, L)", "∫_{0·m}^{L}w⋅x·dx"),
+    ("integral(M(x)^2/(2*E*I), x, 0, L)", "∫_{0}^{L}{(M(x))^{2} | 2⋅E⋅I}·dx"),
+    ("integral(w(x), x)", "∫w(x)·dx"),
+    ("integral(a + x, x)", "∫(a+x)·dx"),
+    ("integral(-x, x, a, b/2)", "∫_{a}^{b/2}(−x)·dx"),
+    ("integral(integral(x*y, x, 0, y), y, 0, 1)", "∫_{0}^{1}(∫_{0}^{y}x⋅y·dx)·dy"),
+    ("derivative(M(x), x)", "{d | dx}·M(x)"),
+    ("derivative(a + x, x)", "{d | dx}·(a+x)"),
+    ("derivative(E*I*v(x), x)", "{d | dx}·(E⋅I⋅v(x))"),
+    ("derivative(x/L, x)", "{d | dx}·{x | L}"),
+    ("limit_of(sin(x)/x, x, 0)", "lim[x→0]·{sin(x) | x}"),
+    ("sum(k^2, k, 0, 5)", "∑[k=0][5]k^{2}"),
+    ("sum(a + k, k, 1, n)", "∑[k=1][n](a+k)"),
+    ("sum(plates.A)", "∑plates.A"),
+    ("sum(plates.A*plates.y)/sum(plates.A)", "{∑plates.A⋅plates.y | ∑plates.A}"),
+    ("largest(abs(M(x)), x, 0 m, B1.L)", "max[0·m≤x≤B1.L]·|M(x)|"),
+    ("smallest(V(x) - q, x, 0, L/2)", "min[0≤x≤L/2]·(V(x)−q)"),
+    ("where_largest(M(x), x, 0, L)", "x\xa0at\xa0max[0≤x≤L]·M(x)"),
+    ("simplified(a*x + b*x)", "simplified(a⋅x+b⋅x)"),
+    ("interp(x, xs, ys) + lookup(x, xs, ys)", "interp(x,~xs~,~ys~)+lookup(x,~xs~,~ys~)"),
+    ("count(plates.A)", "count(plates.A)"),
+    ("sum(a, b)", "sum(a,b)"),
+]
+
+
+@pytest.mark.parametrize(("typed", "expected"), CALCULUS)
+def test_calculus_reads(typed: str, expected: str) -> None:
+    assert seen(mathml(formula(typed))) == expected
+
+
+AMONG_OTHERS = [
+    ("integral(x, x, 0, L) + c", "∫_{0}^{L}x·dx+c"),
+    ("integral(x, x, 0, L)*c", "(∫_{0}^{L}x·dx)⋅c"),
+    ("c*integral(x, x, 0, L)", "c⋅∫_{0}^{L}x·dx"),
+    ("c*integral(x, x, 0, L)*d", "c⋅(∫_{0}^{L}x·dx)⋅d"),
+    ("c*integral(x, x, 0, L) + d", "c⋅∫_{0}^{L}x·dx+d"),
+    ("a - integral(x, x)", "a−∫x·dx"),
+    ("integral(x, x, 0, L)^2", "(∫_{0}^{L}x·dx)^{2}"),
+    ("derivative(M(x), x) + q", "({d | dx}·M(x))+q"),
+    ("E*derivative(v(x), x)", "E⋅{d | dx}·v(x)"),
+    ("E*derivative(v(x), x)*I", "E⋅({d | dx}·v(x))⋅I"),
+    ("sum(k, k, 1, n) + b", "(∑[k=1][n]k)+b"),
+    ("a*sum(k, k, 1, n) + b", "a⋅(∑[k=1][n]k)+b"),
+    ("-sum(k, k, 1, n) - b", "−(∑[k=1][n]k)−b"),
+    ("b + sum(k, k, 1, n)", "b+∑[k=1][n]k"),
+    ("sum(plates.A)*h", "(∑plates.A)⋅h"),
+    ("limit_of(M(x), x, L) + 1", "(lim[x→L]·M(x))+1"),
+    ("largest(M(x), x, 0, L)/W", "{max[0≤x≤L]·M(x) | W}"),
+    ("a + where_largest(M(x), x, 0, L)", "a+(x\xa0at\xa0max[0≤x≤L]·M(x))"),
+    ("min(sum(k, k, 1, n), b)", "min(∑[k=1][n]k,b)"),
+]
+
+
+@pytest.mark.parametrize(("typed", "expected"), AMONG_OTHERS)
+def test_where_a_sign_ends_can_be_seen(typed: str, expected: str) -> None:
+    assert seen(mathml(formula(typed))) == expected
+
+
+FLAT_CALCULUS = [
+    ("integral(1/x, x, a, b)", "∫_{a}^{b}(1/x)·dx"),
+    ("derivative(M(x), x)", "(d/dx)·M(x)"),
+    ("derivative(x/L, x)", "(d/dx)·(x/L)"),
+    ("sum(plates.A)/sum(plates.b)", "(∑plates.A)/(∑plates.b)"),
+]
+
+
+@pytest.mark.parametrize(("typed", "expected"), FLAT_CALCULUS)
+def test_calculus_on_one_line(typed: str, expected: str) -> None:
+    assert seen(mathml(formula(typed), flat=True)) == expected
+
+
+def test_cells_read() -> None:
+    flange, case = At(Name("plates.A"), Word("top flange")), At(Name("loads.P"), Name("case"))
+    assert seen(mathml(flange)) == "plates.A\xa0at top flange"
+    assert seen(mathml(case)) == "loads.P\xa0at\xa0~case~"
+    assert seen(mathml(At(Name("loads.P"), Shown("LC 1", "", True)))) == "loads.P\xa0at LC 1"
+    assert seen(mathml(Binary("/", flange, Number("2")))) == "{plates.A\xa0at top flange | 2}"
+    square = Binary("^", flange, Number("2"))
+    assert seen(mathml(Binary("*", flange, square))) == (
+        "(plates.A\xa0at top flange)⋅(plates.A\xa0at top flange)^{2}"
+    )
+
+
 CONDITIONS = [
     ("sigma <= f_y/gamma_M0", "σ≤{f_{y} | γ_{M0}}"),
     ("-60 MPa <= sigma <= 60 MPa", "−60·MPa≤σ≤60·MPa"),
@@ -302,6 +391,32 @@ def test_a_fraction_opened_within_a_product_keeps_its_brackets() -> None:
     assert run == "a⋅((b_{long,name,here}⋅c_{long,name,here})/d_{long,name,here})"
 
 
+def test_fractions_within_brackets_that_are_broken_stay_fractions() -> None:
+    tree = formula("w*(a_first_of_all/6 + b_second_of_all/2 - c)")
+    run = flow(tree, most=10)
+    assert [seen(piece) for piece in run] == [
+        "w",
+        "⋅({a_{first,of,all} | 6}",
+        "+{b_{second,of,all} | 2}",
+        "−c)",
+    ]
+    assert [piece.count('minsize="2.2em"') for piece in run] == [0, 1, 0, 1]
+
+
+def test_a_wide_integrand_and_a_wide_numerator_are_broken_between_their_terms() -> None:
+    tree = formula("integral(a_first_of_all + b_second_of_all, x, 0, L)/I")
+    assert [seen(piece) for piece in flow(tree, most=11)] == [
+        "(∫_{0}^{L}(a_{first,of,all}", "+b_{second,of,all})·dx)", "/I",
+    ]  # fmt: skip
+
+
+def test_a_wide_range_comes_down_to_the_line() -> None:
+    tree = formula("sum(k, k, a_first_of_all, b_second_of_all + c_third_of_all)")
+    assert "".join(seen(piece) for piece in flow(tree, most=8)) == (
+        "∑[k=a_{first,of,all}…b_{second,of,all}+c_{third,of,all}]k"
+    )
+
+
 def test_a_wide_root_and_wide_brackets_may_be_broken() -> None:
     run = [seen(piece) for piece in flow(formula("sqrt(a_first_of_all^2 + b_second_of_all^2)^3"), most=10)]
     assert run == ["(√(a_{first,of,all}^{2}", "+b_{second,of,all}^{2}))^{3}"]
@@ -338,16 +453,46 @@ def test_widest_tells_what_a_column_has_to_hold() -> None:
     assert widest(formula(f"{three}/2")) > COLUMN > widest(formula(three.replace("*", " + ")))
 
 
+# --- equations ----------------------------------------------------------------------------------------------
+
+
+def rows_seen(relations: list[Node], most: float) -> list[tuple[list[str], list[str]]]:
+    return [
+        ([seen(p) for p in left], [seen(p) for p in right]) for left, right in equations(relations, most=most)
+    ]
+
+
+def test_equations_part_at_their_relation() -> None:
+    typed = ["R_A + R_B = P", "a <= b <= c"]
+    assert rows_seen([*map(condition, typed), formula("a + b")], 30) == [
+        (["R_{A}", "+R_{B}"], ["=P"]),
+        (["a"], ["≤b", "≤c"]),
+        ([], ["a", "+b"]),
+    ]
+
+
+def test_a_long_left_side_stands_above_its_relation_and_a_long_chain_takes_rows() -> None:
+    long_left = "a_long_name + b_long_name + c_long_name = 0"
+    chain = "y = a_long_name + b_long_name = c_long_name + d_long_name"
+    assert rows_seen([condition(long_left), condition(chain)], 17) == [
+        ([], ["a_{long,name}", "+b_{long,name}", "+c_{long,name}"]),
+        ([], ["=0"]),
+        (["y"], ["=a_{long,name}", "+b_{long,name}"]),
+        ([], ["=c_{long,name}", "+d_{long,name}"]),
+    ]
+
+
 # --- properties ---------------------------------------------------------------------------------------------
 
 CORE = {
     "math", "mrow", "mi", "mn", "mo", "mtext", "mspace", "mfrac", "msqrt", "mroot", "msub", "msup", "msubsup",
-    "mtable", "mtr", "mtd",
+    "mtable", "mtr", "mtd", "munder", "munderover",
 }  # fmt: skip
 ATTRIBUTES = {
     "displaystyle", "scriptlevel", "form", "stretchy", "symmetric", "lspace", "rspace", "width", "class",
+    "minsize", "maxsize",
 }  # fmt: skip
-CHILDREN = {"mfrac": 2, "mroot": 2, "msub": 2, "msup": 2, "msubsup": 3}
+CHILDREN = {"mfrac": 2, "mroot": 2, "msub": 2, "msup": 2, "msubsup": 3, "munder": 2, "munderover": 3}
 
 
 def assert_core(text: str) -> None:
@@ -391,10 +536,38 @@ def test_pieces_are_well_formed_lose_nothing_and_fit(tree: Node, most: float) ->
     assert all(sum(width(box) for box in cut) <= most for cut in cuts(lay_out(tree), most))
 
 
+@settings(max_examples=100, deadline=None)
+@given(st.lists(trees(), min_size=1, max_size=3), st.sampled_from([24.0, 42.0]))
+def test_equations_are_well_formed_and_lose_nothing(some: list[Node], most: float) -> None:
+    run = [piece for left, right in equations(some, most=most) for piece in [*left, *right]]
+    for piece in run:
+        assert_core(piece)
+    assert letters(run) == letters([mathml(tree) for tree in some])
+
+
+def fractions_deep(box: Box) -> int:
+    return isinstance(box, Fraction) + max((fractions_deep(inner) for inner in inside(box)), default=0)
+
+
+def small_parts(box: Box) -> list[Box]:
+    """Exponents and ranges, wherever they stand."""
+    own = [box.exponent] if isinstance(box, Power) else list(inside(box)) if isinstance(box, Ranged) else []
+    return own + [part for inner in inside(box) for part in small_parts(inner)]
+
+
+@settings(max_examples=200, deadline=None)
+@given(trees())
+def test_fractions_stand_two_deep_at_most_and_none_in_what_is_small(tree: Node) -> None:
+    box = lay_out(tree)
+    assert fractions_deep(box) <= MOST_FRACTIONS
+    assert all(fractions_deep(small) == 0 for small in small_parts(box))
+
+
 @pytest.mark.parametrize("text", HOSTILE)
 def test_nothing_typed_becomes_markup(text: str) -> None:
     relation = Relation((Name("x"), Word(text)), ("=",))
-    for tree in (Word(text), Shown(text, "", True), Shown("2", text), relation):
+    cell = At(Name("plates.A"), Word(text))
+    for tree in (Word(text), Shown(text, "", True), Shown("2", text), relation, cell):
         for markup in [mathml(tree), *flow(tree, most=3)]:
             assert_core(markup)
     shown = "".join(ElementTree.fromstring(mathml(Word(text))).itertext())

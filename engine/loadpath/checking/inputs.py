@@ -7,7 +7,7 @@ from collections.abc import Iterator
 
 from loadpath.findings import Finding, finding
 from loadpath.formula.names import canonical
-from loadpath.formula.statements import Choice, Definition
+from loadpath.formula.statements import Choice, Column, Definition, Table
 from loadpath.formula.tree import Binary, Call, Name, Negative, Node, Number, span_of, walk
 from loadpath.functions import FUNCTIONS
 from loadpath.resolve import expressions
@@ -25,6 +25,9 @@ def input_findings(trace: Trace) -> Iterator[Finding]:
     angles = _typed_as_angles(trace)
     for step in trace:
         statement = step.statement
+        if isinstance(statement, Table):
+            yield from _table(trace, step, statement)
+            continue
         if step.kind not in ("input", "choice") or not isinstance(statement, Definition | Choice):
             continue
         if step.entry.blocked_by == 0:
@@ -44,17 +47,36 @@ def input_findings(trace: Trace) -> Iterator[Finding]:
         yield _angle(trace, place)
 
 
-def _origin(trace: Trace, step: Step, name: str, place: Span) -> Iterator[Finding]:
-    if not step.statement.notes:
+def _origin(trace: Trace, step: Step, name: str, place: Span, what: str = "input") -> Iterator[Finding]:
+    where = "line" if what == "input" else "caption"
+    if not any(note.text for note in step.statement.notes):
         yield finding(
-            "no-note", f"the input `{name}` does not say what it is and where it comes from",
-            trace.sheet.source, place, help="end the line with a note and its source: ` -- rated load [key]`",
+            "no-note", f"the {what} `{name}` does not say what it is and where it comes from",
+            trace.sheet.source, place,
+            help=f"end the {where} with a note and its source: ` -- rated load [key]`"
+            if what == "input" else "write it behind the colon, with its source: `rated loads [key]`",
         )  # fmt: skip
     elif not step.sources:
         yield finding(
-            "no-source", f"the note of the input `{name}` cites no source and no assumption",
+            "no-source", f"the note of the {what} `{name}` cites no source and no assumption",
             trace.sheet.source, place,
-            help="cite one in the note, `[key]`, and say in the front matter what it is",
+            help=f"cite one in the {'note' if what == 'input' else where}, `[key]`, "
+            "and say in the front matter what it is",
+        )  # fmt: skip
+
+
+def _table(trace: Trace, step: Step, statement: Table) -> Iterator[Finding]:
+    """A table of data is a design input as a whole."""
+    if step.entry.blocked_by:
+        return
+    yield from _origin(trace, step, statement.name, statement.name_span, "table")
+    columns = [s for s in trace if isinstance(s.statement, Column) and s.statement.table == statement.name]
+    meant = {name.partition(".")[0] for name in trace.resolved.meant}
+    if not step.used_by and not any(s.used_by for s in columns) and statement.name not in meant:
+        yield finding(
+            "unused-input", f"nothing uses the table `{statement.name}`",
+            trace.sheet.source, statement.name_span,
+            help="delete it, or take the word `Table` from its caption: it is then told, and not computed",
         )  # fmt: skip
 
 

@@ -17,6 +17,7 @@ from loadpath.document.model import (
     InputEntry,
     InputRow,
     OpenAssumption,
+    PlotBlock,
     Prose,
     ProseBlock,
     Ref,
@@ -25,6 +26,7 @@ from loadpath.document.model import (
     SectionHead,
     SourceEntryRow,
     Summary,
+    TableBlock,
     TitleBlock,
     VerdictLine,
 )
@@ -45,6 +47,8 @@ KINDS = ("strength", "stiffness", "stability")
 MOST_FINDINGS = 200
 """Findings that a document lists; of more it says how many there are."""
 NO_REVIEW = "no review on record"
+MOST_WITHIN = 101
+"""Steps that may share the lines of one statement, and the statement itself."""
 
 
 def build(trace: Trace, version: str) -> Document:
@@ -82,7 +86,7 @@ class _Builder:
             self._registers(blocks),
             self._title_block(),
             self.values,
-            tuple(b for b in blocks if isinstance(b, FigureBlock)),
+            tuple(b for b in blocks if isinstance(b, FigureBlock | PlotBlock)),
             self.trace.sheet.source,
         )
 
@@ -195,12 +199,14 @@ class _Builder:
                     blocks.append(SectionHead(above, number, block.tokens, block.text))
             elif isinstance(block, Formulas):
                 for _ in block.statements:
-                    if step < len(self.trace.steps):
-                        blocks.append(self.writer.write(step))
+                    if step < len(self.trace.steps) and (row := self.writer.write(step)) is not None:
+                        blocks.append(row)
                     step += 1
             elif isinstance(block, Image):
+                self.writer.figures += 1
+                number = self.writer.figures
                 blocks.append(
-                    FigureBlock(block.number, block.caption, block.media_type, block.data, by_block[index])
+                    FigureBlock(number, block.caption, block.media_type, block.data, by_block[index])
                 )
             else:
                 blocks.append(ProseBlock(block.tokens, by_block[index]))
@@ -239,7 +245,8 @@ class _Builder:
             for i, f in enumerate(self.listed)
         )
         return Registers(
-            tuple(self._input_entry(b) for b in blocks if isinstance(b, InputRow)),
+            tuple(self._input_entry(b) for b in blocks if isinstance(b, InputRow))
+            + tuple(self._table_entry(b) for b in blocks if isinstance(b, TableBlock) and b.name),
             tuple(
                 AssumptionEntry(a.key, a.text, _state(a), a.confirm, tuple(cited[a.key]))
                 for a in front.assumptions
@@ -265,6 +272,21 @@ class _Builder:
             note,
             row.typed,
             row.value,
+            citations,
+            any(c.key in open_keys for c in citations),
+        )
+
+    def _table_entry(self, block: TableBlock) -> InputEntry:
+        """A table of data among the design inputs."""
+        citations = tuple(p for p in block.head.note if isinstance(p, Cited))
+        open_keys = {a.key for a in self.front.assumptions if a.confirm}
+        rows = len(block.columns[0].cells) if block.columns else len(block.body)
+        columns = len(block.columns) or len(block.across)
+        return InputEntry(
+            Ref(block.head.number, f"table {plain_symbol(block.name)}", is_name=False),
+            tuple(p for p in block.head.note if not isinstance(p, Cited)),
+            None,
+            f"{_count(columns, 'column')} of {_count(rows, 'row')}",
             citations,
             any(c.key in open_keys for c in citations),
         )
@@ -295,9 +317,13 @@ class _Builder:
 
 
 def _owner(spans: list[Span], at: int) -> int | None:
-    """Index of the span that holds an offset; spans rise and don't overlap."""
+    """Index of the last span that holds an offset; spans begin one after the other, and those of a table's
+    columns and of further unknowns lie within that of the first."""
     index = bisect_right(spans, at, key=lambda span: span.start) - 1
-    return index if index >= 0 and at <= spans[index].end else None
+    for back in range(min(index + 1, MOST_WITHIN)):
+        if spans[index - back].start <= at <= spans[index - back].end:
+            return index - back
+    return None
 
 
 def _typed_only(name: str) -> str:

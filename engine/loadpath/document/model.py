@@ -9,9 +9,10 @@ from __future__ import annotations
 from dataclasses import dataclass, field
 from typing import Any
 
+from loadpath.figures import Picture
 from loadpath.findings import Finding
 from loadpath.formula.statements import CriterionKind
-from loadpath.formula.tree import Node, Shown
+from loadpath.formula.tree import Node, Relation, Shown
 from loadpath.text import Source
 
 CAUTION = (
@@ -121,13 +122,38 @@ class ResultRow:
     head: Head
     name: Node
     sides: tuple[Node, ...]
-    """Formula, then substitution where there is one."""
+    """Formula, what algebra made of it, then substitution: as many of them as there are."""
     value: Shown | None
     closes: bool
     """False where the substitution needs unrounded values."""
     branches: tuple[BranchRow, ...] = ()
     lines: tuple[Line, ...] = ()
     calls: tuple[CallLine, ...] = ()
+
+
+@dataclass(frozen=True, slots=True)
+class ColumnRow:
+    """One row of a result that goes over a column."""
+
+    label: str
+    sides: tuple[Node, ...]
+    """With values in place of names; () where nothing stands in their place."""
+    value: Shown
+    closes: bool = True
+    calls: tuple[CallLine, ...] = ()
+    lines: tuple[Line, ...] = ()
+
+
+@dataclass(frozen=True, slots=True)
+class ColumnBlock:
+    """A result that goes over the rows of a table: the formula once, then a row a piece."""
+
+    head: Head
+    name: Node
+    sides: tuple[Node, ...]
+    """Formula, then what algebra made of it."""
+    rows: tuple[ColumnRow, ...]
+    lines: tuple[Line, ...] = ()
 
 
 @dataclass(frozen=True, slots=True)
@@ -140,6 +166,121 @@ class FunctionRow:
     branches: tuple[BranchRow, ...]
     units: Line
     """`x in m, M in kN⋅m`."""
+    derived: Node | None = None
+    """What algebra made of the body."""
+    lines: tuple[Line, ...] = ()
+
+
+@dataclass(frozen=True, slots=True)
+class UnknownRow:
+    """An unknown that a later `solve for` finds."""
+
+    head: Head
+    name: str
+    unit: str
+    """As it prints, "" for a plain number."""
+    solved_in: Ref | None
+
+
+@dataclass(frozen=True, slots=True)
+class PutBackLine:
+    """One equation with the solution put back."""
+
+    equation: Relation
+    left: Shown
+    right: Shown
+    residual: Shown
+    """Left less right."""
+
+
+@dataclass(frozen=True, slots=True)
+class SolutionRow:
+    """One unknown found; the first one of its `solve for` brings the equations, the last one the proof."""
+
+    head: Head
+    name: Node
+    equations: tuple[Relation, ...]
+    """As typed, on the first of the steps that share them; else ()."""
+    bounds: tuple[Relation, ...]
+    method: str
+    """How it was solved; "" but on the first."""
+    sides: tuple[Node, ...]
+    """The solution in symbols, then with values; () where it was found in numbers."""
+    value: Shown | None
+    closes: bool
+    lines: tuple[Line, ...] = ()
+    """Other roots, and why they were not taken."""
+    put_back: tuple[PutBackLine, ...] = ()
+    """On the last of the steps that share them."""
+
+
+@dataclass(frozen=True, slots=True)
+class TableCell:
+    """One cell of a table of data."""
+
+    typed: Node | None
+    """As typed, where that is more than the value."""
+    value: Shown | None
+    """None where it was not computed."""
+
+
+@dataclass(frozen=True, slots=True)
+class TableColumn:
+    """One column of a table of data: a step of its own."""
+
+    head: Head
+    name: str
+    unit: str
+    """That all its cells are printed in, as it prints; "" for plain numbers."""
+    cells: tuple[TableCell, ...]
+
+
+@dataclass(frozen=True, slots=True)
+class TableBlock:
+    """A table of data, or a table of values worked along a range."""
+
+    head: Head
+    name: str
+    """"" for a table of values."""
+    corner: str
+    """What stands over the row labels."""
+    labels: tuple[str | Shown, ...]
+    """Of the rows, in front of them; () where the first column is data."""
+    columns: tuple[TableColumn, ...]
+    across: tuple[Shown, ...] = ()
+    """Header cells of a two-way table; `body` then holds its cells."""
+    body: tuple[tuple[Shown, ...], ...] = ()
+    title: Line | None = None
+    """Of a table of values: what is listed, over which range."""
+    heads: tuple[Line, ...] = ()
+    """Of a table of values: the header cells; its rows are `body`."""
+
+
+@dataclass(frozen=True, slots=True)
+class PlotBlock:
+    """A figure drawn from the numbers of the sheet."""
+
+    head: Head
+    number: int
+    """Of the figure."""
+    caption: Line
+    picture: Picture | None
+    """None where nothing could be computed."""
+    lines: tuple[Line, ...] = ()
+    """Largest and smallest values with their places, and how they were found."""
+
+
+@dataclass(frozen=True, slots=True)
+class JudgedLine:
+    """One row of a criterion, a validity or a check on columns."""
+
+    label: str
+    lines: tuple[Node, ...]
+    """With values in place of names, then each side as one number."""
+    ratio: str
+    verdict: str
+    governs: bool
+    calls: tuple[CallLine, ...] = ()
 
 
 @dataclass(frozen=True, slots=True)
@@ -153,7 +294,7 @@ class CriterionBox:
     relation: Node | None
     """As typed; None where it could not be read."""
     lines: tuple[Node, ...]
-    """With values in place of names, then each side as one number."""
+    """With values in place of names, then each side as one number; of the governing row."""
     ratio: str
     """"" where there is none."""
     bar: float | None
@@ -167,6 +308,10 @@ class CriterionBox:
     calls: tuple[CallLine, ...] = ()
     typed: str = ""
     """The line as typed, where it could not be read."""
+    rows: tuple[JudgedLine, ...] = ()
+    """Where it is judged row by row."""
+    derived: Node | None = None
+    """What algebra made of the relation."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -181,6 +326,8 @@ class JudgedRow:
     verdict: str
     holds: bool | None
     calls: tuple[CallLine, ...] = ()
+    rows: tuple[JudgedLine, ...] = ()
+    derived: Node | None = None
 
 
 @dataclass(frozen=True, slots=True)
@@ -191,7 +338,10 @@ class FaultyRow:
     typed: str
 
 
-StepBlock = InputRow | ResultRow | FunctionRow | CriterionBox | JudgedRow | FaultyRow
+StepBlock = (
+    InputRow | ResultRow | ColumnBlock | FunctionRow | UnknownRow | SolutionRow | TableBlock | PlotBlock
+    | CriterionBox | JudgedRow | FaultyRow
+)  # fmt: skip
 
 
 # --- other blocks -----------------------------------------------------------------------------------------
@@ -283,7 +433,8 @@ class InputEntry:
     ref: Ref
     note: tuple[Inline, ...]
     typed: Node | None
-    value: Shown
+    value: Shown | str
+    """Words, for a table."""
     sources: tuple[Cited, ...]
     open: bool
     """True where it hangs on an assumption still to be confirmed."""
@@ -382,7 +533,7 @@ class Document:
     title_block: TitleBlock
     values: dict[Any, Shown | str] = field(repr=False)
     """What each `{name}` of the prose prints, by `Value`."""
-    figures: tuple[FigureBlock, ...]
+    figures: tuple[FigureBlock | PlotBlock, ...]
     source: Source = field(repr=False)
     """The sheet's own text; a finding may stand in another file."""
     caution: str = CAUTION

@@ -22,21 +22,30 @@ from loadpath.document.model import (
     ResultRow,
     StepBlock,
 )
+from loadpath.document.plots import plot_block
+from loadpath.document.solutions import solution_row, unknown_row
+from loadpath.document.tables import column_block, judged_lines, table_block, value_table
 from loadpath.findings import Finding
 from loadpath.formula.names import plain_symbol
 from loadpath.formula.statements import (
     Check,
     Choice,
+    Column,
     Criterion,
     Definition,
     Faulty,
     FunctionDefinition,
     Note,
+    Plot,
+    Solution,
     Statement,
+    Table,
+    Tabulate,
+    Unknown,
     Validity,
 )
 from loadpath.formula.tree import Binary, Call, Cases, Logic, Name, Node, Number, Quantity, Relation, Shown
-from loadpath.resolve import expressions
+from loadpath.resolve import expressions, is_looking
 from loadpath.trace import Called, Step, Trace, Working, criterion_kind, criterion_name, texts
 from loadpath.trace.digits import exact_digits, ratio_text, typed_number
 from loadpath.trace.file import verdict_words
@@ -52,6 +61,8 @@ class StepWriter:
     trace: Trace
     findings: dict[int, list[Finding]] = field(default_factory=lambda: defaultdict(list))
     """By index of the step in whose lines they stand."""
+    figures: int = 0
+    """Figures so far, images of the sheet included."""
 
     def __post_init__(self) -> None:
         front = self.trace.sheet.front
@@ -59,10 +70,10 @@ class StepWriter:
             a.key: "assumption" for a in front.assumptions
         }
 
-    def write(self, index: int) -> StepBlock:
-        """The row of one step."""
+    def write(self, index: int) -> StepBlock | None:
+        """The row of one step; None for a column, which stands in the block of its table."""
         step = self.trace.steps[index]
-        head = self._head(step, tuple(self.findings[index]))
+        head = self.head(step, tuple(self.findings[index]))
         statement = step.statement
         match statement:
             case Criterion():
@@ -77,17 +88,37 @@ class StepWriter:
                 return InputRow(
                     head, statement.name, None, Shown(statement.word, "", True), statement.options
                 )
+            case Definition() if step.rows:
+                return column_block(self, step, statement, head)
             case Definition():
                 return self._result(step, statement, head)
             case FunctionDefinition():
                 return self._function(step, statement, head)
             case Validity() | Check():
                 return self._judged(step, statement, head)
+        return self._several(step, head, index)
+
+    def _several(self, step: Step, head: Head, index: int) -> StepBlock | None:
+        statement = step.statement
+        match statement:
+            case Unknown():
+                return unknown_row(self, step, statement, head)
+            case Solution():
+                return solution_row(self, step, statement, head)
+            case Table():
+                return table_block(self, step, statement, head, index)
+            case Column():
+                return None
+            case Tabulate():
+                return value_table(self, step, statement, head)
+            case Plot():
+                self.figures += 1
+                return plot_block(self, step, statement, head, self.figures)
         raise TypeError(type(statement).__name__)
 
     # --- parts ---
 
-    def _head(self, step: Step, findings: tuple[Finding, ...]) -> Head:
+    def head(self, step: Step, findings: tuple[Finding, ...]) -> Head:
         by_id = self.trace.by_id
         from_, to = [by_id[i] for i in step.uses], [by_id[i] for i in step.used_by]
         return Head(
@@ -136,6 +167,14 @@ class StepWriter:
             return ResultRow(head, name, (typed,) if typed else (), None, True, branches)
         put = texts.step_substitution(self.trace, step)
         sides = (working.tree, *((put.tree,) if put and not isinstance(put.tree, Shown) else ()))
+        if working.typed is not None:
+            sides = (working.typed, *sides)
+        lines = (*self.lines(working), *self.further_digits(put))
+        alone = next((c for c in working.calls if c.call == working.tree and is_looking(c.call)), None)
+        calls = () if alone else self.calls(working)
+        if alone is not None:
+            sides += (alone.working.written,) if alone.working.written else ()
+            lines += self.lines(alone.working)
         return ResultRow(
             head,
             name,
@@ -143,8 +182,8 @@ class StepWriter:
             texts.display(step),
             put.closes if put else True,
             self.branches(statement, statement.value, working),
-            (*self._lines(working), *_further_digits(put)),
-            self.calls(working),
+            lines,
+            calls,
         )
 
     def branches(self, statement: Statement, value: Node, working: Working | None) -> tuple[BranchRow, ...]:
@@ -170,7 +209,23 @@ class StepWriter:
             for i, b in enumerate(value.branches)
         )
 
-    def _lines(self, working: Working) -> tuple[Line, ...]:
+    def typed_value(self, node: Node) -> Shown:
+        """The value of a cell of a two-way table: as typed, or worked out."""
+        if isinstance(node, Quantity) and len(node.parts) == 1 and not node.parts[0].over:
+            return Shown(node.parts[0].whole, node.parts[0].unit)
+        if isinstance(node, Number):
+            return Shown(node.text, "")
+        found = self.trace.resolved.checker.type_of(node)
+        unit = self.trace.resolved.system.unit_for(found.dimension, found.absolute)
+        value = unit.from_si(self.trace.work(node))
+        return Shown(plain(value, exact_digits(value, self.trace.sheet.front.digits)), unit.text)
+
+    def further_digits(self, put: texts.Substitution | None) -> tuple[Line, ...]:
+        """Says so where a substitution shows more digits than the results that its values come from."""
+        return (_FURTHER,) if put and put.more else ()
+
+    def lines(self, working: Working) -> tuple[Line, ...]:
+        """What is said beneath a step: what governed, what was rounded, which place was looked at."""
         out = []
         for aside in working.asides:
             parts = (
@@ -190,6 +245,8 @@ class StepWriter:
         return tuple(out)
 
     def _call(self, called: Called, outer: Working) -> CallLine:
+        if is_looking(called.call):
+            return self._look(called, outer)
         call = Call(called.call.function, tuple(shown(operand) for _, operand in called.arguments))
         put = texts.call_substitution(self.trace, called)
         typed: tuple[Node, ...] = ()
@@ -202,8 +259,14 @@ class StepWriter:
             typed = (called.call, Call(called.call.function, put_in))
         sides = (called.working.tree, *((put.tree,) if put and not isinstance(put.tree, Shown) else ()))
         lines = _branch_lines(called.working, texts.conditions(self.trace, called.working))
-        lines += [*self._lines(called.working), *_further_digits(put)]
+        lines += [*self.lines(called.working), *self.further_digits(put)]
         return CallLine(call, sides, shown(called.value), put.closes if put else True, tuple(lines), typed)
+
+    def _look(self, called: Called, outer: Working) -> CallLine:
+        """A call that looks at a whole expression or column: its value, and what was looked at."""
+        put = texts.call_substitution(self.trace, called)
+        sides = (put.tree,) if put else ()
+        return CallLine(called.call, sides, shown(called.value), True, self.lines(called.working))
 
     def _function(self, step: Step, statement: FunctionDefinition, head: Head) -> FunctionRow:
         name = Call(statement.name, tuple(Name(p.name) for p in statement.parameters))
@@ -215,9 +278,12 @@ class StepWriter:
             words = " plain" if unit == "1" else f" in {unit_symbol(unit)}"
             units += [", ", Name(n), words]
         body = None if isinstance(statement.body, Cases) else statement.body
-        return FunctionRow(
-            head, name, body, self.branches(statement, statement.body, None), Line(tuple(units[1:]))
-        )
+        working = step.working
+        derived = working.tree if working and not isinstance(working.tree, Cases) else None
+        value = working.tree if working and body is None else statement.body
+        branches = self.branches(statement, value, None)
+        lines = self.lines(working) if working else ()
+        return FunctionRow(head, name, body, branches, Line(tuple(units[1:])), derived, lines)
 
     # --- judged steps ---
 
@@ -238,8 +304,10 @@ class StepWriter:
             is_listed(step),
             verdict.satisfied is not None,
             verdict.satisfied,
-            (*self._governing(step, statement), *(self._lines(step.working) if step.working else ())),
-            self.calls(step.working) if step.working else (),
+            (*self._governing(step, statement), *(self.lines(step.working) if step.working else ())),
+            self.calls(step.working) if step.working and not step.rows else (),
+            rows=judged_lines(self, step),
+            derived=_derived(step),
         )
 
     def _faulty_criterion(self, step: Step, head: Head) -> CriterionBox:
@@ -263,7 +331,10 @@ class StepWriter:
 
     def _compared_lines(self, step: Step) -> tuple[Node, ...]:
         """First with values in place of names, where a side is worked out; then each side as one number."""
-        compared = texts.compared(self.trace, step)
+        return self.lines_of(step, texts.compared(self.trace, step))
+
+    def lines_of(self, step: Step, compared: tuple[texts.Compared, ...]) -> tuple[Node, ...]:
+        """The same, of one row where it is judged row by row."""
         if not compared:
             return ()
         statement = step.statement
@@ -311,8 +382,17 @@ class StepWriter:
             words = Line(("within ", statement.tolerance))
         holds = step.verdict.satisfied if step.verdict else None
         verdict = verdict_words(step, plain_symbol)
-        calls = self.calls(step.working) if step.working else ()
-        return JudgedRow(head, statement.relation, self._compared_lines(step), words, verdict, holds, calls)
+        calls = self.calls(step.working) if step.working and not step.rows else ()
+        lines = () if step.rows else self._compared_lines(step)
+        rows = judged_lines(self, step)
+        return JudgedRow(
+            head, statement.relation, lines, words, verdict, holds, calls, rows, _derived(step)
+        )
+
+
+def _derived(step: Step) -> Node | None:
+    """What algebra made of a relation."""
+    return step.working.tree if step.working is not None and step.working.typed is not None else None
 
 
 # --- helpers ----------------------------------------------------------------------------------------------
@@ -332,11 +412,7 @@ def _branch_lines(working: Working, conditions: tuple[tuple[texts.Compared, ...]
     return lines
 
 
-def _further_digits(put: texts.Substitution | None) -> tuple[Line, ...]:
-    """Says so where a substitution shows more digits than the results that its values come from."""
-    return (
-        (Line(("values with further digits, which lead to the printed result",)),) if put and put.more else ()
-    )
+_FURTHER = Line(("values with further digits, which lead to the printed result",))
 
 
 def _notes_between(statement: Statement, start: int, end: int | None) -> tuple[Note, ...]:

@@ -28,6 +28,11 @@ class Failure(Exception):
     span: Span
     help: str
 
+    def in_row(self, row: str) -> Failure:
+        """The same, in one row of a column."""
+        tell = self.tell
+        return Failure(self.slug, lambda show: f"in {row}: {tell(show)}", self.span, self.help)
+
 
 def short(node: Node) -> str:
     """A part of a formula in a message."""

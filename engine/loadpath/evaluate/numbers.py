@@ -11,9 +11,10 @@ from collections.abc import Callable, Mapping
 from typing import Any
 
 from loadpath.formula.signs import holds
-from loadpath.formula.statements import FunctionDefinition
+from loadpath.formula.statements import FunctionDefinition, TwoWay
 from loadpath.formula.tree import (
     As,
+    At,
     Binary,
     Bracket,
     Call,
@@ -30,7 +31,9 @@ from loadpath.formula.tree import (
     Shown,
     Word,
 )
-from loadpath.functions import FUNCTIONS
+from loadpath.functions import FUNCTIONS, SPECIAL
+from loadpath.resolve import Rows
+from loadpath.resolve.columns import is_brought_back
 from loadpath.units import parse_unit
 from loadpath.units.printing import read_plain
 
@@ -51,12 +54,25 @@ def part_value(part: Part) -> float:
     return parse_unit(part.unit).to_si(number)
 
 
+ROW = "#row"
+"""Among the parameters: which row of its columns an expression is worked for."""
+
+
 class Compiler:
     """Compiles trees of one sheet; functions of the sheet are compiled once, where first called."""
 
-    def __init__(self, functions: Mapping[str, FunctionDefinition]) -> None:
-        self._functions = functions
+    def __init__(
+        self,
+        functions: Mapping[str, FunctionDefinition],
+        columns: Mapping[str, Rows] | None = None,
+        two_way: Mapping[str, TwoWay] | None = None,
+    ) -> None:
+        self._functions = dict(functions)
+        self.columns = columns or {}
+        self.two_way = two_way or {}
         self._bodies: dict[str, Work] = {}
+        self._derived: set[str] = set()
+        """Functions whose bodies are derived while the sheet is worked."""
 
     def compile_tree(self, node: Node, parameters: frozenset[str] = frozenset()) -> Work:
         """A closure that gives the node's value in coherent SI (a bool for relations)."""
@@ -93,6 +109,8 @@ class Compiler:
                 return lambda e, p: join(work(e, p) for work in works)
             case Cases():
                 return self._cases(node, parameters)
+            case At():
+                return self._cell(node)
         raise TypeError(type(node).__name__)
 
     def function(self, name: str) -> FunctionDefinition | None:
@@ -104,6 +122,8 @@ class Compiler:
             return _constant(math.pi)
         if name in parameters:
             return lambda e, p: p[name]
+        if name in self.columns:
+            return lambda e, p: e[name][p[ROW]]
         return lambda e, p: e[name]
 
     def _binary(self, node: Binary, parameters: frozenset[str]) -> Work:
@@ -120,7 +140,22 @@ class Compiler:
         power = math.pow
         return lambda e, p: power(a(e, p), b(e, p))
 
+    def _cell(self, node: At) -> Work:
+        assert isinstance(node.operand, Name)
+        name, row = node.operand.name, node.row
+        index = {label: i for i, label in enumerate(self.columns[name].labels)}
+        if isinstance(row, Word):
+            place = index[row.text]
+            return lambda e, p: e[name][place]
+        assert isinstance(row, Name)
+        choice = row.name
+        return lambda e, p: e[name][index[e[choice]]]
+
     def _call(self, node: Call, parameters: frozenset[str]) -> Work:
+        if node.function in SPECIAL or is_brought_back(node):
+            from loadpath.evaluate.special import compile_special
+
+            return compile_special(self, node, parameters)
         arguments = [self.compile_tree(a, parameters) for a in node.arguments]
         definition = self._functions.get(node.function)
         if definition is None:
@@ -134,10 +169,25 @@ class Compiler:
 
     def body_of(self, definition: FunctionDefinition) -> Work:
         """A function's body, compiled once."""
-        if definition.name not in self._bodies:
-            own = frozenset(p.name for p in definition.parameters)
-            self._bodies[definition.name] = self.compile_tree(definition.body, own)
-        return self._bodies[definition.name]
+        name, bodies = definition.name, self._bodies
+        if name in self._derived:
+            return lambda e, p: bodies[name](e, p)
+        if name not in bodies:
+            self._compile_body(definition)
+        return bodies[name]
+
+    def _compile_body(self, definition: FunctionDefinition) -> None:
+        own = frozenset(p.name for p in definition.parameters)
+        self._bodies[definition.name] = self.compile_tree(definition.body, own)
+
+    def expect(self, name: str) -> None:
+        """Says of a function that its body will be derived: calls of it are bound late."""
+        self._derived.add(name)
+
+    def derive(self, definition: FunctionDefinition) -> None:
+        """Takes up a function whose body has been derived."""
+        self._functions[definition.name] = definition
+        self._compile_body(definition)
 
     def _bracket(self, node: Bracket, parameters: frozenset[str]) -> Work:
         power, inside = node.power, node.inner

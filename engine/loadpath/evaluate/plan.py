@@ -5,18 +5,23 @@ from __future__ import annotations
 from collections import defaultdict
 from collections.abc import Iterator
 from dataclasses import dataclass
+from string import ascii_lowercase
 
 from loadpath.evaluate.numbers import Compiler, Work
+from loadpath.evaluate.symbolic import is_derived
 from loadpath.formula.statements import (
     Check,
+    Column,
     Criterion,
     Definition,
     Faulty,
     FunctionDefinition,
+    Solution,
     Statement,
+    Table,
     Validity,
 )
-from loadpath.formula.tree import As, Call, Cases, Name, Node, Relation, walk
+from loadpath.formula.tree import As, At, Call, Cases, Name, Node, Relation, walk
 from loadpath.resolve import Entry, Resolved
 from loadpath.sheet import Formulas, Heading, Sheet
 from loadpath.trace.model import Outline, Working
@@ -43,6 +48,12 @@ class Planned:
     unread: tuple[str, ...]
     """Keys cited behind it that are neither a source nor an assumption: one may be an open assumption."""
 
+    @property
+    def shared(self) -> int:
+        """The place of the `solve for` that it shares with other unknowns, -1 for other steps."""
+        statement = self.outline.entry.statement
+        return statement.together.span.start if isinstance(statement, Solution) else -1
+
 
 @dataclass(frozen=True, slots=True)
 class Plan:
@@ -57,7 +68,16 @@ class Plan:
 def make_plan(resolved: Resolved) -> Plan:
     """Compiles a resolved sheet."""
     functions = {e.name: e.statement for e in resolved.entries if isinstance(e.statement, FunctionDefinition)}
-    compiler = Compiler(functions)
+    columns = {e.name: e.rows for e in resolved.entries if e.name and e.rows is not None}
+    two_way = {
+        e.name: e.statement.two_way
+        for e in resolved.entries
+        if isinstance(e.statement, Table) and e.statement.two_way is not None
+    }
+    compiler = Compiler(functions, columns, two_way)
+    for name, function in functions.items():
+        if is_derived(function.body):
+            compiler.expect(name)
     sections, numbers = _numbering(resolved.sheet)
     reach = _Reach(resolved)
     outlines = _outlines(resolved, numbers, reach)
@@ -69,10 +89,11 @@ def _planned(outline: Outline, compiler: Compiler, reach: _Reach) -> Planned:
     entry = outline.entry
     hangs_on = reach.of(entry)
     tree = tree_of(entry.statement)
-    if tree is None or entry.blocked_by:
+    if tree is None or entry.blocked_by or is_derived(tree):
         return Planned(outline, tree, None, (), None, *hangs_on)
-    seen = None if any(isinstance(n, Call | Cases | As) for n in walk(tree)) else Working(tree)
-    sides = () if isinstance(entry.statement, Definition) else _sides(tree, compiler)
+    observed = entry.rows is not None or any(isinstance(n, Call | Cases | As | At) for n in walk(tree))
+    seen = None if observed else Working(tree)
+    sides = () if isinstance(entry.statement, Definition) else sides_of(tree, compiler)
     return Planned(outline, tree, compiler.compile_tree(tree), sides, seen, *hangs_on)
 
 
@@ -86,7 +107,8 @@ def tree_of(statement: Statement) -> Node | None:
     return None
 
 
-def _sides(tree: Node, compiler: Compiler) -> Sides:
+def sides_of(tree: Node, compiler: Compiler) -> Sides:
+    """The relations of a tree, each operand compiled."""
     relations = [n for n in walk(tree) if isinstance(n, Relation)]
     return tuple(tuple((o, compiler.compile_tree(o)) for o in r.operands) for r in relations)
 
@@ -97,17 +119,18 @@ def _sides(tree: Node, compiler: Compiler) -> Sides:
 def _outlines(resolved: Resolved, numbers: Iterator[str], reach: _Reach) -> tuple[Outline, ...]:
     """The trails, both ways. A criterion hangs on the ranges of the names behind it as well."""
     owner: dict[str, str] = {}
-    for entry in resolved.entries:
-        for name in defined_by(entry):
-            owner.setdefault(name, entry.id)
     used_by: dict[str, list[str]] = defaultdict(list)
     uses: list[tuple[str, ...]] = []
     for entry in resolved.entries:
-        named = (owner[n] for n in fed_by(entry) if n in owner and owner[n] != entry.id)
+        named = [owner[n] for n in fed_by(entry) if n in owner and owner[n] != entry.id]
         of = tuple(dict.fromkeys((*named, *reach.ranges_over(entry))))
         uses.append(of)
         for id in of:
             used_by[id].append(entry.id)
+        for name in defined_by(entry):
+            if isinstance(entry.statement, Solution):
+                owner[name] = entry.id  # from here on the name is what was found
+            owner.setdefault(name, entry.id)
     return tuple(
         Outline(entry, number, cited(entry.statement), of, tuple(used_by[entry.id]))
         for entry, of, number in zip(resolved.entries, uses, numbers, strict=False)
@@ -167,6 +190,8 @@ class _Reach:
         ranged = frozenset(n for n in feeds if n in self.ranged).union(*(r for _, r in feeding))
         self.by_id[entry.id] = (assumed, ranged)
         for name in defined_by(entry):
+            if isinstance(entry.statement, Solution):
+                self.known[name] = (assumed, ranged)
             self.known.setdefault(name, (assumed, ranged))
         if guarded := guarded_by(entry.statement):
             self.ranges.append((entry.id, frozenset(guarded)))
@@ -205,7 +230,10 @@ def _numbering(sheet: Sheet) -> tuple[tuple[tuple[int, str], ...], Iterator[str]
                 section, step = section + 1, 0
             sections.append((section if counts else 0, block.text))
         elif isinstance(block, Formulas):
-            for _ in block.statements:
+            for statement in block.statements:
+                if isinstance(statement, Column):
+                    numbers.append(f"{section}.{step}{ascii_lowercase[statement.place]}")
+                    continue
                 step += 1
                 numbers.append(f"{section}.{step}")
     return tuple(sections), iter(numbers)

@@ -150,3 +150,15 @@ def _without_sign(node: Node) -> Node:
 
 def _is_named(node: Node) -> bool:
     return any(isinstance(part, Name | Call) for part in walk(node))
+
+
+def worst(verdicts: list[Verdict]) -> int:
+    """Which of several verdicts on one criterion governs: a failed one, else one that says least, else by
+    ratio, else by margin; the first of equal ones."""
+
+    def weight(verdict: Verdict) -> tuple[int, float]:
+        rank = 0 if verdict.satisfied is False else 1 if verdict.satisfied is None else 3 - verdict.one_sided
+        ratio = verdict.utilisation
+        return rank, -ratio if ratio is not None else (verdict.margin or 0.0)
+
+    return min(range(len(verdicts)), key=lambda i: weight(verdicts[i]))

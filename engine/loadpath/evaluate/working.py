@@ -6,11 +6,13 @@ from collections.abc import Iterator, Mapping
 from dataclasses import dataclass
 from typing import Any
 
-from loadpath.evaluate.numbers import Compiler, Values
-from loadpath.formula.statements import Definition, FunctionDefinition, Parameter
-from loadpath.formula.tree import As, Call, Cases, Name, Node, Number, Quantity, walk
+from loadpath.evaluate.looking import Looking
+from loadpath.evaluate.numbers import ROW, Compiler, Values
+from loadpath.formula.binding import free_names
+from loadpath.formula.statements import Column, Definition, FunctionDefinition, Parameter
+from loadpath.formula.tree import As, Branch, Call, Cases, Name, Node, Number, Quantity, children, walk
 from loadpath.functions import FUNCTIONS
-from loadpath.resolve import Entry, Resolved, Type
+from loadpath.resolve import Entry, Resolved, Type, is_looking
 from loadpath.trace.digits import exact_digits, typed_number
 from loadpath.trace.model import Aside, Called, Operand, Taken, Working
 from loadpath.units import ONE, Unit, parse_unit
@@ -32,21 +34,43 @@ class Observer:
     left: int = MOST_CALLS
     """Calls that may still be shown beneath the step at hand."""
 
+    def __post_init__(self) -> None:
+        self.looking = Looking(self)
+
     def working(
-        self, tree: Node, given: Mapping[str, Operand] | None = None, types: dict[str, Type] | None = None
+        self,
+        tree: Node,
+        given: Mapping[str, Operand] | None = None,
+        types: dict[str, Type] | None = None,
+        row: int | None = None,
     ) -> Working:
-        """How the value of a tree came about; `given` are the parameters of the enclosing function."""
+        """How the value of a tree came about; `given` are the parameters of the enclosing function, `row` is
+        the row of its columns."""
         if given is None:
             self.left = MOST_CALLS
         scope = dict(given or {})
+        parameters: dict[str, Any] = {name: operand.si for name, operand in scope.items()}
+        if row is not None:
+            parameters[ROW] = row
+            scope |= self._cells(tree, row)
         if not any(isinstance(n, Call | Cases | As) for n in walk(tree)):
             return Working(tree, tuple(scope.items()))
-        parameters = {name: operand.si for name, operand in scope.items()}
         taken = self._taken(tree, parameters) if isinstance(tree, Cases) else None
         worked = taken.branch.value if taken else tree
         seen = [worked, *([taken.branch.condition] if taken and taken.branch.condition is not None else [])]
         calls = tuple(self._calls(seen, parameters, scope, types or {}))
         return Working(worked, tuple(scope.items()), taken, calls, tuple(self._asides(worked, parameters)))
+
+    def _cells(self, tree: Node, row: int) -> Iterator[tuple[str, Operand]]:
+        """The cells that stand for the names of columns in one row."""
+        for node in walk(tree):
+            if isinstance(node, Name) and node.name in self.compiler.columns:
+                yield node.name, self.cell(node.name, row)
+
+    def cell(self, column: str, row: int) -> Operand:
+        """One cell of a column, as printed."""
+        entry = self.resolved.entries[self.resolved.by_name[column]]
+        return cell_operand(entry, self.values[column][row], row, self.resolved.sheet.front.digits)
 
     def _value(self, node: Node, parameters: Values) -> Any:
         return self.compiler.compile_tree(node, frozenset(parameters))(self.values, parameters)
@@ -62,13 +86,17 @@ class Observer:
     def _calls(
         self, trees: list[Node], parameters: Values, scope: Mapping[str, Operand], types: dict[str, Type]
     ) -> Iterator[Called]:
-        found = (node for tree in trees for node in walk(tree) if isinstance(node, Call))
-        for call in dict.fromkeys(call for call in found if call.function not in FUNCTIONS):
+        found = (node for tree in trees for node in _calls_in(tree))
+        for call in dict.fromkeys(found):
             if self.left <= 0:
                 return
             self.left -= 1
             try:
-                called = self._called(call, parameters, scope, types)
+                called = (
+                    self.looking.called(call, parameters, scope, types)
+                    if is_looking(call)
+                    else self._called(call, parameters, scope, types)
+                )
             except (ArithmeticError, ValueError):
                 # what a condition passes over (`when x = 0 or f(x) <= 3`) need not have a value
                 continue
@@ -77,7 +105,7 @@ class Observer:
     def _called(
         self, call: Call, parameters: Values, scope: Mapping[str, Operand], types: dict[str, Type]
     ) -> Called:
-        definition = self.resolved.checker.function(call.function)
+        definition = self.compiler.function(call.function)
         assert definition is not None
         arguments: dict[str, Operand] = {}
         inner_types: dict[str, Type] = {}
@@ -133,14 +161,14 @@ class Observer:
 
     def _asides(self, tree: Node, parameters: Values) -> Iterator[Aside]:
         read_as: set[As] = set()
-        for node in walk(tree):
+        for node in _seen(tree):
             if isinstance(node, As):
                 if node not in read_as:
                     read_as.add(node)
                     number = parse_unit(node.unit).from_si(self._value(node.operand, parameters))
                     said = plain(number, exact_digits(number, AS_DIGITS))
                     yield Aside("", node.operand, f"taken as a number of {node.unit}: {typeset(said)}")
-            elif isinstance(node, Call) and node.function in ("min", "max"):
+            elif isinstance(node, Call) and node.function in ("min", "max") and len(node.arguments) > 1:
                 values = [self._value(a, parameters) for a in node.arguments]
                 governing = node.arguments[values.index(FUNCTIONS[node.function].work(*values))]
                 yield Aside(f"{node.function}: governed by", governing, "")
@@ -151,6 +179,32 @@ class Observer:
                 yield Aside(
                     f"rounded {way} to {times} step{'' if times == 1 else 's'} of", node.arguments[1], ""
                 )
+
+
+def _seen(node: Node | Branch) -> Iterator[Node | Branch]:
+    """The nodes that are worked once, where the tree stands: not those inside what is looked over."""
+    yield node
+    if not (isinstance(node, Call) and is_looking(node)):
+        for child in children(node):
+            yield from _seen(child)
+
+
+def _calls_in(tree: Node) -> Iterator[Call]:
+    """Calls whose value stands in a substitution."""
+    for node in _seen(tree):
+        if isinstance(node, Call) and (node.function not in FUNCTIONS or is_looking(node)):
+            yield node
+
+
+def cell_operand(entry: Entry, si: float, row: int, digits: int) -> Operand:
+    """One cell of a column as it stands in a substitution: as typed, or to the digits of a result."""
+    statement = entry.statement
+    if isinstance(statement, Column):
+        typed = typed_number(statement.cells[row], entry.unit)
+        exact = not free_names(statement.cells[row])
+        digits = exact_digits(entry.unit.from_si(si), digits) if exact else digits
+        return Operand(si, entry.unit, digits, typed, exact=exact)
+    return Operand(si, entry.unit, digits)
 
 
 def _typed(entry: Entry) -> str:

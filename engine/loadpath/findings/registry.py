@@ -83,6 +83,30 @@ SLUGS: dict[str, tuple[Severity, str]] = {
     "stale-number": ("warning", "a number in prose that repeats a result"),
     "angle-without-unit": ("warning", "an angle that looks like degrees, typed without a unit"),
     "no-national-annex": ("warning", "a Eurocode among the sources and no national annex among the codes"),
+    # algebra
+    "no-closed-form": ("error", "an integral, a limit or a solution that algebra does not find"),
+    "algebra-time-out": ("error", "algebra that took longer than the engine waits"),
+    "derived-too-large": ("error", "a derived expression that no reader could follow"),
+    "unsolved-unknown": ("error", "an unknown that is used before it is solved for, or never solved"),
+    "not-a-parameter": ("error", "a derivative or an integral by what is no parameter of the function"),
+    "bad-interval": ("error", "bounds that are equal, the wrong way round, or not whole where they must be"),
+    # equations
+    "equation-count": ("error", "more or fewer equations than unknowns"),
+    "no-solution": ("error", "equations that nothing solves"),
+    "many-solutions": ("error", "equations that do not fix an unknown"),
+    "singular-system": ("error", "equations so nearly the same that digits are lost"),
+    "root-outside-bounds": ("error", "roots that all lie outside the bounds"),
+    "several-roots": ("error", "more than one root left to choose from"),
+    # tables
+    "table-shape": ("error", "a table with missing or extra cells, no rows, or a header that is no name"),
+    "table-cell": ("error", "a cell that is empty or cannot be read"),
+    "unknown-row": ("error", "a row that the table does not have"),
+    "duplicate-row": ("error", "two rows of one label"),
+    "mixed-tables": ("error", "columns of tables whose rows are not the same"),
+    "column-not-number": ("error", "a column or a table where one value is needed"),
+    "needs-column": ("error", "one value where a column is needed"),
+    "outside-table": ("error", "a value looked up outside the rows of its table"),
+    "not-rising": ("error", "a column for interpolation that neither rises nor falls strictly"),
     # the engine itself
     "engine-fault": ("error", "a fault of the engine, not of the sheet"),
 }

@@ -5,15 +5,23 @@ from __future__ import annotations
 from loadpath.formula.statements import (
     Check,
     Choice,
+    Column,
     Criterion,
     Definition,
     Faulty,
     FunctionDefinition,
+    Plot,
+    Solution,
+    Sought,
     Statement,
+    Table,
+    Tabulate,
+    Unknown,
     Validity,
 )
 from loadpath.formula.tree import (
     As,
+    At,
     Binary,
     Bracket,
     Call,
@@ -126,6 +134,8 @@ def text(node: Node) -> str:
             return f"<{text(inner)}>^{power}"
         case As(operand=operand, unit=unit):
             return f"({text(operand)} as {unit})"
+        case At(operand=operand, row=row):
+            return f"{text(operand)} at {text(row)}"
         case Relation(operands=operands, signs=signs):
             out = _child(operands[0], node)
             for sign, operand in zip(signs, operands[1:], strict=True):
@@ -195,6 +205,34 @@ def statement_text(statement: Statement) -> str:
             return f"{text(relation)} for {', '.join(name for name, _ in names)}"
         case Check(relation=relation, tolerance=tolerance):
             return f"{text(relation)} within {text(tolerance)}"
+        case Unknown(name=name, unit=unit):
+            return f"unknown {name} [{unit.text}]"
+        case Solution(together=together):
+            listed = "; ".join(text(equation) for equation in together.equations)
+            return f"solve for {', '.join(_sought(each) for each in together.sought)}: {listed}"
+        case Table(name=name):
+            return f"table {name}"
+        case Column(cells=cells):
+            return ", ".join(text(cell) for cell in cells)
+        case Plot(curves=curves):
+            return f"plot {_listed(curves)} {_range(statement)}"
+        case Tabulate(curves=curves, steps=steps):
+            return f"tabulate {_listed(curves)} {_range(statement)}, {steps} steps"
         case Faulty(text=typed):
             return " ".join(typed.split())
     raise TypeError(type(statement).__name__)
+
+
+def _listed(curves: tuple[Node, ...]) -> str:
+    return ", ".join(text(curve) for curve in curves)
+
+
+def _range(statement: Plot | Tabulate) -> str:
+    return f"for {statement.variable} from {text(statement.low)} to {text(statement.high)}"
+
+
+def _sought(sought: Sought) -> str:
+    unit = f" [{sought.unit.text}]" if sought.unit else ""
+    if sought.low is None or sought.high is None:
+        return sought.name + unit
+    return f"{sought.name}{unit} between {text(sought.low)} and {text(sought.high)}"

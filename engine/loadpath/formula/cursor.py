@@ -175,8 +175,9 @@ class Cursor:
         if word == "as":
             return Mistake("bad-syntax", place, "`as` stands outside parentheses", "write `(f_c as psi)`")
         if word == "at":
-            message = "`at` looks up a row of a table, which this version of loadpath cannot work yet"
-            return Mistake("not-available", place, message, "type the value itself for now")
+            message = "`at` looks up one cell of a column and stands directly behind its name"
+            mend = 'give the column a name of its own: `A = plates.b*plates.t`, then `A at "web"`'
+            return Mistake("bad-syntax", place, message, mend)
         mend = "it is a word of the language; check what stands before it"
         return Mistake("bad-syntax", place, f"`{word}` cannot stand here", mend)
 

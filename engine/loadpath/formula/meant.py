@@ -11,8 +11,10 @@ from loadpath.formula.reader import Reader
 from loadpath.formula.statements import CriterionKind
 from loadpath.text import Span
 
-LATER = ("use", "take", "solve", "unknown", "beam", "plot", "tabulate", "figure")
+LATER = ("use", "take", "beam", "figure")
 """Statements of the language that this version cannot work."""
+SEVERAL = ("solve", "unknown", "plot", "tabulate")
+"""Words that begin statements about several names or expressions."""
 KIND: dict[str, CriterionKind] = {
     "strength": "strength", "stiffness": "stiffness", "stability": "stability", "limit": "limit",
 }  # fmt: skip
@@ -42,12 +44,24 @@ def names(text: str) -> tuple[str, ...]:
         return ()
     if word in ("use", "take") and (alias := re.search(r"\bas\s+([^\W\d][\w']*)", text)):
         return (canonical(alias.group(1)),)
-    if word in LATER and not DEFINES.match(text):
+    if word == "solve" and (head := re.match(r"\s*solve\s+(?:for\s+)?([^\n]*)", text)):
+        bare = re.sub(r"\[[^\]]*\]", " ", head.group(1).split("   ")[0])
+        parts = [re.split(r"\bbetween\b", part)[0] for part in bare.split(",")]
+        return tuple(canonical(name) for part in parts for name in words_in(part) if name not in RESERVED)
+    if word in ("plot", "tabulate") and not DEFINES.match(text):
+        return ()
+    if word in (*LATER, "unknown") and not DEFINES.match(text):
         body = text.split(" from ")[0].split(" over ")[0].split("\n")[0]
         found = words_in(re.sub(r"\[[^\]]*\]", " ", body))
         return tuple(canonical(name) for name in found if name not in RESERVED)
     match = next((m for broken in _BROKEN if (m := broken.match(text))), None)
     return (canonical(match.group(1)),) if match else ()
+
+
+def is_named_so(text: str) -> bool:
+    """True for `plot = 3`: a word of the language that was meant as a name."""
+    word = re.match(rf"\s*({'|'.join(SEVERAL)})\s*(?:\[[^\]]*\]\s*)?=(?!=)", text)
+    return word is not None
 
 
 def guards(text: str) -> tuple[str, ...]:

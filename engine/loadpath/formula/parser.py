@@ -10,6 +10,7 @@ from loadpath.formula.lines import Group, groups
 from loadpath.formula.mistake import Mistake
 from loadpath.formula.names import RESERVED
 from loadpath.formula.reader import Reader
+from loadpath.formula.several import read_plot, read_solve, read_tabulate, read_unknowns
 from loadpath.formula.statements import Faulty, Statement
 from loadpath.functions import NAMES as FUNCTION_NAMES
 from loadpath.text import Source, Span
@@ -18,20 +19,32 @@ LONGEST_STATEMENT = 20_000
 """Characters of one statement with its deeper lines."""
 
 _UNWORKED = re.compile(
-    r"(use\s+\w+\s.*\sas\s+\w+|beam\s+\w+\s+over\s|solve\s+for\s+\w|take\s+\w.*\sfrom\s+\w)"
+    r"(use\s+\w+\s.*\sas\s+\w+|beam\s+\w+\s+over\s|solve\s+for\s+\w|take\s+\w.*\sfrom\s+\w"
+    r"|(plot|tabulate)\s.*\sfor\s+\w+\s+from\s)"
 )
+
+
+_SEVERAL = {
+    "unknown": read_unknowns, "solve": read_solve, "plot": read_plot, "tabulate": read_tabulate,
+}  # fmt: skip
 
 
 def parse_block(source: Source, span: Span) -> tuple[tuple[Statement, ...], tuple[Finding, ...]]:
     """The statements of an indented block that covers whole lines, and what is wrong with them."""
     statements: list[Statement] = []
     found: list[Finding] = []
+    solve: Span | None = None
+    """Of a `solve for` above whose equations may stand on its own level."""
     for group in groups(source, span):
         try:
-            statements.append(read_statement(group))
+            statements += read_statements(group)
+            solve = None
         except Mistake as mistake:
-            found.append(mistake.as_finding(source))
-            statements.append(_faulty(group, source, mistake.span))
+            if solve is None:
+                found.append(mistake.as_finding(source))
+            statements.append(_faulty(group, source, solve or mistake.span))
+            if mistake.slug == "stray-line" and Reader(group.head).word() == "solve":
+                solve = mistake.span
     return tuple(statements), tuple(found)
 
 
@@ -45,14 +58,14 @@ def is_statement(text: str) -> bool:
     source = Source("", "    " + line)
     try:
         for group in groups(source, Span(0, len(source.text))):
-            read_statement(group)
+            read_statements(group)
     except Mistake:
         return False
     return True
 
 
-def read_statement(group: Group) -> Statement:
-    """The statement that a group of lines is. Raises `Mistake`."""
+def read_statements(group: Group) -> tuple[Statement, ...]:
+    """What a group of lines is: one statement, or one for each unknown. Raises `Mistake`."""
     text = group.whole.text
     if len(text) > LONGEST_STATEMENT:
         message = f"a statement of more than {LONGEST_STATEMENT} characters"
@@ -61,7 +74,11 @@ def read_statement(group: Group) -> Statement:
         message = "a note stands here without a statement"
         raise Mistake("bad-syntax", group.span, message, "text without a formula begins at the margin")
     _refuse_stray_lines(group)
-    return _read(group)
+    reader = Reader(group.whole)
+    several = _SEVERAL.get(reader.word())
+    if several is not None and not meant.is_named_so(group.whole.text):
+        return several(group, reader)
+    return (_read(group),)
 
 
 def _read(group: Group) -> Statement:
@@ -88,6 +105,8 @@ def _read(group: Group) -> Statement:
 
 def _refuse_stray_lines(group: Group) -> None:
     """A deeper line that could stand by itself, below one that could too, was indented by accident."""
+    if Reader(group.head).word() == "solve":
+        return  # its equations begin like definitions
     stray = next((item for item in group.deeper if meant.begins_statement(item.text)), None)
     if stray is None:
         return

@@ -17,6 +17,7 @@ from loadpath.formula.names import RESERVED, is_letter
 from loadpath.formula.quantities import Quantities
 from loadpath.formula.tree import (
     As,
+    At,
     Binary,
     Bracket,
     Branch,
@@ -312,13 +313,34 @@ class Reader(Quantities):
             )
         name, place = self.name()
         if self.peek() != "(":
-            return Name(name, place)
+            return self._cell(Name(name, place))
         opening = self.at
         self.at += 1
         self.enter()
         arguments = self._arguments(opening)
         self.depth -= 1
         return Call(name, arguments, self.span(start), place)
+
+    def _cell(self, column: Name) -> Node:
+        """The column itself, or one cell of it: `plates.b at "top flange"`."""
+        mark = self.at
+        if not self.takes_word("at"):
+            self.at = mark
+            return column
+        self.skip()
+        if self.peek() == '"':
+            row: Node = self.choice_word()
+        elif self.word() and self.word() not in RESERVED:
+            row = Name(*self.name("the name of a row"))
+            if self.word() and self.word() not in RESERVED:
+                label = f"{row.name} {self.word()}"
+                message = "a label of more than one word stands in quotes"
+                raise Mistake("bad-syntax", row.span, message, f'write `{column.name} at "{label}"`')
+        else:
+            message = f"`at` is followed by the label of a row, but {self.found()} stands here"
+            mend = f'write `{column.name} at "label"`, or the name of a choice'
+            raise Mistake("bad-syntax", self.here(), message, mend)
+        return At(column, row, column.span.join(span_of(row)))
 
     def _arguments(self, opening: int) -> tuple[Node, ...]:
         if self.takes(")"):

@@ -110,6 +110,133 @@ class Check(Statement):
     tolerance: Node
 
 
+# --- unknowns and equations ---------------------------------------------------------------------------------
+
+
+@dataclass(frozen=True, slots=True)
+class Unknown(Statement):
+    """One name of `unknown C_1 [rad], C_2 [mm]`: a later `solve for` finds its value."""
+
+    name: str
+    name_span: Span
+    unit: AskedUnit
+
+
+@dataclass(frozen=True, slots=True)
+class Sought:
+    """One unknown of a `solve for`."""
+
+    name: str
+    span: Span
+    unit: AskedUnit | None
+    """None where an `unknown` above has stated it."""
+    low: Node | None = None
+    high: Node | None = None
+    """Bounds, both or none."""
+
+
+@dataclass(frozen=True, slots=True)
+class Equations:
+    """What the steps of one `solve for` share."""
+
+    sought: tuple[Sought, ...]
+    equations: tuple[Relation, ...]
+    """Each with one `=`."""
+    span: Span
+    """Of the head line."""
+
+
+@dataclass(frozen=True, slots=True)
+class Solution(Statement):
+    """One unknown of `solve for R_A [kN], R_B [kN]` with its equations."""
+
+    index: int
+    """Which of the unknowns, from 0."""
+    together: Equations
+
+    @property
+    def sought(self) -> Sought:
+        """The unknown itself."""
+        return self.together.sought[self.index]
+
+    @property
+    def name(self) -> str:
+        """Of the unknown."""
+        return self.sought.name
+
+
+# --- tables -------------------------------------------------------------------------------------------------
+
+
+@dataclass(frozen=True, slots=True)
+class Table(Statement):
+    """A captioned table: its columns follow as statements of their own, unless it is two-way."""
+
+    name: str
+    name_span: Span
+    head: str
+    """What stands over the row labels, as typed."""
+    labels: tuple[str, ...]
+    """Of the rows; () where the first column is numbers."""
+    rows: int
+    two_way: TwoWay | None = None
+
+
+@dataclass(frozen=True, slots=True)
+class TwoWay:
+    """A table whose header cells after the first are quantities."""
+
+    across: tuple[Node, ...]
+    """The header cells."""
+    down: tuple[Node, ...]
+    """The first column, its unit filled in."""
+    cells: tuple[tuple[Node, ...], ...]
+    """One tuple a row."""
+
+
+@dataclass(frozen=True, slots=True)
+class Column(Statement):
+    """One column of a table: `plates.b`."""
+
+    name: str
+    """With the table's name in front."""
+    name_span: Span
+    table: str
+    place: int
+    """Among the columns that are steps, from 0."""
+    unit: AskedUnit | None
+    cells: tuple[Node, ...]
+    """One a row; a number typed without unit has that of the header."""
+    labels: tuple[str, ...]
+    """Of the rows, as in the table."""
+
+
+# --- pictures and tables of values --------------------------------------------------------------------------
+
+
+@dataclass(frozen=True, slots=True)
+class Plot(Statement):
+    """`plot V(x), M(x) for x from 0 m to L`."""
+
+    curves: tuple[Node, ...]
+    variable: str
+    variable_span: Span
+    low: Node
+    high: Node
+
+
+@dataclass(frozen=True, slots=True)
+class Tabulate(Statement):
+    """`tabulate M(x), v(x) for x from 0 m to L, 10 steps`."""
+
+    curves: tuple[Node, ...]
+    variable: str
+    variable_span: Span
+    low: Node
+    high: Node
+    steps: int
+
+
 @dataclass(frozen=True, slots=True)
 class Faulty(Statement):
     """A statement that could not be read. Its finding is reported; what hangs on `name` is not computed."""

@@ -127,6 +127,16 @@ class As(Node):
     unit_span: Span = field(default=NOWHERE, compare=False)
 
 
+@dataclass(frozen=True, slots=True)
+class At(Node):
+    """`plates.b at "top flange"`: one cell of a column; binds tightest."""
+
+    operand: Node
+    row: Node
+    """A `Word`, or the `Name` of a choice that says which row."""
+    span: Span = field(default=NOWHERE, compare=False)
+
+
 # --- relations ----------------------------------------------------------------------------------------------
 
 Sign = Literal["<=", "<", ">=", ">", "=", "≠"]
@@ -203,6 +213,7 @@ _CHILDREN: dict[type, tuple[str, ...]] = {
     Call: ("arguments",),
     Bracket: ("inner",),
     As: ("operand",),
+    At: ("operand", "row"),
     Relation: ("operands",),
     Logic: ("operands",),
     Branch: ("value", "condition"),

@@ -118,8 +118,8 @@ ANGLES = (
     Function("tanh", "plain", 1, 1, math.tanh, "x = tanh(0) | 0"),
 )
 CHOOSING = (
-    Function("min", "choose", 2, 50, min, "x = min(3 kN, 2 kN) | 2 kN"),
-    Function("max", "choose", 2, 50, max, "x = max(3 kN, 2 kN) | 3 kN"),
+    Function("min", "choose", 1, 50, min, "x = min(3 kN, 2 kN) | 2 kN"),
+    Function("max", "choose", 1, 50, max, "x = max(3 kN, 2 kN) | 3 kN"),
     Function("round_up", "steps", 2, 2, _round_up, "x = round_up(7.1 mm, 2 mm) | 8 mm"),
     Function("round_down", "steps", 2, 2, _round_down, "x = round_down(7.1 mm, 2 mm) | 6 mm"),
 )

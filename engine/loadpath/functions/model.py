@@ -12,7 +12,7 @@ Rule = Literal["plain", "root", "same", "like-first", "choose", "steps"]
 * `plain`: plain numbers in, a plain number out
 * `root`: any dimension in, its root out
 * `same`: any dimension in, the same out
-* `choose`: any number of arguments of one dimension, the same out
+* `choose`: any number of arguments of one dimension, the same out; a single one is a column
 * `steps`: value and step of one dimension, the same out
 * `like-first`: two arguments of one dimension, a plain number out
 """

@@ -12,11 +12,12 @@ from typing import Any
 
 from markupsafe import Markup, escape
 
-from loadpath.document.model import Block, Document, FigureBlock, Ref, TitleBlock
+from loadpath.document.model import Block, Document, FigureBlock, PlotBlock, Ref, TitleBlock
+from loadpath.figures import describe, svg
 from loadpath.findings.terminal import excerpt
 from loadpath.formula.names import symbol
 from loadpath.formula.tree import Name, Node, Shown
-from loadpath.render.math import COLUMN, PAGE, flow, mathml, widest
+from loadpath.render.math import COLUMN, PAGE, equations, flow, mathml, widest
 from loadpath.render.templates import environment, folder, without_turns
 from loadpath.units.printing import NARROW, THIN, quantity
 
@@ -53,6 +54,7 @@ def _environment() -> Any:
             "math": lambda node: Markup(mathml(node)),
             "flat": lambda node: Markup(mathml(node, flat=True)),
             "flow": _flow,
+            "equations": _equations,
             "are_wide": _are_wide,
             "name_math": lambda name: _flow(Name(name)),
             "shown": printed,
@@ -61,6 +63,9 @@ def _environment() -> Any:
             "breaks": breaks,
             "names_in": names_in,
             "excerpt": excerpt,
+            "own_name": lambda name: name.rpartition(".")[2],
+            "alt": lambda block: describe(block.picture),
+            "drawn": _drawn,
         }
     )
 
@@ -189,9 +194,23 @@ def _flow(node: Node, sign: str = "", wide: bool = False) -> Markup:
     return Markup("<wbr>").join(Markup(piece) for piece in flow(node, sign, most=PAGE if wide else COLUMN))
 
 
+def _equations(nodes: tuple[Node, ...]) -> list[tuple[Markup, Markup]]:
+    """Equations aligned at their relation signs: for each row what stands left and right of it."""
+    return [(_joined(left), _joined(right)) for left, right in equations(list(nodes))]
+
+
+def _joined(pieces: list[str]) -> Markup:
+    return Markup("<wbr>").join(Markup(piece) for piece in pieces)
+
+
 def _are_wide(sides: tuple[Node, ...]) -> bool:
     """True where a formula does not fit beside the results: the result then stands beneath it."""
     return any(widest(side) > COLUMN for side in sides)
+
+
+def _drawn(block: PlotBlock) -> str:
+    assert block.picture is not None
+    return f"data:image/svg+xml;base64,{base64.b64encode(svg(block.picture)).decode()}"
 
 
 def _figure(block: FigureBlock) -> str:

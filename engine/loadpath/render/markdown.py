@@ -12,12 +12,22 @@ from urllib.parse import quote
 
 from markupsafe import Markup
 
-from loadpath.document.model import CallLine, Document, FigureBlock, Line, ProseBlock, Ref, SectionHead
+from loadpath.document.model import (
+    CallLine,
+    Document,
+    FigureBlock,
+    Line,
+    PlotBlock,
+    ProseBlock,
+    Ref,
+    SectionHead,
+)
+from loadpath.figures import describe, svg
 from loadpath.formula.names import plain_symbol
 from loadpath.formula.tree import Name, Node, Shown
 from loadpath.render.markdown_prose import escape as plain
 from loadpath.render.markdown_prose import inline, prose
-from loadpath.render.math import latex, latex_lines
+from loadpath.render.math import latex, latex_equations, latex_lines
 from loadpath.render.templates import environment, without_turns
 from loadpath.units.printing import quantity
 
@@ -26,7 +36,7 @@ ENDINGS = {"image/png": "png", "image/jpeg": "jpg", "image/svg+xml": "svg"}
 
 def render(document: Document, stem: str) -> tuple[str, dict[str, bytes]]:
     """The text of a document, and the images that stand beside it, by file name."""
-    images = {_image_name(b, stem): b.data for b in document.figures if b.data}
+    images = {_image_name(b, stem): data for b in document.figures if (data := _image_data(b))}
     values, written = _values(document), []
 
     def keep(block: ProseBlock) -> Markup:
@@ -54,7 +64,7 @@ def render(document: Document, stem: str) -> tuple[str, dict[str, bytes]]:
 @lru_cache(maxsize=1)
 def _environment() -> Any:
     filters: dict[str, Callable[..., Any]] = {
-        "display": lambda node: Markup(f"$$\n{latex(node)}\n$$"),
+        "display": lambda node: Markup(f"$$\n{latex_equations([node])}\n$$"),
         "equation": lambda name, sides: Markup(f"$$\n{latex_lines(name, sides)}\n$$"),
         "inline": _inline_math,
         "shown": _shown,
@@ -62,6 +72,9 @@ def _environment() -> Any:
         "name_math": lambda name: _inline_math(Name(name)),
         "line": _line,
         "call": _call,
+        "alt": lambda block: describe(block.picture),
+        "own_name": lambda name: name.rpartition(".")[2],
+        "aligned": lambda equations: Markup(f"$$\n{latex_equations(equations)}\n$$"),
         "cell": lambda text: Markup(str(_escape(text)).replace("\n", " ")),
     }
     return environment(filters, _escape)
@@ -121,5 +134,12 @@ def _values(document: Document) -> Callable[[Any], str]:
     return lambda value: str(_shown(document.values.get(value, value.typed)))
 
 
-def _image_name(block: FigureBlock, stem: str) -> str:
-    return f"{stem}.figure-{block.number}.{ENDINGS.get(block.media_type, 'bin')}"
+def _image_name(block: FigureBlock | PlotBlock, stem: str) -> str:
+    ending = "svg" if isinstance(block, PlotBlock) else ENDINGS.get(block.media_type, "bin")
+    return f"{stem}.figure-{block.number}.{ending}"
+
+
+def _image_data(block: FigureBlock | PlotBlock) -> bytes:
+    if isinstance(block, FigureBlock):
+        return block.data
+    return svg(block.picture) if block.picture else b""

@@ -9,9 +9,11 @@ from loadpath.formula.canonical import text
 from loadpath.formula.mistake import Mistake
 from loadpath.formula.statements import AskedUnit, FunctionDefinition
 from loadpath.formula.tree import Call, Node, span_of
-from loadpath.functions import FUNCTIONS, Function
+from loadpath.functions import FUNCTIONS, SPECIAL, Function
+from loadpath.resolve.columns import is_brought_back
 from loadpath.resolve.mismatches import article, factor_between, mismatch, no_bare_zero, no_multiple
 from loadpath.resolve.model import UNKNOWN, Type
+from loadpath.resolve.special import refuse_table, type_of_special
 from loadpath.units import parse_unit
 
 if TYPE_CHECKING:
@@ -30,6 +32,10 @@ def form(function: Function | FunctionDefinition) -> str:
 
 def type_of_call(checker: Checker, node: Call, parameters: Parameters | None) -> Type:
     """The type of a call; UNKNOWN where there is no such function, which is said elsewhere."""
+    if node.function in SPECIAL:
+        return type_of_special(checker, node, parameters)
+    if is_brought_back(node):
+        refuse_table(checker, node)
     arguments = [checker.number(argument, parameters) for argument in node.arguments]
     definition = checker.function(node.function)
     if definition is not None:

@@ -6,11 +6,13 @@ from collections.abc import Callable
 from dataclasses import replace
 from fractions import Fraction
 
+from loadpath.findings import Remark
 from loadpath.formula.canonical import text
 from loadpath.formula.mistake import Mistake
 from loadpath.formula.statements import AskedUnit, FunctionDefinition
 from loadpath.formula.tree import (
     As,
+    At,
     Binary,
     Bracket,
     Call,
@@ -35,7 +37,7 @@ from loadpath.resolve.mismatches import (
     no_multiple,
     sum_of_temperatures,
 )
-from loadpath.resolve.model import UNKNOWN, Flavour, Type
+from loadpath.resolve.model import UNKNOWN, Flavour, TwoWayTypes, Type
 from loadpath.resolve.units import names_behind_operators, read_unit, type_of_unit
 from loadpath.text import Span
 from loadpath.units import Unit, UnitSystem
@@ -68,8 +70,12 @@ class Checker:
         function: Callable[[str], FunctionDefinition | None],
         is_name: Callable[[str], bool],
         system: UnitSystem,
+        two_way: Callable[[str], TwoWayTypes | None] = lambda _: None,
+        is_table: Callable[[str], bool] = lambda _: False,
+        first: Callable[[str], Span | None] = lambda _: None,
     ) -> None:
         self.type_of_name, self.function, self.is_name, self.system = type_of_name, function, is_name, system
+        self.two_way, self.is_table, self.first = two_way, is_table, first
         self.warnings: list[Mistake] = []
         self.known_calls: dict[tuple[str, tuple[Type, ...]], Type] = {}
         """Types of calls of the sheet's functions, by the types of their arguments."""
@@ -102,6 +108,8 @@ class Checker:
                 return self._bracket(node, parameters)
             case As():
                 return self._as(node, parameters)
+            case At(operand=operand):
+                return self.number(operand, parameters)
             case Cases():
                 return relations.type_of_cases(self, node, parameters)
             case Word():
@@ -129,7 +137,24 @@ class Checker:
         if definition is not None:
             message = f"`{node.name}` is a function and is called with its arguments"
             raise Mistake("wrong-arguments", node.span, message, f"write `{calls.form(definition)}`")
+        if self.is_table(node.name):
+            message = f"`{node.name}` is a table, and a formula takes one of its columns"
+            mend = f"name the column: `{node.name}.A`"
+            raise Mistake("column-not-number", node.span, message, mend)
         return self.type_of_name(node.name)
+
+    def refuse_shadow(self, name: str, place: Span, parameters: Parameters | None = None) -> None:
+        """A name that lives only within a call or a function may be no name around it."""
+        if self.is_name(name) or name == "pi":
+            first = self.first(name)
+            raise Mistake(
+                "shadowed-name", place, f"`{name}` lives only here, but is also a name of this sheet",
+                "choose another name for one of the two",
+                remarks=() if first is None else (Remark("the name of the sheet stands here", first),),
+            )  # fmt: skip
+        if parameters and name in parameters:
+            message = f"`{name}` lives only here, but is also a parameter of what this stands in"
+            raise Mistake("shadowed-name", place, message, "choose another name for one of the two")
 
     def _quantity(self, node: Quantity) -> Type:
         found = Type()
@@ -244,6 +269,16 @@ class Checker:
             help = "use `degC` or `degF` for an absolute temperature, `K` for a difference"
             raise Mistake("absolute-temperature", node.unit_span, message, help)
         return Type()
+
+    def parameter_types(self, definition: FunctionDefinition) -> Parameters:
+        """Types of a function's parameters; UNKNOWN for one without unit."""
+        types: Parameters = {}
+        for parameter in definition.parameters:
+            types[parameter.name] = UNKNOWN
+            if parameter.unit is not None:
+                unit = read_unit(parameter.unit.text, parameter.unit.span, self.is_name)
+                types[parameter.name] = Type(unit.dimension, unit.absolute)
+        return types
 
     # --- relations, and the unit that a value is shown in ---
 

@@ -5,16 +5,15 @@ from __future__ import annotations
 from collections.abc import Iterable
 from dataclasses import replace
 
-from loadpath.findings import Remark
 from loadpath.formula.mistake import Mistake
-from loadpath.formula.statements import AskedUnit, Check, FunctionDefinition, Parameter, Statement
+from loadpath.formula.statements import AskedUnit, Check, FunctionDefinition, Statement
 from loadpath.formula.tree import Name, Node, Quantity, Relation, Word, span_of, walk
-from loadpath.resolve.dimensions import Checker, Parameters
+from loadpath.resolve.dimensions import Checker
 from loadpath.resolve.mismatches import article, factor_between
 from loadpath.resolve.model import UNKNOWN, Entry, Type
 from loadpath.resolve.names import Names
-from loadpath.resolve.parts import PI, relations_in
-from loadpath.resolve.units import read_unit, typed_unit
+from loadpath.resolve.parts import relations_in
+from loadpath.resolve.units import typed_unit
 from loadpath.units import ONE, Unit
 
 RELATIVE = ("%", "ppm")
@@ -49,7 +48,9 @@ class Displays:
 
     def of_function(self, statement: FunctionDefinition) -> Shown:
         """Of a function's value; UNKNOWN where a parameter without unit leaves it to each call."""
-        parameters: Parameters = {p.name: self._parameter(p) for p in statement.parameters}
+        for parameter in statement.parameters:
+            self.checker.refuse_shadow(parameter.name, parameter.span)
+        parameters = self.checker.parameter_types(statement)
         found = self.checker.type_of(statement.body, parameters)
         if found.words is not None:
             message = "a function cannot give a choice"
@@ -57,20 +58,6 @@ class Displays:
         untyped = any(p.unit is None for p in statement.parameters)
         type_, unit, asked = self.of_value(found, statement.unit, statement.body, False)
         return (UNKNOWN if untyped and not asked else type_), unit, asked
-
-    def _parameter(self, parameter: Parameter) -> Type:
-        name = parameter.name
-        if name in self.names or name == PI:
-            first = self.names.first.get(name)
-            remarks = () if first is None else (Remark("the name of the sheet stands here", first),)
-            raise Mistake(
-                "shadowed-name", parameter.span, f"the parameter `{name}` is also a name of this sheet",
-                "choose another name for one of the two", remarks=remarks,
-            )  # fmt: skip
-        if parameter.unit is None:
-            return UNKNOWN
-        unit = read_unit(parameter.unit.text, parameter.unit.span, self.names.__contains__)
-        return Type(unit.dimension, unit.absolute)
 
     # --- relations ---
 

@@ -14,7 +14,10 @@ from loadpath.units import ONE, PLAIN, Dimension, Unit, UnitSystem
 if TYPE_CHECKING:
     from loadpath.resolve.dimensions import Checker
 
-Kind = Literal["input", "choice", "result", "function", "criterion", "check", "valid", "faulty"]
+Kind = Literal[
+    "input", "choice", "result", "function", "criterion", "check", "valid", "unknown", "solution", "table",
+    "plot", "faulty",
+]  # fmt: skip
 Flavour = Literal["", "cycles", "turning", "bar"]
 
 
@@ -41,6 +44,37 @@ UNKNOWN = Type(unknown=True)
 
 
 @dataclass(frozen=True, slots=True)
+class Rows:
+    """The rows that a column has."""
+
+    table: str
+    labels: tuple[str, ...]
+    """() where the table's first column is numbers."""
+    count: int
+
+    def go_with(self, other: Rows) -> bool:
+        """True where two columns may be joined row by row."""
+        return self.table == other.table or (bool(self.labels) and self.labels == other.labels)
+
+    def label(self, index: int) -> str:
+        """What a reader calls a row."""
+        return self.labels[index] if self.labels else str(index + 1)
+
+    def said(self, index: int) -> str:
+        """A row in words: `row "web"`, or `row 2` where rows have no labels."""
+        return f'row "{self.labels[index]}"' if self.labels else f"row {index + 1}"
+
+
+@dataclass(frozen=True, slots=True)
+class TwoWayTypes:
+    """Types of a two-way table."""
+
+    down: Type
+    across: Type
+    cells: Type
+
+
+@dataclass(frozen=True, slots=True)
 class Entry:
     """One statement, resolved."""
 
@@ -62,6 +96,8 @@ class Entry:
     """Names of the sheet that it uses, each once, in the order typed."""
     blocked_by: int
     """Line of the mistake that keeps it from being computed, 0 where it can be."""
+    rows: Rows | None = None
+    """Where its value is a column, or it is judged row by row."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -84,4 +120,4 @@ class Resolved:
     of a unit, or anywhere on a line that could not be read."""
 
 
-__all__ = ["ONE", "UNKNOWN", "Entry", "Flavour", "Kind", "Resolved", "Type"]
+__all__ = ["ONE", "UNKNOWN", "Entry", "Flavour", "Kind", "Resolved", "Rows", "TwoWayTypes", "Type"]

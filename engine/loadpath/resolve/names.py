@@ -13,14 +13,20 @@ from loadpath.formula.names import look, plain_symbol
 from loadpath.formula.statements import (
     Check,
     Choice,
+    Column,
     Criterion,
     Definition,
     Faulty,
     FunctionDefinition,
+    Plot,
+    Solution,
     Statement,
+    Table,
+    Tabulate,
+    Unknown,
     Validity,
 )
-from loadpath.functions import FUNCTIONS, LATER
+from loadpath.functions import NAMES as BUILT_IN
 from loadpath.resolve.parts import PI, Use, defined_by
 from loadpath.text import Source, Span
 
@@ -72,19 +78,24 @@ class Names:
     def add(self, statement: Statement, index: int) -> None:
         """Takes up what a statement defines; the first definition of a name stays."""
         for name, _ in defined_by(statement):
-            if name not in self.by_name and name not in FUNCTIONS and name != PI:
+            if isinstance(statement, Solution) and name in self.by_name:
+                self.by_name[name] = index
+            if name not in self.by_name and name not in BUILT_IN and name != PI:
                 self.by_name[name] = index
                 self._looks.setdefault(look(name), name)
                 if isinstance(statement, FunctionDefinition):
                     self.functions[name] = statement
 
-    def refused(self, name: str, span: Span) -> Mistake | None:
-        """Why a name cannot be defined at a place, None where it can."""
+    def refused(self, name: str, span: Span, found_here: bool = False) -> Mistake | None:
+        """Why a name cannot be defined at a place, None where it can.
+
+        `found_here`: the place is the solution of an unknown that stands above.
+        """
         if name == PI:
             return Mistake(
                 "reserved-word", span, "`pi` stands defined and cannot be a name", "choose another name"
             )
-        if name in self.by_name:
+        if name in self.by_name and not found_here:
             first = self.first[name]
             line = self._source.line_number(first.start)
             self.contested.setdefault(name, self._source.line_number(span.start))
@@ -94,7 +105,7 @@ class Names:
                 remarks=(Remark(f"first defined on line {line}", first),),
             )  # fmt: skip
         alike = self._looks.get(look(name))
-        if alike is None:
+        if alike is None or alike == name:
             return None
         message = f"`{name}` prints like `{alike}`, as {plain_symbol(name)}"
         return Mistake("alike-names", span, message, "choose a name that a reader can tell apart")
@@ -111,21 +122,19 @@ class Names:
     def not_defined(self, use: Use, statement: Statement) -> Mistake:
         """What is wrong with the use of a name that nothing above defines."""
         name, span = use.name, use.span
-        if use.called and name in LATER:
-            message = (
-                f"`{name}` is a function of the language, but this version of loadpath cannot work it yet"
-            )
-            return Mistake("not-available", span, message, "write the working out in plain formulas for now")
-        if name in FUNCTIONS or name in LATER:
+        if name in BUILT_IN:
             message = f"`{name}` is a function and is called with its arguments"
             return Mistake("wrong-arguments", span, message, f"write `{name}(...)`")
         if name in self.first:
             return self._too_early(name, span, statement)
         if use.called:
-            near = self._suggestions.nearest(name, {*FUNCTIONS, *self.functions})
+            near = self._suggestions.nearest(name, {*BUILT_IN, *self.functions})
             mend = near or f"a product takes a `*`: `{name}*(...)`"
             return Mistake("unknown-function", span, f"there is no function `{name}`", mend)
         near = self._suggestions.nearest(name, self.first)
+        prefix, dot, _ = name.partition(".")
+        if dot and prefix not in self.first and not near:
+            near = f"a table of data brings its columns by its caption: `Table {prefix}: what it holds [key]`"
         message = f"`{name}` is defined nowhere on this sheet"
         return Mistake("unknown-name", span, message, near or "define it above, or check the spelling")
 
@@ -147,6 +156,14 @@ def step_id(statement: Statement) -> str:
     match statement:
         case Definition(name=name) | Choice(name=name) | FunctionDefinition(name=name):
             return name
+        case Unknown(name=name):
+            return f"unknown {name}"
+        case Solution() | Column():
+            return statement.name
+        case Table(name=name):
+            return f"table {name}"
+        case Plot() | Tabulate():
+            return statement_text(statement).split(" for ")[0]
         case Criterion(kind=kind, name=name):
             return f"{kind} {name}" if name else f"{kind}: {statement_text(statement)}"
         case Validity():

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from loadpath.findings import Finding
 from loadpath.formula.mistake import Mistake
-from loadpath.formula.statements import AskedUnit
+from loadpath.formula.statements import AskedUnit, Table
 from loadpath.formula.tree import Name
 from loadpath.resolve.dimensions import Checker
 from loadpath.resolve.model import Entry
@@ -55,6 +55,11 @@ def _unit(
         message = f"`{value.name}` is a function and has no one value"
         help = f"give a value of it a name first: `{value.name}_1 = {value.name}(...)`"
         raise Mistake("wrong-arguments", value.name_span, message, help)
+    if entry.rows is not None or isinstance(entry.statement, Table):
+        what = "a column" if entry.rows is not None else "a table"
+        message = f"`{value.name}` is {what}, and prose prints one value"
+        help = f'give one of them a name first: `{value.name.replace(".", "_")}_1 = {value.name} at "label"`'
+        raise Mistake("column-not-number", value.name_span, message, help)
     if not value.unit or entry.type.unknown:
         return entry.unit
     return checker.shown(entry.type, AskedUnit(value.unit, value.unit_span), Name(value.name))[1]

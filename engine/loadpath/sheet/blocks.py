@@ -2,13 +2,11 @@
 
 from __future__ import annotations
 
-import re
 from collections.abc import Iterator
 
 from markdown_it.token import Token
 
 from loadpath.findings import Finding, finding
-from loadpath.formula.names import canonical
 from loadpath.formula.parser import parse_block
 from loadpath.formula.statements import Faulty, Statement
 from loadpath.project import World
@@ -18,11 +16,11 @@ from loadpath.sheet.markdown import DEEPEST, parse, plain_text
 from loadpath.sheet.misplaced import Surroundings
 from loadpath.sheet.model import Block, Formulas, Heading, Image, Prose
 from loadpath.sheet.places import CellPlaces, Places, heading_places, paragraph_places
+from loadpath.sheet.tables import read_caption, read_table, without_table
 from loadpath.sheet.values import read_value, values_in
 from loadpath.text import Source, Span
 
 _LISTS = ("bullet_list_open", "ordered_list_open")
-_TABLE = re.compile(r"Table\s+([^\W\d][\w.']*)\s*:")
 
 
 def read_blocks(source: Source, start: int, world: World) -> tuple[tuple[Block, ...], tuple[Finding, ...]]:
@@ -47,7 +45,7 @@ class _Words:
         self.lost: list[Faulty] = []
         """Misplaced formula lines, in reading order."""
         self.places: dict[int, Places] = {}
-        """Of each inline token that stands at top level, by its id."""
+        """Of each inline token that stands at top level or in a table, by its id."""
         self.cells = CellPlaces(source)
         self.open: list[Token] = []
 
@@ -83,7 +81,7 @@ class _Words:
             self.lost += lost
         else:
             places = self.cells(token, line)
-        if len(self.open) == 1:
+        if len(self.open) == 1 or parent.type in ("th_open", "td_open"):
             self.places[id(token)] = places
         alone = len(self.open) == 1 and parent.type == "paragraph_open" and _lone_image(token) is not None
         token.children = [self.child(child, token.content, places, alone) for child in token.children or ()]
@@ -135,8 +133,8 @@ class _Blocks:
         self.prose: list[Token] = []
         self.prose_from = 0
         """The line after the last block that is not prose, from 0 in the body."""
-        self.tables: list[Statement] = []
-        """Tables of data in the prose that is not closed yet."""
+        self.bare: list[Statement] = []
+        """Captions without a table in the prose that is not closed yet."""
         self.images = 0
         self.lost = iter(words.lost)
         self.next_lost = next(self.lost, None)
@@ -146,15 +144,21 @@ class _Blocks:
         for element in _elements(tokens):
             first = element[0]
             assert first.map is not None
+            if first.type != "table_open":
+                self.refuse_caption(before)
             block = self.block(element)
+            if block is None and self.table(element, before):
+                before = element
+                continue
             if block is None:
-                self.check(element, before)
+                self.check(element)
                 self.prose += element
             else:
                 self.end_prose(first.map[0])
                 self.blocks.append(block)
                 self.prose_from = first.map[1]
             before = element
+        self.refuse_caption(before)
         self.end_prose(len(self.source.line_starts) + 1 - self.first_line)
 
     def block(self, element: list[Token]) -> Block | None:
@@ -188,25 +192,42 @@ class _Blocks:
         caption = plain_text(token.children)
         return Image(picture.path, caption, picture.media_type, picture.data, self.images, span)
 
-    def check(self, element: list[Token], before: list[Token]) -> None:
+    def check(self, element: list[Token]) -> None:
         """What is legal CommonMark, but would leave something of a sheet out of sight."""
         first = element[0]
-        if first.type == "table_open" and before and before[0].type == "paragraph_open":
-            match = _TABLE.match(before[1].content)
-            if match:
-                self.table(match, self.words.places[id(before[1])])
-        elif first.type == "fence" and not self.is_closed(first):
+        if first.type == "fence" and not self.is_closed(first):
             span = self.source.line_span(self.words.line(first))
             message = "this fence is not closed, so nothing below it is evaluated"
             help = f"close it with a line `{first.markup}`"
             self.found.append(finding("swallowed-formula", message, self.source, span, help=help))
 
-    def table(self, match: re.Match[str], places: Places) -> None:
-        word, whole = Span(places(0), places(4) + 1), Span(places(0), places(match.end() - 1) + 1)
-        message = "a table of data is part of the language, but this version of loadpath cannot work it yet"
-        help = "type its values on formula lines for now"
-        self.found.append(finding("not-available", message, self.source, word, help=help))
-        self.tables.append(Faulty(whole, (), self.source.cut(whole), (canonical(match.group(1)),)))
+    def table(self, element: list[Token], before: list[Token]) -> bool:
+        """Takes up a table of data with the caption above it; False where the element is none."""
+        first = element[0]
+        if first.type != "table_open" or not before or before[0].type != "paragraph_open":
+            return False
+        above = before[1]
+        caption = read_caption(above.content, self.words.places[id(above)], self.source)
+        if caption is None:
+            return False
+        assert first.map is not None and before[0].map is not None
+        statements, found = read_table(caption, element, self.words.places, self.source, self.first_line)
+        self.found += found
+        del self.prose[-len(before) :]
+        self.end_prose(before[0].map[0])
+        self.blocks.append(Formulas(statements, statements[0].span))
+        self.prose_from = first.map[1]
+        return True
+
+    def refuse_caption(self, element: list[Token]) -> None:
+        """A caption of a table of data must stand above one."""
+        if element and element[0].type == "paragraph_open":
+            content, places = element[1].content, self.words.places[id(element[1])]
+            caption = read_caption(content, places, self.source)
+            if caption is not None:
+                statement, found = without_table(caption, self.source)
+                self.found.append(found)
+                self.bare.append(statement)
 
     def is_closed(self, fence: Token) -> bool:
         assert fence.map is not None
@@ -223,8 +244,8 @@ class _Blocks:
         self.prose = []
         starts, line = self.source.line_starts, self.first_line - 1 + before
         end = starts[line] if line < len(starts) else len(self.source.text) + 1
-        lost: list[Statement] = self.tables
-        self.tables = []
+        lost: list[Statement] = self.bare
+        self.bare = []
         while self.next_lost is not None and self.next_lost.span.start < end:
             lost.append(self.next_lost)
             self.next_lost = next(self.lost, None)

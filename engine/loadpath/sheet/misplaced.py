@@ -65,7 +65,7 @@ def in_paragraph(
     lost: list[Faulty] = []
     # lines that follow one another have one cause
     lines = enumerate(_lines(content, places, source, around))
-    for _, run in groupby(lines, lambda pair: (pair[1].number - pair[0], pair[1].slug)):
+    for _, run in groupby(lines, lambda pair: pair[1].number - pair[0]):
         members = [line for _, line in run]
         found.append(_finding(members, source, around))
         for line in members:

@@ -2,7 +2,11 @@
 
 from loadpath.trace.model import (
     Called,
+    Curve,
+    Curves,
     Operand,
+    PutBack,
+    Spot,
     Step,
     Taken,
     Trace,
@@ -14,7 +18,11 @@ from loadpath.trace.model import (
 
 __all__ = [
     "Called",
+    "Curve",
+    "Curves",
     "Operand",
+    "PutBack",
+    "Spot",
     "Step",
     "Taken",
     "Trace",

@@ -14,7 +14,7 @@ from loadpath.formula.canonical import text
 from loadpath.formula.statements import Check, Criterion, Validity
 from loadpath.resolve import expressions
 from loadpath.trace import texts
-from loadpath.trace.model import Step, Trace, criterion_kind
+from loadpath.trace.model import Step, Trace, Verdict, criterion_kind
 from loadpath.units.printing import quantity
 
 SCHEMA = "loadpath-trace/1"
@@ -31,11 +31,11 @@ class StepRecord:
     formula: str
     substitution: str
     display: str
-    value: float | str | None
-    """In `unit`."""
+    value: float | str | list[float] | None
+    """In `unit`; of a column a list."""
     unit: str
-    si: float | None
-    """Coherent SI, full precision."""
+    si: float | list[float] | None
+    """Coherent SI, full precision; of a column a list."""
     uses: list[str]
     used_by: list[str]
     sources: list[str]
@@ -46,6 +46,14 @@ class StepRecord:
     """1-based, of the `cases` branch taken."""
     verdict: str
     """Of a criterion, a validity or a check."""
+    derived: str
+    """What algebra made of the formula; of an unknown its solution in symbols; "" where there is none."""
+    method: str
+    """How a solution was found, "" for other steps."""
+    rows: list[str]
+    """Labels of the rows, where the step goes over a column."""
+    governing: str
+    """Label of the row that governs a criterion on columns, else ""."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -137,7 +145,6 @@ def record(trace: Trace, version: str) -> TraceFile:
 
 
 def _step(trace: Trace, step: Step) -> StepRecord:
-    shown = texts.display(step)
     taken = step.working.taken if step.working else None
     return StepRecord(
         step.id,
@@ -146,10 +153,10 @@ def _step(trace: Trace, step: Step) -> StepRecord:
         step.line,
         texts.formula(step),
         _substitution(trace, step),
-        quantity(shown.number, shown.unit) if shown and not shown.word else shown.number if shown else "",
-        step.value,
+        _display(step),
+        list(step.value) if isinstance(step.value, tuple) else step.value,
         step.unit.text,
-        step.si if isinstance(step.si, float) else None,
+        list(step.si) if isinstance(step.si, tuple) else step.si if isinstance(step.si, float) else None,
         list(step.uses),
         list(step.used_by),
         list(step.sources),
@@ -157,7 +164,33 @@ def _step(trace: Trace, step: Step) -> StepRecord:
         step.why,
         taken.index + 1 if taken else None,
         verdict_words(step),
+        _derived(step),
+        step.solved.method if step.solved else "",
+        _rows(step),
+        step.rows[step.governing].label if step.governing is not None else "",
     )
+
+
+def _display(step: Step) -> str:
+    """The value as printed; of a column one after the other."""
+    if isinstance(step.si, tuple):
+        cells = (texts.row_shown(step, i) for i in range(len(step.rows)))
+        return ", ".join(quantity(cell.number, cell.unit) for cell in cells if cell)
+    shown = texts.display(step)
+    if shown is None:
+        return ""
+    return shown.number if shown.word else quantity(shown.number, shown.unit)
+
+
+def _derived(step: Step) -> str:
+    """What algebra made of the formula, "" where it had nothing to do."""
+    if step.working is None or (step.working.typed is None and step.kind != "solution"):
+        return ""
+    return text(step.working.tree)
+
+
+def _rows(step: Step) -> list[str]:
+    return [row.label for row in step.rows]
 
 
 def _substitution(trace: Trace, step: Step) -> str:
@@ -174,11 +207,14 @@ def _substitution(trace: Trace, step: Step) -> str:
 
 def verdict_words(step: Step, name: Callable[[str], str] = str) -> str:
     """The verdict of a judged step in words; "" for other steps. `name` says how names are written."""
-    if step.verdict is None:
-        return ""
+    return "" if step.verdict is None else verdict_words_of(step, step.verdict, name)
+
+
+def verdict_words_of(step: Step, verdict: Verdict, name: Callable[[str], str] = str) -> str:
+    """The same of one of its verdicts, where it is judged row by row."""
     if isinstance(step.statement, Validity | Check):
-        return _held(step.statement, step.verdict.satisfied, step.why, name)
-    return step.verdict.words(step.why, name)
+        return _held(step.statement, verdict.satisfied, step.why, name)
+    return verdict.words(step.why, name)
 
 
 def _held(statement: Validity | Check, held: bool | None, why: str, name: Callable[[str], str]) -> str:

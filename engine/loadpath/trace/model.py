@@ -8,17 +8,15 @@ from __future__ import annotations
 from collections.abc import Callable, Iterator
 from dataclasses import dataclass, field, replace
 from functools import cached_property
-from typing import Any, Literal
+from typing import Any
 
 from loadpath.findings import Finding, ordered
 from loadpath.formula.canonical import text as formula_text
 from loadpath.formula.statements import Criterion, Faulty, Statement
-from loadpath.formula.tree import Branch, Call, Cases, Node
-from loadpath.resolve import Entry, Resolved
+from loadpath.formula.tree import Branch, Call, Cases, Node, Relation
+from loadpath.resolve import Entry, Kind, Resolved
 from loadpath.sheet.model import Sheet
 from loadpath.units import Unit
-
-Kind = Literal["input", "choice", "result", "function", "criterion", "check", "valid", "faulty"]
 
 
 @dataclass(frozen=True, slots=True)
@@ -83,6 +81,82 @@ class Working:
     """Calls in it, each once, in reading order."""
     asides: tuple[Aside, ...] = ()
     """What governed a `min`, what was rounded, which unit `as` assumed: each a line beneath the step."""
+    typed: Node | None = None
+    """The formula as typed, where what was worked was derived from it: integrated, differentiated."""
+    written: Node | None = None
+    """In place of a substitution: the cells that a `sum` adds up, the rows that `interp` reads."""
+
+
+@dataclass(frozen=True, slots=True)
+class PutBack:
+    """One equation with the solution put back."""
+
+    equation: Relation
+    left: float
+    right: float
+    """SI."""
+    unit: Unit
+    close: bool
+    """True where the two agree to rounding."""
+
+
+@dataclass(frozen=True, slots=True)
+class Solved:
+    """How the unknowns of one `solve for` were found; its steps share it."""
+
+    method: str
+    """`linear system`, `quadratic`, `bracketing (Brent) between the bounds`."""
+    symbols: dict[str, Node]
+    """The solution in symbols, where there is one."""
+    put_back: tuple[PutBack, ...]
+    others: tuple[tuple[str, Operand, str], ...] = ()
+    """Roots that were found and not taken: name, value, why not."""
+
+
+@dataclass(frozen=True, slots=True)
+class Row:
+    """One row of a step that goes over a column."""
+
+    label: str
+    si: float | None
+    working: Working | None
+    verdict: Verdict | None = None
+
+
+@dataclass(frozen=True, slots=True)
+class Spot:
+    """A largest or smallest value, with its place."""
+
+    x: float
+    y: float
+    """SI."""
+
+
+@dataclass(frozen=True, slots=True)
+class Curve:
+    """One expression over a range."""
+
+    tree: Node
+    """As typed."""
+    unit: Unit
+    points: tuple[tuple[float, float], ...]
+    """SI; two points of one x are a jump, a nan is a gap."""
+    largest: Spot | None
+    smallest: Spot | None
+    method: str
+    """How the two were found: `exact`, or `numeric, 200 points`."""
+
+
+@dataclass(frozen=True, slots=True)
+class Curves:
+    """What a `plot` or a `tabulate` shows."""
+
+    variable: str
+    unit: Unit
+    """Of what runs over the range."""
+    low: float
+    high: float
+    curves: tuple[Curve, ...]
 
 
 @dataclass(frozen=True, slots=True)
@@ -142,14 +216,21 @@ class Step:
     """One step of the calculation."""
 
     outline: Outline
-    si: float | str | None
-    """Value in coherent SI at full precision; the word of a choice; None where there is none."""
+    si: float | str | tuple[float, ...] | None
+    """Value in coherent SI at full precision; the word of a choice; of a column one a row; None where there
+    is none."""
     digits: int
     """Significant digits that it is shown to."""
     working: Working | None
     verdict: Verdict | None
     why: str
     """`not computed because of line 12`, "" where it was computed or has no value to compute."""
+    rows: tuple[Row, ...] = ()
+    """Where it goes over a column."""
+    governing: int | None = None
+    """Index of the row that governs a criterion on columns."""
+    solved: Solved | None = None
+    curves: Curves | None = None
 
     @property
     def entry(self) -> Entry:
@@ -202,8 +283,10 @@ class Step:
         return self.entry.unit
 
     @property
-    def value(self) -> float | str | None:
-        """The value in `unit` at full precision; None where it was not computed."""
+    def value(self) -> float | str | tuple[float, ...] | None:
+        """The value in `unit` at full precision, of a column one a row; None where it was not computed."""
+        if isinstance(self.si, tuple):
+            return tuple(self.unit.from_si(si) for si in self.si)
         return self.unit.from_si(self.si) if isinstance(self.si, float) else self.si
 
     @property

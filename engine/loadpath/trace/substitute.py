@@ -12,8 +12,10 @@ from collections.abc import Callable
 from dataclasses import dataclass, replace
 from fractions import Fraction
 
+from loadpath.formula.canonical import text
 from loadpath.formula.tree import (
     As,
+    At,
     Binary,
     Bracket,
     Call,
@@ -63,6 +65,9 @@ def substitute(tree: Node, scope: Scope, calls: tuple[Called, ...], more: int = 
         match node:
             case Name(name=name):
                 operand = scope(name)
+                return node if operand is None else shown(operand, more)
+            case At():
+                operand = scope(text(node))
                 return node if operand is None else shown(operand, more)
             case Call() if node in values:
                 return shown(values[node], more)

@@ -10,13 +10,13 @@ from contextlib import suppress
 from dataclasses import dataclass, replace
 from itertools import pairwise
 
+from loadpath.formula.binding import free_names
 from loadpath.formula.canonical import statement_text
 from loadpath.formula.signs import holds
 from loadpath.formula.statements import Check, Criterion, Definition, Validity
 from loadpath.formula.tree import Binary, Call, Logic, Name, Node, Number, Relation, Shown, Sign, walk
-from loadpath.resolve import expressions
 from loadpath.trace.digits import exact_digits, in_order, order_digits, typed_number
-from loadpath.trace.model import Called, Operand, Step, Trace, Working
+from loadpath.trace.model import Called, Operand, Step, Trace, Verdict, Working
 from loadpath.trace.substitute import Scope, natural_unit, shown, substitute, with_factors
 from loadpath.units import ONE, Unit
 from loadpath.units.dimension import LENGTH
@@ -25,6 +25,7 @@ from loadpath.units.printing import MOST_DIGITS, feet_and_inches, plain, read_pl
 WORKED_INPUT = 5
 """Digits to which an input that is worked out (`5/8 in`, `42.3 kg/m * 9.81 m/s^2`) is printed at the
 least, where it has them."""
+_WHOLE = ("round_up", "round_down", "count")
 MORE = 2
 """Further digits that a substitution may show where the usual ones would not lead to the result."""
 
@@ -34,7 +35,7 @@ MORE = 2
 
 def operand(step: Step) -> Operand | None:
     """The value of a step as it stands in a substitution; None where it has none."""
-    if step.si is None:
+    if step.si is None or isinstance(step.si, tuple):
         return None
     if isinstance(step.si, str):
         return Operand(step.si, step.unit, step.digits)
@@ -56,7 +57,7 @@ def operand(step: Step) -> Operand | None:
 def _digits_of_result(step: Step) -> int:
     """A value rounded to whole steps is shown as such: `10 mm`, not `10.00 mm`."""
     tree = step.working.tree if step.working else None
-    if isinstance(tree, Call) and tree.function in ("round_up", "round_down") and isinstance(step.si, float):
+    if isinstance(tree, Call) and tree.function in _WHOLE and isinstance(step.si, float):
         return min(exact_digits(step.unit.from_si(step.si), step.digits), step.digits)
     return step.digits
 
@@ -69,14 +70,15 @@ def display(step: Step, unit: Unit | None = None) -> Shown | None:
     if unit is not None and unit.text != own.unit.text and isinstance(own.si, float):
         digits = exact_digits(unit.from_si(own.si), step.digits) if own.exact else own.digits
         own = Operand(own.si, unit, digits)
-    if isinstance(own.si, float) and own.unit.text.startswith("ft-in"):
-        return Shown(
-            feet_and_inches(own.unit.from_si(own.si), int(own.unit.text.partition("/")[2])).removesuffix(
-                " in"
-            ),
-            "in",
-        )
-    return shown(own)
+    return _in_feet(own) or shown(own)
+
+
+def _in_feet(own: Operand) -> Shown | None:
+    """A length in feet and inches, None for any other value."""
+    if not isinstance(own.si, float) or not own.unit.text.startswith("ft-in"):
+        return None
+    said = feet_and_inches(own.unit.from_si(own.si), int(own.unit.text.partition("/")[2]))
+    return Shown(said.removesuffix(" in"), "in")
 
 
 def scope_of(trace: Trace, working: Working | None = None) -> Scope:
@@ -86,10 +88,41 @@ def scope_of(trace: Trace, working: Working | None = None) -> Scope:
     def find(name: str) -> Operand | None:
         if name in own:
             return own[name]
+        if " at " in name:
+            return cell(trace, name)
         step = trace.by_name.get(name)
         return operand(step) if step is not None else None
 
     return find
+
+
+def cell(trace: Trace, at: str) -> Operand | None:
+    """The printed value of `plates.b at "web"`, or of a row that a choice names."""
+    name, _, row = at.partition(" at ")
+    step, label = trace.by_name[name], row.strip('"')
+    if not row.startswith('"'):
+        chosen = trace.by_name[row].si
+        label = chosen if isinstance(chosen, str) else ""
+    index = next((i for i, each in enumerate(step.rows) if each.label == label), None)
+    return None if index is None else row_operand(step, index)
+
+
+def row_operand(step: Step, index: int) -> Operand | None:
+    """One row of a column as printed: as typed, or to the digits of a result."""
+    row = step.rows[index]
+    if row.si is None:
+        return None
+    tree = row.working.tree if row.working else None
+    exact = step.kind == "table" and tree is not None and not free_names(tree)
+    typed = typed_number(tree, step.unit) if exact and tree is not None else ""
+    digits = exact_digits(step.unit.from_si(row.si), step.digits) if exact else step.digits
+    return Operand(row.si, step.unit, digits, typed, exact=exact)
+
+
+def row_shown(step: Step, index: int) -> Shown | None:
+    """One row of a column as it stands in a table."""
+    own = row_operand(step, index)
+    return None if own is None else _in_feet(own) or shown(own)
 
 
 # --- formula and substitution -----------------------------------------------------------------------------
@@ -140,7 +173,7 @@ def _lands(trace: Trace, tree: Node, result: Operand) -> bool:
 def step_substitution(trace: Trace, step: Step) -> Substitution | None:
     """The substitution of a result, None for other steps and where nothing was computed."""
     result = operand(step)
-    if step.kind != "result" or step.working is None or result is None:
+    if step.kind not in ("result", "solution") or step.working is None or result is None:
         return None
     key = ("substitution", step.id)
     if key not in trace.made:
@@ -149,8 +182,25 @@ def step_substitution(trace: Trace, step: Step) -> Substitution | None:
     return made
 
 
+def row_substitution(trace: Trace, step: Step, index: int) -> Substitution | None:
+    """The substitution of one row of a column; None where nothing stands in place of names."""
+    result, working = row_operand(step, index), step.rows[index].working
+    if result is None or working is None:
+        return None
+    key = (f"substitution {index}", step.id)
+    if key not in trace.made:
+        trace.made[key] = substitution(trace, working, result)
+    made: Substitution | None = trace.made[key]
+    return made
+
+
 def call_substitution(trace: Trace, called: Called) -> Substitution | None:
-    """The substitution of a call's body, with the parameters' values in place."""
+    """The substitution of a call's body, with the parameters' values in place; of what looks at a whole
+    expression or column, what it adds up."""
+    if called.working.written is not None:
+        return Substitution(called.working.written, True)
+    if called.working.tree == called.call:
+        return None
     return substitution(trace, called.working, called.value)
 
 
@@ -183,15 +233,27 @@ def compared(trace: Trace, step: Step) -> tuple[Compared, ...]:
         return ()
     key = ("compared", step.id)
     if key not in trace.made:
-        relations = [n for n in walk(expressions(statement)[0]) if isinstance(n, Relation)]
-        worked = zip(relations, verdict.sides, step.entry.side_units, strict=False)
-        made = [_compared(trace, step.working, *each, step.digits) for each in worked]
-        if isinstance(statement, Check):
-            # its sides are equal within the tolerance, which stands beside them
-            made = [replace(c, evaluated=replace(c.evaluated, signs=c.formula.signs)) for c in made]
-        trace.made[key] = tuple(made)
+        trace.made[key] = _compared_in(trace, step, step.working, verdict)
     kept: tuple[Compared, ...] = trace.made[key]
     return kept
+
+
+def row_compared(trace: Trace, step: Step, index: int) -> tuple[Compared, ...]:
+    """The same, of one row of a step that is judged row by row."""
+    row = step.rows[index]
+    if row.verdict is None or row.working is None:
+        return ()
+    return _compared_in(trace, step, row.working, row.verdict)
+
+
+def _compared_in(trace: Trace, step: Step, working: Working, verdict: Verdict) -> tuple[Compared, ...]:
+    relations = [n for n in walk(working.tree) if isinstance(n, Relation)]
+    worked = zip(relations, verdict.sides, step.entry.side_units, strict=False)
+    made = [_compared(trace, working, *each, step.digits) for each in worked]
+    if isinstance(step.statement, Check):
+        # its sides are equal within the tolerance, which stands beside them
+        made = [replace(c, evaluated=replace(c.evaluated, signs=c.formula.signs)) for c in made]
+    return tuple(made)
 
 
 def _compared(

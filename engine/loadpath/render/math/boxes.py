@@ -57,16 +57,23 @@ class Function(Box):
 
 
 Kind = Literal[
-    "relation", "logic", "sum", "product", "slash", "comma", "sign", "apply", "open", "close", "raise"
+    "relation", "logic", "sum", "product", "slash", "comma", "sign", "apply", "open", "close", "raise",
+    "big", "gap",
 ]  # fmt: skip
 
 
 @dataclass(frozen=True, slots=True)
 class Operator(Box):
-    """A sign between, before or after boxes. `open` and `close` are brackets whose inside may be broken."""
+    """A sign between, before or after boxes.
+
+    `open` and `close` are brackets whose inside may be broken, `big` is taller than a line of text, `gap` a
+    thin space.
+    """
 
     sign: str
     kind: Kind
+    tall: bool = False
+    """An `open` or `close` whose inside holds fractions."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -97,6 +104,25 @@ class Fraction(Box):
     top: Box
     bottom: Box
     flat: Box = field(compare=False)
+
+
+@dataclass(frozen=True, slots=True)
+class Ranged(Box):
+    """A sign that takes what stands behind it over a range: `∫`, `∑`, `lim`, `max`."""
+
+    sign: str
+    below: Box
+    above: Box | None = None
+
+    @property
+    def head(self) -> Operator | Function:
+        """The sign alone."""
+        return Function(self.sign) if self.sign.isalpha() else Operator(self.sign, "big")
+
+    @property
+    def beside(self) -> bool:
+        """True where the range stands behind the sign, not below and above it."""
+        return self.sign == "∫"
 
 
 @dataclass(frozen=True, slots=True)
@@ -175,6 +201,10 @@ def inside(box: Box) -> Iterator[Box]:
             yield from (top, bottom)
         case Power(base=base, exponent=exponent):
             yield from (base, exponent)
+        case Ranged(below=below, above=above):
+            yield below
+            if above is not None:
+                yield above
         case Table(rows=rows):
             for value, condition in rows:
                 yield value
@@ -185,10 +215,19 @@ def inside(box: Box) -> Iterator[Box]:
 def is_tall(box: Box) -> bool:
     """True where brackets round the box have to grow with it."""
     match box:
-        case Fraction() | Table():
+        case Fraction() | Table() | Ranged():
             return True
+        case Operator(kind=kind):
+            return kind == "big"
         case Power(base=base):
             return is_tall(base)
         case Row() | Fence() | Root():
             return any(is_tall(inner) for inner in inside(box))
     return False
+
+
+def has_big_sign(box: Box) -> bool:
+    """True where a sign taller than a line of text stands within, and brackets round it become wide."""
+    if isinstance(box, Operator):
+        return box.kind == "big"
+    return isinstance(box, Ranged) or any(has_big_sign(inner) for inner in inside(box))

@@ -21,6 +21,7 @@ from loadpath.render.math.boxes import (
     Fraction,
     Operator,
     Power,
+    Ranged,
     Root,
     Row,
     Table,
@@ -37,6 +38,12 @@ Boxes = tuple[Box, ...]
 _Run = list[tuple[Box, float]]
 """Boxes side by side, each with its width."""
 
+HANGING = 2.0
+"""Em in front of every line but the first."""
+DEEPER = 1.0
+"""Em more for each bracket that is open."""
+MOST_DEEP = 2
+SURDS = "√∛"
 CHUNK = 12
 """Characters of a name or word that stay together where it has to be broken."""
 _TOP = ("relation", "logic", "sum")
@@ -53,19 +60,39 @@ def widest_run(box: Box) -> float:
     return max((_measure(run) for run in _cut(_sized(parts(box)), _TOP)), default=0.0)
 
 
-def lines(box: Box, most: float) -> list[Boxes]:
-    """The runs of a formula filled into lines of `most` em."""
-    out: list[Boxes] = []
-    left = 0.0
-    for run in _fitting(box, most):
-        boxes = tuple(b for b, _ in run)
-        left -= _measure(run)
-        if out and left >= 0:
-            out[-1] += boxes
-        else:
-            out.append(boxes)
-            left = most - _measure(run)
+def lines(box: Box, most: float) -> list[tuple[int, Boxes]]:
+    """A formula in lines of `most` em, each with how many brackets are open where it begins.
+
+    Every line after the first leaves `HANGING` em free in front, and `DEEPER` for each bracket. A term that
+    takes lines of its own shares none with others, so that it is seen where it ends.
+    """
+    whole = _sized(parts(box))
+    if _measure(whole) <= most:
+        return [(0, tuple(b for b, _ in whole if not isinstance(b, Break)))]
+    out: list[tuple[int, Boxes]] = []
+    left, opened = 0.0, 0
+    for term in _cut(whole, _TOP):
+        runs = _fit(term, most - HANGING - DEEPER * MOST_DEEP)
+        for i, run in enumerate(runs):
+            size = _measure(run)
+            if out and size <= left and (i > 0 or len(runs) == 1):
+                out[-1] = out[-1][0], out[-1][1] + tuple(b for b, _ in run)
+            else:
+                depth = min(max(opened, 0), MOST_DEEP)
+                out.append((depth, tuple(b for b, _ in run)))
+                left = most - (HANGING + DEEPER * depth if out[1:] else 0.0)
+            left -= size
+            opened += sum(_opens(b) for b, _ in run)
+        left = left if len(runs) == 1 else 0.0
     return out
+
+
+def _opens(box: Box) -> int:
+    """How many brackets a box leaves open."""
+    box = box.base if isinstance(box, Power) else box
+    if not isinstance(box, Operator) or box.sign in SURDS:
+        return 0
+    return (box.kind == "open") - (box.kind == "close")
 
 
 def _fitting(box: Box, most: float) -> list[_Run]:
@@ -113,12 +140,16 @@ def _opened(box: Box) -> Boxes:
     """The box as a row that can be broken; () where it cannot be."""
     match box:
         case Fence(opening=opening, inner=inner, closing=closing):
-            return Operator(opening, "open"), *parts(flattened(inner)), Operator(closing, "close")
-        case Fraction():
-            return parts(flattened(box))
+            tall = is_tall(inner)
+            return Operator(opening, "open", tall), *parts(inner), Operator(closing, "close", tall)
+        case Fraction(flat=flat):
+            return parts(flat)
         case Root(inner=inner, index=index):
-            sign = Operator("∛" if index else "√", "open")
-            return sign, *_opened(Fence("(", inner, ")"))
+            sign = Operator(SURDS[bool(index)], "open")
+            return sign, *_opened(Fence("(", flattened(inner), ")"))
+        case Ranged(below=below, above=above):
+            range_ = below if above is None else row(below, Operator("…", "product"), above)
+            return box.head, *_opened(Fence("[", range_, "]"))
         case Power(base=base, exponent=exponent):
             return _opened_power(base, exponent)
         case Table():

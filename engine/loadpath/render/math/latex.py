@@ -13,6 +13,7 @@ from collections.abc import Iterable, Sequence
 
 from loadpath.formula.names import Symbol
 from loadpath.formula.tree import Node
+from loadpath.render.math.alignment import NOTHING, aligned
 from loadpath.render.math.boxes import (
     Amount,
     Box,
@@ -22,6 +23,7 @@ from loadpath.render.math.boxes import (
     Function,
     Operator,
     Power,
+    Ranged,
     Root,
     Row,
     Table,
@@ -39,6 +41,8 @@ from loadpath.units.printing import MINUS, NARROW, grouped, unit_symbol
 from loadpath.units.printing import THIN as THIN_SPACE
 
 THIN = r"\thinspace "
+DEEPER = r"\quad "
+"""In front of a line that begins within a bracket, once for each."""
 
 _GREEK = {
     "α": "alpha", "β": "beta", "γ": "gamma", "δ": "delta", "ε": "varepsilon", "ζ": "zeta", "η": "eta",
@@ -50,16 +54,16 @@ _GREEK = {
 _AS_LATIN = dict(zip("ΑΒΕΖΗΙΚΜΝΟΡΤΧο", "ABEZHIKMNOPTXo", strict=True))
 """Greek letters without a macro: a Latin letter looks the same."""
 _OWN_MACRO = frozenset(
-    "sin cos tan sec sinh cosh tanh arcsin arccos arctan exp ln log min max".split()  # noqa: SIM905
+    "sin cos tan sec sinh cosh tanh arcsin arccos arctan exp ln log min max lim".split()  # noqa: SIM905
 )
 _SIGNS = {
     "≠": r" \ne ",
     "≤": r" \le ", "≥": r" \ge ", "<": r" \lt ", ">": r" \gt ", "=": " = ", "+": " + ", "−": " - ",
     "×": r" \times ", "⋅": r" \cdot ", "÷": r" \div ", "/": "/", ",": ", ", "√": r"\surd ",
-    "∛": r"{}^{3}\surd ", "^": r" \wedge ",
+    "∛": r"{}^{3}\surd ", "^": r" \wedge ", "→": r" \to ", "∫": r"\int ", "∑": r"\sum ", "…": r" \ldots ",
 }  # fmt: skip
-_OPENING = {"(": "(", "⟨": r"\langle ", "|": r"\lvert "}
-_CLOSING = {")": ")", "⟩": r"\rangle ", "|": r"\rvert "}
+_OPENING = {"(": "(", "[": "[", "⟨": r"\langle ", "|": r"\lvert "}
+_CLOSING = {")": ")", "]": "] ", "⟩": r"\rangle ", "|": r"\rvert "}
 _LOWERED = str.maketrans("⁰¹²³⁴⁵⁶⁷⁸⁹⁻·ᐟ", "0123456789-./")
 _UNIT_PIECES = re.compile("[⁰¹²³⁴⁵⁶⁷⁸⁹⁻·ᐟ]+|[A-Za-z0-9]+|.", re.S)
 _IN_UNITS = {"⋅": r"{\cdot}", "°": r"{}^{\circ}", " ": THIN, "/": "/", "(": "(", ")": ")"}
@@ -87,12 +91,27 @@ def latex_lines(lhs: Node | None, sides: Sequence[Node], sign: str = "=", *, mos
     if len(lines(whole, most)) <= 1:
         return ("" if first else "{} ") + _line(parts(whole))
     room = most - sum(width(box) for box in first)
+    rows = [(row(*first) if i == 0 else NOTHING, box) for i, box in enumerate(boxes)]
+    return _block(rows, room)
+
+
+def latex_equations(equations: Sequence[Node], *, most: float = PAGE) -> str:
+    """Relations without delimiters, one block aligned at their first signs; each may take several lines."""
+    return _block(*aligned(equations, most))
+
+
+def _block(rows: Sequence[tuple[Box, Box]], room: float) -> str:
     out: list[str] = []
-    for box in boxes:
-        start, *more = lines(box, room)
-        out.append(f"{'' if out else _line(first)} & {_line(start)}".strip())
-        out += [rf"& \qquad {{}} {_line(run)}" for run in more]
+    for left, right in rows:
+        (_, start), *more = lines(right, room)
+        out.append(f"{_begun(_line(parts(left)))} & {_line(start)}".strip())
+        out += [rf"& \qquad {DEEPER * depth}{{}} {_line(run)}" for depth, run in more]
     return "\n".join([r"\begin{aligned}", " \\cr\n".join(out), r"\end{aligned}"])
+
+
+def _begun(line: str) -> str:
+    """A line that Markdown can't take for an entry of a list."""
+    return f"{{}} {line}" if line[:1].isdigit() or line.startswith("-") else line
 
 
 # --- writing boxes ------------------------------------------------------------------------------------------
@@ -123,8 +142,8 @@ def _write(box: Box, fractions: int = 0) -> str:
             return _text(text)
         case Function(name=name, index=index):
             return _function(name) + (f"_{{{index}}}" if index else "")
-        case Operator(sign=sign, kind=kind):
-            return _operator(sign, kind)
+        case Operator():
+            return _operator(box)
         case Row(boxes=boxes):
             return _row(boxes, fractions)
         case Fence(opening=opening, inner=inner, closing=closing):
@@ -136,6 +155,9 @@ def _write(box: Box, fractions: int = 0) -> str:
             return macro + _inside(top, fractions + 1) + _inside(bottom, fractions + 1)
         case Power(base=base, exponent=exponent):
             return f"{_base(base, fractions)}^{_inside(exponent, fractions)}"
+        case Ranged(below=below, above=above):
+            upper = "" if above is None else f"^{_inside(above, fractions)}"
+            return f"{_write(box.head).strip()}_{_inside(below, fractions)}{upper} "
         case Root(inner=inner, index=index):
             return rf"\sqrt{f'[{index}]' if index else ''}{_inside(inner, fractions)}"
         case Table():
@@ -149,14 +171,21 @@ def _base(box: Box, fractions: int) -> str:
     return _write(box, fractions).strip() if bare else _inside(box, fractions)
 
 
-def _operator(sign: str, kind: str) -> str:
-    match kind:
+def _operator(operator: Operator) -> str:
+    sign = operator.sign
+    match operator.kind:
         case "logic":
             return rf"\enspace {_text(sign)}\enspace "
         case "sign":
             return "-"
         case "apply":
             return ""
+        case "gap":
+            return THIN
+        case "open" if operator.tall and sign in _OPENING:
+            return rf"\Bigl{_OPENING[sign]}"
+        case "close" if operator.tall:
+            return rf"\Bigr{_CLOSING[sign]}"
         case "open" if sign in _OPENING:
             return _OPENING[sign]
         case "close":

@@ -9,11 +9,13 @@ from __future__ import annotations
 import re
 from dataclasses import dataclass, replace
 from functools import lru_cache
+from typing import Literal
 
-from loadpath.formula.canonical import POWER, SIGN, is_measured, level, needs_brackets
+from loadpath.formula.canonical import POWER, PRODUCT, SIGN, SUM, is_measured, level, needs_brackets
 from loadpath.formula.names import symbol
 from loadpath.formula.tree import (
     As,
+    At,
     Binary,
     Bracket,
     Call,
@@ -41,6 +43,7 @@ from loadpath.render.math.boxes import (
     Function,
     Operator,
     Power,
+    Ranged,
     Root,
     Row,
     Table,
@@ -56,6 +59,14 @@ MOST_FRACTIONS = 2
 
 RELATIONS = {"<=": "≤", ">=": "≥", "<": "<", ">": ">", "=": "=", "≠": "≠"}
 _FUNCTIONS = {"asin": ("arcsin", ""), "acos": ("arccos", ""), "atan": ("arctan", ""), "log10": ("log", "10")}
+_WITH_SIGNS: dict[str, tuple[int, ...]] = {
+    "integral": (2, 4), "derivative": (2,), "limit_of": (3,), "sum": (1, 4),
+    "largest": (4,), "smallest": (4,), "where_largest": (4,), "where_smallest": (4,),
+}  # fmt: skip
+"""Functions that print with a sign of their own, by their number of arguments."""
+_D = Function("d")
+_GAP = Operator("", "gap")
+_EXTREMES = {"largest": "max", "smallest": "min", "where_largest": "max", "where_smallest": "min"}
 _PLAIN = re.compile(r"[\d.]+")
 _FEET = re.compile(r"(-?[\d.]+) ft (.+)")
 
@@ -72,6 +83,8 @@ class Place:
     """A formula of numbers: `pi` counts as one."""
     signed: bool = False
     """Directly behind an operator: a minus takes brackets."""
+    followed: Literal["", "sum", "product"] = ""
+    """What comes directly behind: what has no end of its own, as `∑ a`, takes brackets."""
     chosen: int | None = None
     """The branch to mark."""
 
@@ -81,19 +94,23 @@ class Place:
 
     def start(self) -> Place:
         """The beginning of an expression of its own."""
-        return replace(self, signed=False)
+        return replace(self, signed=False, followed="")
 
     def behind(self) -> Place:
         """Directly behind an operator."""
         return replace(self, signed=True)
 
+    def before(self, kind: Literal["sum", "product"]) -> Place:
+        """Directly before an operator."""
+        return replace(self, followed=kind)
+
     def within(self) -> Place:
         """Above or below the stroke of a fraction."""
-        return replace(self, signed=False, fractions=self.fractions + 1)
+        return replace(self.start(), fractions=self.fractions + 1)
 
     def raised(self) -> Place:
-        """In an exponent."""
-        return replace(self, signed=False, flat=True)
+        """In an exponent, or a range below a sign."""
+        return replace(self.start(), flat=True)
 
 
 @lru_cache(maxsize=1024)
@@ -125,22 +142,28 @@ def _lay(node: Node, place: Place) -> Box:
             return Variable(symbol(name))
         case Negative(operand=operand):
             return row(Operator(MINUS, "sign"), _child(operand, node, place.behind()))
-        case Binary(operator="+" | "-", left=left, right=right):
-            sign = Operator(MINUS if node.operator == "-" else "+", "sum")
-            return row(_child(left, node, place), sign, _child(right, node, place.behind(), True))
+        case Binary(operator="+" | "-"):
+            return _sum(node, place)
         case Binary(operator="*", left=left, right=right):
             sign = Operator(_product_sign(left, right, place), "product")
-            return row(_child(left, node, place), sign, _child(right, node, place.behind(), True))
+            first = _child(left, node, place.before("product"))
+            return row(first, sign, _child(right, node, place.behind(), True))
         case Binary(operator="/"):
             return _on_line(node, place) if place.on_line else _fraction(node, place)
         case Binary():
             return _power(node, place)
+        case Call() if _has_sign(node):
+            ended = not place.followed or (node.function == "integral" and place.followed == "sum")
+            box = _with_sign(node, place.start())
+            return box if ended else bracketed(box)
         case Call():
             return _call(node, place.start())
         case Bracket(inner=inner, power=power):
             return Power(Fence("⟨", _lay(inner, place.start()), "⟩"), Figure(str(power)))
         case As():
             return _as(node, place.start())
+        case At():
+            return _at(node, place.start())
         case Factor():
             return _factor(node, place)
         case Relation():
@@ -176,16 +199,29 @@ def _shown(node: Shown) -> Box:
 
 def _as(node: As, place: Place, brackets: bool = True) -> Box:
     """The unit that is taken off, behind a small word; a value in that very unit is its plain number."""
-    inner = row(_lay(node.operand, place), Words(" in ", small=True), Amount((("", node.unit),)))
+    inner = row(
+        _lay(node.operand, place.before("product")), Words(" in ", small=True), Amount((("", node.unit),))
+    )
     if isinstance(node.operand, Shown) and node.operand.unit == node.unit:
         inner = Figure(node.operand.number)
         brackets = brackets and not _PLAIN.fullmatch(node.operand.number)
     return bracketed(inner) if brackets else inner
 
 
+def _at(node: At, place: Place) -> Box:
+    """A cell: the column, then the label of its row upright."""
+    column = _lay(node.operand, place)
+    if not isinstance(node.operand, Name):
+        column = bracketed(column)
+    match node.row:
+        case Word(text=text) | Shown(number=text, word=True):
+            return row(column, Words(f" at {text}"))
+    return row(column, Words(" at "), _lay(node.row, place))
+
+
 def _factor(node: Factor, place: Place) -> Box:
     """The conversion factor at the end of a substitution."""
-    body, amount = _child(node.body, node, place), Amount(((node.number, node.unit),))
+    body, amount = _child(node.body, node, place.before("product")), Amount(((node.number, node.unit),))
     if node.divided:
         return row(body, Operator("÷", "product"), bracketed(amount))
     return row(body, Operator("×", "product"), amount)
@@ -194,11 +230,28 @@ def _factor(node: Factor, place: Place) -> Box:
 # --- operations ---------------------------------------------------------------------------------------------
 
 
+def _sum(node: Binary, place: Place) -> Box:
+    """A chain of terms, from the last to the first: derived ones have hundreds."""
+    backwards: list[Box] = []
+    while True:
+        sign = Operator(MINUS if node.operator == "-" else "+", "sum")
+        backwards += [_child(node.right, node, place.behind(), True), sign]
+        place = place.before("sum")
+        if not (isinstance(node.left, Binary) and node.left.operator in ("+", "-")):
+            return row(_child(node.left, node, place), *reversed(backwards))
+        node = node.left
+
+
 def _child(child: Node, parent: Node, place: Place, right: bool = False) -> Box:
     """An operand, in brackets where its meaning or a second sign asks for them."""
-    fraction = isinstance(child, Binary) and child.operator == "/"
     needs = needs_brackets(child, parent, right) or (place.signed and level(child) == SIGN)
-    if fraction and (needs or _multiplies(parent)):
+    in_words = _has_words(child) and not isinstance(parent, Relation | Logic)
+    return _guarded(child, place, needs or in_words, _multiplies(parent))
+
+
+def _guarded(child: Node, place: Place, needs: bool, stroke: bool) -> Box:
+    """A node in brackets where it needs them; `stroke`: as a fraction on the line it needs them too."""
+    if isinstance(child, Binary) and child.operator == "/" and (needs or stroke):
         if place.on_line:
             return bracketed(_lay(child, place.start()))
         built = _lay(child, place.start())
@@ -237,8 +290,8 @@ def _on_line(node: Binary, place: Place) -> Box:
 
 def _stroke(node: Binary, top: Box, bottom: Box) -> Box:
     """`top/bottom`, with brackets round all that could be read past the stroke."""
-    long_top = level(node.left) <= SIGN or _has_stroke(node.left)
-    long_bottom = level(node.right) <= SIGN or is_measured(node.right)
+    long_top = level(node.left) <= SIGN or _has_stroke(node.left) or _is_open(node.left)
+    long_bottom = level(node.right) <= SIGN or is_measured(node.right) or _is_open(node.right)
     return row(
         bracketed(top) if long_top else top,
         Operator("/", "slash"),
@@ -270,9 +323,79 @@ def _ends_open(node: Node) -> bool:
             return function != "abs"
         case Name(name=name):
             return name.endswith("'")
-        case Bracket():
+        case Bracket() | At():
             return True
     return level(node) == POWER
+
+
+# --- calculus -----------------------------------------------------------------------------------------------
+
+
+def _has_sign(node: Node) -> bool:
+    return isinstance(node, Call) and len(node.arguments) in _WITH_SIGNS.get(node.function, ())
+
+
+def _has_words(node: Node) -> bool:
+    """True for what has words between its parts: `A at top flange`, `x at max M(x)`."""
+    return isinstance(node, At) or (_has_sign(node) and isinstance(node, Call) and "where" in node.function)
+
+
+def _is_open(node: Node) -> bool:
+    """True for what could run on past its end, or begin before its start."""
+    return _has_sign(node) or isinstance(node, At)
+
+
+def _with_sign(node: Call, place: Place) -> Box:
+    """A function with a sign of its own; what it works on stands behind that sign."""
+    body, *outer = node.arguments
+    match node.function:
+        case "derivative":
+            return row(_rate(outer[0], place), _GAP, _body(body, place, PRODUCT, stroke=True))
+        case "integral":
+            low_and_high = [_lay(bound, place.raised()) for bound in outer[1:]]
+            sign = Ranged("∫", *low_and_high) if low_and_high else Operator("∫", "big")
+            return row(
+                sign, _body(body, place.before("product"), stroke=True), _GAP, *_differential(outer[0], place)
+            )
+        case "where_largest" | "where_smallest":
+            return row(_lay(outer[0], place), Words(" at "), _range(node, place), _GAP, _body(body, place))
+        case "sum":
+            return row(_range(node, place) if outer else Operator("∑", "big"), _body(body, place))
+    return row(_range(node, place), _GAP, _body(body, place))
+
+
+def _range(node: Call, place: Place) -> Ranged:
+    """`lim`, `max`, `min` or `∑` with its range."""
+    variable, *bounds = [_lay(bound, place.raised()) for bound in node.arguments[1:]]
+    match node.function, bounds:
+        case "limit_of", [end]:
+            return Ranged("lim", row(variable, Operator("→", "relation"), end))
+        case "sum", [low, high]:
+            return Ranged("∑", row(variable, Operator("=", "relation"), low), high)
+    low, high = bounds
+    at_most = Operator("≤", "relation")
+    return Ranged(_EXTREMES[node.function], row(low, at_most, variable, at_most, high))
+
+
+def _body(node: Node, place: Place, loosest: int = SUM, stroke: bool = False) -> Box:
+    """What a sign works on: in brackets where it is as loose as `loosest` or begins with a minus.
+
+    `stroke`: as a fraction on the line too.
+    """
+    needs = level(node) <= loosest or level(node) == SIGN or _has_words(node)
+    return _guarded(node, place.behind(), needs, stroke)
+
+
+def _rate(variable: Node, place: Place) -> Box:
+    """The fraction d/dx."""
+    top, bottom = _D, row(*_differential(variable, place))
+    on_line = bracketed(row(top, Operator("/", "slash"), bottom))
+    return on_line if place.on_line else Fraction(top, bottom, on_line)
+
+
+def _differential(variable: Node, place: Place) -> tuple[Box, Box]:
+    box = _lay(variable, place.start())
+    return _D, box if isinstance(variable, Name) else bracketed(box)
 
 
 # --- functions, relations -----------------------------------------------------------------------------------

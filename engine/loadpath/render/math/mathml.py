@@ -9,10 +9,11 @@ from __future__ import annotations
 
 import re
 import unicodedata
-from collections.abc import Iterable
+from collections.abc import Iterable, Sequence
 
 from loadpath.formula.names import Symbol
 from loadpath.formula.tree import Node
+from loadpath.render.math.alignment import aligned
 from loadpath.render.math.boxes import (
     FULL,
     SMALLEST,
@@ -24,6 +25,7 @@ from loadpath.render.math.boxes import (
     Function,
     Operator,
     Power,
+    Ranged,
     Root,
     Row,
     Size,
@@ -37,13 +39,15 @@ from loadpath.render.math.boxes import (
 from loadpath.render.math.breaking import Boxes, cuts, widest_run
 from loadpath.render.math.layout import RELATIONS, lay_out
 from loadpath.render.math.texts import MIXED, mantissa_and_exponent, printable
-from loadpath.render.math.width import COLUMN
+from loadpath.render.math.width import COLUMN, PAGE
 from loadpath.units.printing import MINUS, grouped, unit_symbol
 
 MARK = "→"
 """Before the branch taken."""
 
 _GAP = '<mspace width="0.2em"/>'
+_THIN_GAP = '<mspace width="0.17em"/>'
+_TALL = 'stretchy="true" symmetric="true" minsize="2.2em" maxsize="2.2em"'
 _WIDER_GAP = '<mspace width="0.3em"/>'
 _FRACTIONAL_POWER = re.compile("([⁰¹²³⁴⁵⁶⁷⁸⁹⁻·]+ᐟ[⁰¹²³⁴⁵⁶⁷⁸⁹]+)")
 _LOWERED = str.maketrans("⁰¹²³⁴⁵⁶⁷⁸⁹⁻·ᐟ", "0123456789−./")
@@ -79,6 +83,18 @@ def pieces(
     """`lhs = rhs` as `flow` gives it; without `lhs` the first element begins with the sign."""
     left = [] if lhs is None else flow(lhs, most=most, flat=flat)
     return left + flow(rhs, sign, most=most, flat=flat)
+
+
+def equations(relations: Sequence[Node], *, most: float = PAGE) -> list[tuple[list[str], list[str]]]:
+    """Relations as rows of a left and a right side, each as `flow` gives it, to be aligned between the two.
+
+    A right side begins with its relation. A left side that is long stands on the right of a row of its own.
+    """
+    rows, room = aligned(relations, most)
+    return [
+        ([_math(run) for run in cuts(left, most)], [_math(run) for run in cuts(right, room)])
+        for left, right in rows
+    ]
 
 
 def escape(text: str) -> str:
@@ -120,6 +136,8 @@ def _write(box: Box, size: Size, first: bool = False) -> str:
             return f"<mfrac>{_shrunk(top, inside)}{_shrunk(bottom, inside)}</mfrac>"
         case Power(base=base, exponent=exponent):
             return _power(base, _shrunk(exponent, size.script()), size)
+        case Ranged():
+            return _ranged(box, size)
         case Root(inner=inner, index=index):
             if index:
                 return f"<mroot>{_one(inner, size)}<mn>{index}</mn></mroot>"
@@ -234,7 +252,8 @@ def _slopes(text: str) -> bool:
 
 
 def _function(name: str, index: str) -> str:
-    text = f"<mi>{name}</mi>" if name.isalnum() else f"<mtext>{escape(name)}</mtext>"
+    """One letter would slope as an `<mi>`: the d of dx doesn't."""
+    text = f"<mi>{name}</mi>" if name.isalnum() and len(name) > 1 else f"<mtext>{escape(name)}</mtext>"
     return f"<msub>{text}<mn>{index}</mn></msub>" if index else text
 
 
@@ -254,6 +273,14 @@ def _operator(operator: Operator, first: bool) -> str:
             return f'<mo rspace="0.3em">{sign}</mo>'
         case "slash":
             return f'<mo form="infix" lspace="0.06em" rspace="0.06em">{sign}</mo>'
+        case "open" if operator.tall:
+            return f'<mo form="prefix" {_TALL} lspace="0" rspace="0">{sign}</mo>'
+        case "close" if operator.tall:
+            return f'<mo form="postfix" {_TALL}>{sign}</mo>'
+        case "big":
+            return f"<mo>{sign}</mo>"
+        case "gap":
+            return _THIN_GAP
         case "open":
             return f'<mo form="prefix" stretchy="false" lspace="0" rspace="0">{sign}</mo>'
         case "close":
@@ -267,6 +294,15 @@ def _fence(opening: str, inner: Box, closing: str, size: Size) -> str:
     kind = 'stretchy="true"' if is_tall(inner) else 'stretchy="false"'
     before, after = f'<mo form="prefix" {kind}>{opening}</mo>', f'<mo form="postfix" {kind}>{closing}</mo>'
     return f"<mrow>{before}{_row(parts(inner), size)}{after}</mrow>"
+
+
+def _ranged(box: Ranged, size: Size) -> str:
+    ends = "".join(_shrunk(end, size.script()) for end in (box.below, box.above) if end is not None)
+    if box.beside:
+        tag = "msub" if box.above is None else "msubsup"
+    else:
+        tag = "munder" if box.above is None else "munderover"
+    return f"<{tag}>{_write(box.head, size)}{ends}</{tag}>"
 
 
 def _power(base: Box, exponent: str, size: Size) -> str:

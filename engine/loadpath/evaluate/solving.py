@@ -1,0 +1,440 @@
+"""Solving equations: linear systems, one equation in closed form or between bounds, several at once."""
+
+from __future__ import annotations
+
+import math
+from dataclasses import dataclass
+from fractions import Fraction
+from itertools import product
+from typing import Any
+
+from loadpath import algebra
+from loadpath.algebra import AlgebraFailure
+from loadpath.evaluate.failure import Failure, Show, short
+from loadpath.evaluate.inline import inlined
+from loadpath.evaluate.numbers import Compiler, Values
+from loadpath.evaluate.special import bad_interval
+from loadpath.formula.mistake import Mistake
+from loadpath.formula.statements import Equations, Sought
+from loadpath.formula.tree import Binary, Negative, Node, Relation, span_of, walk
+from loadpath.resolve import Entry, Resolved
+from loadpath.trace.model import Operand, PutBack, Solved
+from loadpath.units import Unit
+
+MOST_SYMBOLS = 3
+"""Unknowns of a linear system that is also solved in symbols."""
+MOST_OPERATIONS = 60
+"""Of all equations of such a system."""
+SYMBOL_SECONDS = 5.0
+"""For a solution in symbols beside one in numbers."""
+CLOSE = 1e-9
+"""A root is believed where the sides of its equation agree within this much of their terms."""
+LISTED = 8
+"""Roots that a message lists."""
+
+_NO_PARAMETERS: dict[str, Any] = {}
+
+
+@dataclass(frozen=True, slots=True)
+class Solutions:
+    """What one `solve for` found."""
+
+    values: dict[str, float]
+    """SI."""
+    solved: Solved
+
+
+def solve(
+    together: Equations, entries: dict[str, Entry], resolved: Resolved, compiler: Compiler, values: Values
+) -> Solutions:
+    """The unknowns of one `solve for`. Raises `Failure` where there is not exactly one solution."""
+    return _Solver(together, entries, resolved, compiler, values).solutions()
+
+
+@dataclass(frozen=True, slots=True)
+class _Root:
+    value: float
+    symbols: Node | None = None
+
+
+class _Solver:
+    def __init__(
+        self,
+        together: Equations,
+        entries: dict[str, Entry],
+        resolved: Resolved,
+        compiler: Compiler,
+        values: Values,
+    ) -> None:
+        self.together, self.entries, self.resolved = together, entries, resolved
+        self.compiler, self.values = compiler, values
+        self.names = tuple(sought.name for sought in together.sought)
+        self.equations = tuple(self._inlined(equation) for equation in together.equations)
+        self.bounds = {sought.name: self._bounds(sought) for sought in together.sought}
+
+    def solutions(self) -> Solutions:
+        found = self._linear()
+        if found is None:
+            found = self._one() if len(self.names) == 1 else self._several()
+        values, method, symbols, others = found
+        back = tuple(self._put_back(i, values) for i in range(len(self.equations)))
+        if not all(each.close for each in back):
+            raise self._not_close(back)
+        return Solutions(values, Solved(method, symbols, back, others))
+
+    # --- the equations ---
+
+    def _inlined(self, equation: Relation) -> Relation:
+        sides = tuple(inlined(side, self.compiler.function) for side in equation.operands)
+        return Relation(sides, equation.signs, equation.span, equation.at)
+
+    def _worth(self, node: Node, more: dict[str, float] | None = None) -> float:
+        values = self.values if more is None else {**self.values, **more}
+        return float(self.compiler.compile_tree(node)(values, _NO_PARAMETERS))
+
+    def _bounds(self, sought: Sought) -> tuple[float, float] | None:
+        if sought.low is None or sought.high is None:
+            return None
+        low, high = self._worth(sought.low), self._worth(sought.high)
+        if not low < high:
+            raise bad_interval(sought.low, sought.high, low, high)
+        return low, high
+
+    @property
+    def place(self) -> Any:
+        return self.together.span
+
+    # --- linear systems ---
+
+    def _linear(self) -> _Found | None:
+        from loadpath.numeric.linear import linear_form
+        from loadpath.numeric.linear import solve as solve_linear
+
+        unknowns = frozenset(self.names)
+        matrix, right = [], []
+        for equation in self.equations:
+            form = linear_form(_difference(equation), unknowns)
+            if form is None:
+                return None
+            matrix.append([self._worth(form[name]) if name in form else 0.0 for name in self.names])
+            right.append(-self._worth(form[""]) if "" in form else 0.0)
+        solution = solve_linear(matrix, right)
+        if solution.values is None or solution.state != "regular":
+            raise self._singular(solution.state, solution.free, solution.condition)
+        values = dict(zip(self.names, solution.values, strict=True))
+        for name, value in values.items():
+            self._refuse_outside(name, value)
+        symbols = self._in_symbols(values)
+        one = len(self.names) == 1
+        method = "linear equation" if one else f"linear system of {len(self.names)} equations"
+        return values, method + ("" if symbols else ", solved in numbers"), symbols, ()
+
+    def _in_symbols(self, values: dict[str, float]) -> dict[str, Node]:
+        """The solution of a small system in symbols, where it gives the same numbers and units."""
+        operations = sum(isinstance(n, Binary) for e in self.equations for n in walk(e))
+        if len(self.names) > MOST_SYMBOLS or operations > MOST_OPERATIONS:
+            return {}
+        try:
+            found = algebra.solve_linear(self.equations, self.names, seconds=SYMBOL_SECONDS)
+        except AlgebraFailure:
+            return {}
+        if found is None:
+            return {}
+        same = all(self._gives(found[name], values[name]) and self._fits(name, found[name]) for name in found)
+        return dict(found) if same and set(found) == set(self.names) else {}
+
+    def _gives(self, tree: Node, value: float) -> bool:
+        try:
+            return math.isclose(self._worth(tree), value, rel_tol=CLOSE, abs_tol=1e-300)
+        except (ArithmeticError, ValueError, KeyError, Failure):
+            return False
+
+    def _fits(self, name: str, tree: Node) -> bool:
+        checker = self.resolved.checker
+        try:
+            found = checker.type_of(tree)
+        except Mistake:
+            return False
+        finally:
+            checker.warnings.clear()
+        return found.unknown or found.zero or found.dimension == self.entries[name].type.dimension
+
+    def _refuse_outside(self, name: str, value: float) -> None:
+        bounds = self.bounds[name]
+        if bounds is None or bounds[0] <= value <= bounds[1]:
+            return
+        raise Failure(
+            "root-outside-bounds",
+            lambda show: f"the only solution, {name} = {self._shown(name, value)}, lies outside the bounds "
+            f"{self._shown(name, bounds[0])} to {self._shown(name, bounds[1])}",
+            self._sought(name).span, "check the equations, or the bounds",
+        )  # fmt: skip
+
+    def _singular(self, state: str, free: tuple[int, ...], condition: float) -> Failure:
+        if state == "singular, no solution":
+            message, slug = "the equations contradict each other: there is no solution", "no-solution"
+            mend = "check the signs, and whether one equation says the same as another in other numbers"
+        elif state == "singular, many solutions":
+            names = ", ".join(f"`{self.names[i]}`" for i in free) or "the unknowns"
+            message, slug = f"there are many solutions: the equations don't fix {names}", "many-solutions"
+            mend = "one equation follows from the others; write one that says something new"
+        else:
+            message = f"the equations are nearly the same: {math.log10(condition):.0f} digits are lost"
+            slug, mend = "singular-system", "write equations that are further apart, or eliminate by hand"
+        return Failure(slug, lambda show: message, self.place, mend)
+
+    # --- one equation ---
+
+    def _one(self) -> _Found:
+        from loadpath.numeric.roots import degree_in
+
+        name, equation = self.names[0], self.equations[0]
+        difference = _difference(equation)
+        degree = degree_in(difference, frozenset([name]))
+        if degree is not None and degree >= 1:
+            roots, method = self._of_polynomial(difference, degree)
+        elif degree == 0:
+            raise self._no_solution(f"`{name}` does not stand in the equation")
+        elif self.bounds[name] is not None:
+            return self._between(difference)
+        else:
+            roots, method = self._closed_form()
+        return self._chosen(name, roots, method)
+
+    def _of_polynomial(self, difference: Node, degree: int) -> tuple[list[_Root], str]:
+        from loadpath.numeric.roots import coefficients
+
+        name = self.names[0]
+        if degree == 2:
+            try:
+                trees = algebra.roots(self.equations[0], name) or ()
+            except AlgebraFailure:
+                trees = ()
+            found = [r for r in map(self._root, trees) if r is not None]
+            if found:
+                return found, "quadratic equation"
+        numbers = coefficients(difference, name, self._worth)
+        assert numbers is not None
+        if not any(numbers[1:]):
+            raise self._no_solution(f"`{name}` drops out of the equation")
+        real = algebra.real_roots(tuple(Fraction(c) for c in numbers))
+        return [_Root(value) for value in real], f"all real roots of a polynomial of degree {degree}"
+
+    def _closed_form(self) -> tuple[list[_Root], str]:
+        name, equation = self.names[0], self.together.equations[0]
+        mend = f"give bounds, so that it is solved numerically: `solve for {name} between a and b`"
+        try:
+            trees = algebra.roots(self.equations[0], name)
+        except AlgebraFailure as trouble:
+            message = f"{trouble.message}; `{short(equation)}`"
+            raise Failure(trouble.slug, lambda show: message, self.place, mend) from None
+        if not trees:
+            raise Failure(
+                "no-closed-form",
+                lambda show: f"`{short(equation)}` has no solution in closed form for `{name}`",
+                self.place, mend,
+            )  # fmt: skip
+        found = [r for r in map(self._root, trees) if r is not None]
+        return found, "closed form"
+
+    def _root(self, tree: Node) -> _Root | None:
+        """A candidate as a number; None where it has no real value or other units."""
+        try:
+            value = self._worth(tree)
+        except (ArithmeticError, ValueError, KeyError, Failure):
+            return None
+        if not math.isfinite(value) or not self._fits(self.names[0], tree):
+            return None
+        return _Root(value, tree)
+
+    def _between(self, difference: Node) -> _Found:
+        from loadpath.numeric.pieces import bracket_places
+        from loadpath.numeric.roots import roots_between
+
+        name = self.names[0]
+        bounds = self.bounds[name]
+        assert bounds is not None
+        work = self.compiler.compile_tree(difference)
+        places = bracket_places(difference, name, self._worth)
+        found = roots_between(
+            lambda x: float(work({**self.values, name: x}, _NO_PARAMETERS)), *bounds, places
+        )
+        low, high = (self._shown(name, bound) for bound in bounds)
+        if not found.found:
+            raise self._no_solution(f"no value of `{name}` between {low} and {high} solves the equation")
+        return self._chosen(name, [_Root(value) for value in found.found], found.method)
+
+    def _chosen(self, name: str, roots: list[_Root], method: str) -> _Found:
+        """The one root that solves the equation and lies within the bounds."""
+        good = _unlike([root for root in roots if self._put_back(0, {name: root.value}).close])
+        bounds = self.bounds[name]
+        inside = [r for r in good if bounds is None or bounds[0] <= r.value <= bounds[1]]
+        if not good:
+            raise self._no_solution("it has no real root")
+        if not inside:
+            assert bounds is not None
+            raise self._outside(name, good, bounds)
+        if len(inside) > 1:
+            raise self._several_roots(name, inside)
+        root = inside[0]
+        entry = self.entries[name]
+        others = tuple(
+            (name, Operand(r.value, entry.unit, self.resolved.sheet.front.digits), "outside the bounds")
+            for r in good
+            if r is not root
+        )
+        return {name: root.value}, method, {name: root.symbols} if root.symbols else {}, others
+
+    # --- several equations that are not linear ---
+
+    def _several(self) -> _Found:
+        bounds = [self.bounds[name] for name in self.names]
+        if len(self.names) > 4 or any(each is None for each in bounds):
+            raise Failure(
+                "no-closed-form",
+                lambda show: "several equations that are not linear in the unknowns are solved numerically, "
+                "between bounds, for up to 4 unknowns",
+                self.place, "give each unknown bounds, or eliminate by hand until one equation is left",
+            )  # fmt: skip
+        found = self._search([each for each in bounds if each is not None])
+        if not found:
+            raise self._no_solution("no solution was found between the bounds")
+        if len(found) > 1:
+            listed = "; ".join(
+                ", ".join(f"{n} = {self._shown(n, v)}" for n, v in zip(self.names, each, strict=True))
+                for each in found[:LISTED]
+            )
+            raise Failure(
+                "several-roots", lambda show: f"there are several solutions between the bounds: {listed}",
+                self.place, "narrow the bounds until one is left",
+            )  # fmt: skip
+        method = (
+            f"numeric, from {_starts(len(self.names)) ** len(self.names)} starting points between the bounds"
+        )
+        method += "; that there is no other solution is not shown"
+        return dict(zip(self.names, found[0], strict=True)), method, {}, ()
+
+    def _search(self, bounds: list[tuple[float, float]]) -> list[tuple[float, ...]]:
+        from scipy.optimize import least_squares
+
+        works = [self.compiler.compile_tree(_difference(e)) for e in self.equations]
+        widths = [high - low for low, high in bounds]
+
+        def residuals(t: Any) -> list[float]:
+            here = {n: low + s * w for n, (low, _), w, s in zip(self.names, bounds, widths, t, strict=True)}
+            try:
+                return [float(work({**self.values, **here}, _NO_PARAMETERS)) for work in works]
+            except (ArithmeticError, ValueError):
+                return [1e30] * len(works)
+
+        middle = residuals([0.5] * len(bounds))
+        scales = [max(abs(r), 1e-30) for r in middle]
+        count = _starts(len(bounds))
+        found: list[tuple[float, ...]] = []
+        for start in product([(i + 0.5) / count for i in range(count)], repeat=len(bounds)):
+            fit = least_squares(
+                lambda t: [r / s for r, s in zip(residuals(t), scales, strict=True)], start,
+                bounds=(0, 1), xtol=1e-15, ftol=1e-15, gtol=1e-15,
+            )  # fmt: skip
+            here = tuple(low + float(s) * w for (low, _), w, s in zip(bounds, widths, fit.x, strict=True))
+            values = dict(zip(self.names, here, strict=True))
+            if all(self._put_back(i, values).close for i in range(len(self.equations))) and not any(
+                all(abs(a - b) <= 1e-6 * w for a, b, w in zip(here, each, widths, strict=True))
+                for each in found
+            ):
+                found.append(here)
+        return sorted(found)
+
+    # --- putting back ---
+
+    def _put_back(self, index: int, values: dict[str, float]) -> PutBack:
+        """One equation with the solution put back; close where its sides agree to rounding of their terms."""
+        typed, equation = self.together.equations[index], self.equations[index]
+        units = self.entries[self.names[0]].side_units
+        unit: Unit = units[index] if index < len(units) else self.entries[self.names[0]].unit
+        try:
+            left, right = (self._worth(side, values) for side in equation.operands)
+        except (ArithmeticError, ValueError, Failure):
+            return PutBack(typed, math.nan, math.nan, unit, False)
+        size = max(self._size(side, values) for side in equation.operands)
+        return PutBack(typed, left, right, unit, abs(left - right) <= CLOSE * size)
+
+    def _size(self, node: Node, values: dict[str, float]) -> float:
+        """How large a value is before its terms cancel: what its rounding goes with."""
+        match node:
+            case Binary(operator="+" | "-", left=left, right=right):
+                return self._size(left, values) + self._size(right, values)
+            case Binary(operator="*", left=left, right=right):
+                return self._size(left, values) * self._size(right, values)
+            case Binary(operator="/", left=left, right=right):
+                return self._size(left, values) / abs(self._worth(right, values))
+            case Negative(operand=operand):
+                return self._size(operand, values)
+        return abs(self._worth(node, values))
+
+    # --- what is said ---
+
+    def _sought(self, name: str) -> Sought:
+        return next(sought for sought in self.together.sought if sought.name == name)
+
+    def _shown(self, name: str, value: float) -> str:
+        from loadpath.trace.digits import exact_digits
+        from loadpath.units.printing import plain
+
+        unit = self.entries[name].unit
+        number = unit.from_si(value)
+        return f"{plain(number, min(exact_digits(number, 6), 6))} {unit.text}".rstrip()
+
+    def _no_solution(self, why: str) -> Failure:
+        return Failure(
+            "no-solution", lambda show: why, self.place, "check the equation, its signs and the bounds"
+        )
+
+    def _outside(self, name: str, roots: list[_Root], bounds: tuple[float, float]) -> Failure:
+        listed = ", ".join(self._shown(name, root.value) for root in roots[:LISTED])
+        low, high = (self._shown(name, bound) for bound in bounds)
+        message = f"every root lies outside the bounds {low} to {high}: {name} = {listed}"
+        return Failure("root-outside-bounds", lambda show: message, self._sought(name).span,
+                       "check the equation, or the bounds")  # fmt: skip
+
+    def _several_roots(self, name: str, roots: list[_Root]) -> Failure:
+        listed = ", ".join(self._shown(name, root.value) for root in roots[:LISTED])
+        more = f" and {len(roots) - LISTED} more" if len(roots) > LISTED else ""
+        where = "between the bounds" if self.bounds[name] else "of the equation"
+        message = f"there are {len(roots)} roots {where}: {name} = {listed}{more}"
+        mend = f"say which by bounds: `solve for {name} between ... and ...`"
+        return Failure("several-roots", lambda show: message, self._sought(name).span, mend)
+
+    def _not_close(self, back: tuple[PutBack, ...]) -> Failure:
+        wrong = next(each for each in back if not each.close)
+
+        def tell(show: Show) -> str:
+            return f"the solution put back does not satisfy `{short(wrong.equation)}` to rounding"
+
+        return Failure(
+            "singular-system", tell, span_of(wrong.equation), "write the equations in another form"
+        )
+
+
+_Found = tuple[dict[str, float], str, dict[str, Node], tuple[tuple[str, Operand, str], ...]]
+"""Values, method, symbols, other roots."""
+
+
+def _difference(equation: Relation) -> Node:
+    """Left side less right side."""
+    left, right = equation.operands
+    return Binary("-", left, right)
+
+
+def _unlike(roots: list[_Root]) -> list[_Root]:
+    """Each root once, rising."""
+    kept: list[_Root] = []
+    for root in sorted(roots, key=lambda r: r.value):
+        if not kept or not math.isclose(root.value, kept[-1].value, rel_tol=1e-9, abs_tol=1e-300):
+            kept.append(root)
+    return kept
+
+
+def _starts(unknowns: int) -> int:
+    """Starting points along each axis."""
+    return {2: 7, 3: 5}.get(unknowns, 4)
