@@ -201,6 +201,8 @@ class SolutionRow:
     name: Node
     equations: tuple[Relation, ...]
     """As typed, on the first of the steps that share them; else ()."""
+    derived: tuple[Relation, ...]
+    """The same with integrals and derivatives worked, where algebra had something to do."""
     bounds: tuple[Relation, ...]
     method: str
     """How it was solved; "" but on the first."""

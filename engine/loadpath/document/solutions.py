@@ -45,6 +45,7 @@ def solution_row(writer: StepWriter, step: Step, statement: Solution, head: Head
         head,
         Name(statement.name),
         together.equations if first else (),
+        solved.derived if solved and first and solved.derived != together.equations else (),
         _bounds(statement) if first else (),
         solved.method if solved and first else "",
         sides,

@@ -12,12 +12,12 @@ from loadpath import algebra
 from loadpath.algebra import AlgebraFailure
 from loadpath.evaluate.failure import Failure, short
 from loadpath.evaluate.inline import inlined, mapped, too_large
-from loadpath.evaluate.numbers import Compiler, Values
+from loadpath.evaluate.numbers import Compiler, Values, part_value
 from loadpath.evaluate.special import integrate, whole_bounds
 from loadpath.evaluate.symbolic import is_symbolic
 from loadpath.formula.binding import own_name, put_in
 from loadpath.formula.mistake import Mistake
-from loadpath.formula.tree import Binary, Call, Cases, Name, Negative, Node, Number, Relation, walk
+from loadpath.formula.tree import Binary, Call, Cases, Name, Negative, Node, Number, Quantity, Relation, walk
 from loadpath.resolve import Resolved, Type
 from loadpath.trace.model import Aside
 
@@ -155,7 +155,7 @@ class Deriver:
         return tree
 
     def _limit(self, call: Call, f: Node, types: dict[str, Type]) -> Node:
-        found = algebra.limit(f, _second(call), call.arguments[2])
+        found = algebra.limit(f, _second(call), _bare_zero(call.arguments[2]))
         tree = None if found is None else self._fitting(call, found, types)
         if tree is None and self._grows(call, f):
             raise Failure(
@@ -224,6 +224,12 @@ def _second(call: Call) -> str:
     name = call.arguments[1]
     assert isinstance(name, Name)
     return name.name
+
+
+def _bare_zero(place: Node) -> Node:
+    """`0 rad` as `0`: a place that is nothing in any unit."""
+    is_zero = isinstance(place, Quantity) and all(part_value(part) == 0 for part in place.parts)
+    return Number("0") if is_zero else place
 
 
 def _whole(k: int) -> Node:

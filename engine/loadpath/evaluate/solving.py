@@ -10,10 +10,12 @@ from typing import Any
 
 from loadpath import algebra
 from loadpath.algebra import AlgebraFailure
+from loadpath.evaluate.derive import Deriver
 from loadpath.evaluate.failure import Failure, Show, short
 from loadpath.evaluate.inline import inlined
 from loadpath.evaluate.numbers import Compiler, Values
 from loadpath.evaluate.special import bad_interval
+from loadpath.evaluate.symbolic import is_derived
 from loadpath.formula.mistake import Mistake
 from loadpath.formula.statements import Equations, Sought
 from loadpath.formula.tree import Binary, Negative, Node, Relation, span_of, walk
@@ -69,7 +71,8 @@ class _Solver:
         self.together, self.entries, self.resolved = together, entries, resolved
         self.compiler, self.values = compiler, values
         self.names = tuple(sought.name for sought in together.sought)
-        self.equations = tuple(self._inlined(equation) for equation in together.equations)
+        self.derived = tuple(self._derived(equation) for equation in together.equations)
+        self.equations = tuple(self._inlined(equation) for equation in self.derived)
         self.bounds = {sought.name: self._bounds(sought) for sought in together.sought}
 
     def solutions(self) -> Solutions:
@@ -80,9 +83,17 @@ class _Solver:
         back = tuple(self._put_back(i, values) for i in range(len(self.equations)))
         if not all(each.close for each in back):
             raise self._not_close(back)
-        return Solutions(values, Solved(method, symbols, back, others))
+        return Solutions(values, Solved(method, symbols, back, others, self.derived))
 
     # --- the equations ---
+
+    def _derived(self, equation: Relation) -> Relation:
+        """The equation with its integrals and derivatives worked by algebra."""
+        if not is_derived(equation):
+            return equation
+        found = Deriver(self.resolved, self.compiler, self.values).derive(equation).tree
+        assert isinstance(found, Relation)
+        return found
 
     def _inlined(self, equation: Relation) -> Relation:
         sides = tuple(inlined(side, self.compiler.function) for side in equation.operands)

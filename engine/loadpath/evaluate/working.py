@@ -10,7 +10,7 @@ from loadpath.evaluate.looking import Looking
 from loadpath.evaluate.numbers import ROW, Compiler, Values
 from loadpath.formula.binding import free_names
 from loadpath.formula.statements import Column, Definition, FunctionDefinition, Parameter
-from loadpath.formula.tree import As, Branch, Call, Cases, Name, Node, Number, Quantity, children, walk
+from loadpath.formula.tree import As, At, Branch, Call, Cases, Name, Node, Number, Quantity, children, walk
 from loadpath.functions import FUNCTIONS
 from loadpath.resolve import Entry, Resolved, Type, is_looking
 from loadpath.trace.digits import exact_digits, typed_number
@@ -63,7 +63,7 @@ class Observer:
 
     def _cells(self, tree: Node, row: int) -> Iterator[tuple[str, Operand]]:
         """The cells that stand for the names of columns in one row."""
-        for node in walk(tree):
+        for node in _seen(tree):
             if isinstance(node, Name) and node.name in self.compiler.columns:
                 yield node.name, self.cell(node.name, row)
 
@@ -184,7 +184,7 @@ class Observer:
 def _seen(node: Node | Branch) -> Iterator[Node | Branch]:
     """The nodes that are worked once, where the tree stands: not those inside what is looked over."""
     yield node
-    if not (isinstance(node, Call) and is_looking(node)):
+    if not (isinstance(node, At) or (isinstance(node, Call) and is_looking(node))):
         for child in children(node):
             yield from _seen(child)
 

@@ -208,9 +208,14 @@ def _agrees(a: Array, b: Array, found: Array) -> bool:
 
 
 def _without_crumbs(a: Array, b: Array, found: Array) -> Array:
-    """A value that is below the rounding of every equation it stands in is 0."""
+    """A value below the rounding of an equation it stands in is 0, where every other equation lets it be: it
+    is below the rounding there too, or nothing else stands there."""
     import numpy as np
 
     shares = np.abs(a) * np.abs(found)[None, :]
-    below = (shares <= 4 * float(np.finfo(float).eps) * _terms(a, b, found)[:, None]).all(axis=0)
-    return np.where(below, 0.0, found)
+    terms = _terms(a, b, found)[:, None]
+    below = shares <= 4 * float(np.finfo(float).eps) * terms
+    alone = terms - shares < shares / 2
+    absent = shares == 0
+    crumbs = (below | alone).all(axis=0) & (below & ~absent).any(axis=0)
+    return np.where(crumbs | absent.all(axis=0), 0.0, found)

@@ -111,6 +111,8 @@ class Solved:
     put_back: tuple[PutBack, ...]
     others: tuple[tuple[str, Operand, str], ...] = ()
     """Roots that were found and not taken: name, value, why not."""
+    derived: tuple[Relation, ...] = ()
+    """The equations with their integrals and derivatives worked by algebra."""
 
 
 @dataclass(frozen=True, slots=True)
