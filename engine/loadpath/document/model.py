@@ -7,13 +7,15 @@ with plain numbers. How they look is up to the printers.
 from __future__ import annotations
 
 from dataclasses import dataclass, field
-from typing import Any
+from typing import TYPE_CHECKING, Any
 
-from loadpath.figures import Picture
 from loadpath.findings import Finding
 from loadpath.formula.statements import CriterionKind
 from loadpath.formula.tree import Node, Relation, Shown
 from loadpath.text import Source
+
+if TYPE_CHECKING:
+    from loadpath.figures import Picture
 
 CAUTION = (
     "This calculation is to be checked by a competent person before anything is built, lifted or loaded on "

@@ -67,7 +67,7 @@ def _bounds(statement: Solution) -> tuple[Relation, ...]:
 
 
 def _put_back(of: PutBack, digits: int) -> PutBackLine:
-    unit, size = of.unit, max(abs(of.left), abs(of.right))
+    unit, size = of.unit, of.size
     printed = "in" if unit.text.startswith("ft-in") else unit.text
 
     def put(value: float) -> Shown:

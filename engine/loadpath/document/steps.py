@@ -22,7 +22,6 @@ from loadpath.document.model import (
     ResultRow,
     StepBlock,
 )
-from loadpath.document.plots import plot_block
 from loadpath.document.solutions import solution_row, unknown_row
 from loadpath.document.tables import column_block, judged_lines, table_block, value_table
 from loadpath.findings import Finding
@@ -112,6 +111,8 @@ class StepWriter:
             case Tabulate():
                 return value_table(self, step, statement, head)
             case Plot():
+                from loadpath.document.plots import plot_block
+
                 self.figures += 1
                 return plot_block(self, step, statement, head, self.figures)
         raise TypeError(type(statement).__name__)
@@ -421,7 +422,11 @@ def _notes_between(statement: Statement, start: int, end: int | None) -> tuple[N
 
 
 def _own_notes(statement: Statement) -> tuple[Note, ...]:
-    """The notes of a statement itself; those on the branches of its `cases` stand at the branches."""
+    """The notes of a statement itself; those on the branches of its `cases` and on the equations of a
+    `solve for` stand there."""
+    if isinstance(statement, Solution):
+        of_equations = {note.span for notes in statement.together.notes for note in notes}
+        return tuple(note for note in statement.notes if note.span not in of_equations)
     tree = next((t for t in expressions(statement) if isinstance(t, Cases)), None)
     return (
         statement.notes

@@ -8,7 +8,6 @@ from loadpath.evaluate.explain import run
 from loadpath.evaluate.numbers import Compiler, Values
 from loadpath.evaluate.special import bad_interval, expression_over
 from loadpath.formula.tree import Node
-from loadpath.numeric.trouble import NotDefined
 from loadpath.trace.model import Curve, Curves, Spot
 from loadpath.units import Unit
 
@@ -42,9 +41,7 @@ def draw(
 def _curve(
     compiler: Compiler, values: Values, tree: Node, x: str, a: float, b: float, unit: Unit, steps: int
 ) -> Curve:
-    from loadpath.numeric.extremes import extremes
-    from loadpath.numeric.pieces import bracket_places
-    from loadpath.numeric.sampling import sample
+    from loadpath.numeric import NotDefined, bracket_places, extremes, sample
 
     of = expression_over(compiler, tree, x, a, b, values, _NO_PARAMETERS)
     if steps:

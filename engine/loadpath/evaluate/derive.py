@@ -69,7 +69,11 @@ class Deriver:
         return Derived(tree, new, tuple(dict.fromkeys(self.asides)))
 
     def _one(self, tree: Node, types: dict[str, Type]) -> Node:
+        made: set[int] = set()
+
         def change(node: Node) -> Node:
+            if isinstance(node, Binary) and node.operator == "+" and id(node.right) in made:
+                return _joined(node.left, node.right)
             if not isinstance(node, Call) or not is_symbolic(node):
                 return node
             try:
@@ -79,7 +83,11 @@ class Deriver:
                 raise Failure(trouble.slug, lambda show: message, node.at, trouble.help) from None
             if sum(1 for _ in walk(found)) > MOST_NODES:
                 raise too_large(node.at, MOST_NODES)
+            made.add(id(found))
+            kept.append(found)
             return found
+
+        kept: list[Node] = []  # so that no other node takes the place of one in memory
 
         return mapped(tree, change)
 
@@ -218,6 +226,16 @@ class Deriver:
             checker.warnings.clear()
         fits = wanted.unknown or found.unknown or found.zero or wanted.dimension == found.dimension
         return tree if fits else None
+
+
+def _joined(left: Node, right: Node) -> Node:
+    """`a + (b - c)` as `a + b - c`."""
+    match right:
+        case Binary(operator="+" | "-", left=first):
+            return replace(right, left=_joined(left, first))
+        case Negative(operand=operand):
+            return Binary("-", left, operand)
+    return Binary("+", left, right)
 
 
 def _second(call: Call) -> str:

@@ -128,9 +128,10 @@ def _outlines(resolved: Resolved, numbers: Iterator[str], reach: _Reach) -> tupl
         for id in of:
             used_by[id].append(entry.id)
         for name in defined_by(entry):
-            if isinstance(entry.statement, Solution):
-                owner[name] = entry.id  # from here on the name is what was found
             owner.setdefault(name, entry.id)
+        if isinstance(entry.statement, Solution) and entry.statement.is_last:
+            # from here on the names are what was found
+            owner |= {sought.name: sought.name for sought in entry.statement.together.sought}
     return tuple(
         Outline(entry, number, cited(entry.statement), of, tuple(used_by[entry.id]))
         for entry, of, number in zip(resolved.entries, uses, numbers, strict=False)

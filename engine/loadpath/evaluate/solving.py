@@ -137,8 +137,8 @@ class _Solver:
             self._refuse_outside(name, value)
         symbols = self._in_symbols(values)
         one = len(self.names) == 1
-        method = "linear equation" if one else f"linear system of {len(self.names)} equations"
-        return values, method + ("" if symbols else ", solved in numbers"), symbols, ()
+        method = "as a linear equation" if one else f"as a linear system of {len(self.names)} equations"
+        return values, method + ("" if symbols else ", in numbers"), symbols, ()
 
     def _in_symbols(self, values: dict[str, float]) -> dict[str, Node]:
         """The solution of a small system in symbols, where it gives the same numbers and units."""
@@ -223,13 +223,14 @@ class _Solver:
                 trees = ()
             found = [r for r in map(self._root, trees) if r is not None]
             if found:
-                return found, "quadratic equation"
+                return found, "as a quadratic equation"
         numbers = coefficients(difference, name, self._worth)
         assert numbers is not None
         if not any(numbers[1:]):
             raise self._no_solution(f"`{name}` drops out of the equation")
         real = algebra.real_roots(tuple(Fraction(c) for c in numbers))
-        return [_Root(value) for value in real], f"all real roots of a polynomial of degree {degree}"
+        method = f"as a polynomial of degree {degree}, of which all real roots were looked at"
+        return [_Root(value) for value in real], method
 
     def _closed_form(self) -> tuple[list[_Root], str]:
         name, equation = self.names[0], self.together.equations[0]
@@ -246,7 +247,7 @@ class _Solver:
                 self.place, mend,
             )  # fmt: skip
         found = [r for r in map(self._root, trees) if r is not None]
-        return found, "closed form"
+        return found, "in closed form"
 
     def _root(self, tree: Node) -> _Root | None:
         """A candidate as a number; None where it has no real value or other units."""
@@ -273,7 +274,7 @@ class _Solver:
         low, high = (self._shown(name, bound) for bound in bounds)
         if not found.found:
             raise self._no_solution(f"no value of `{name}` between {low} and {high} solves the equation")
-        return self._chosen(name, [_Root(value) for value in found.found], found.method)
+        return self._chosen(name, [_Root(value) for value in found.found], f"by {found.method}")
 
     def _chosen(self, name: str, roots: list[_Root], method: str) -> _Found:
         """The one root that solves the equation and lies within the bounds."""
@@ -366,9 +367,9 @@ class _Solver:
         try:
             left, right = (self._worth(side, values) for side in equation.operands)
         except (ArithmeticError, ValueError, Failure):
-            return PutBack(typed, math.nan, math.nan, unit, False)
+            return PutBack(typed, math.nan, math.nan, unit, math.nan, False)
         size = max(self._size(side, values) for side in equation.operands)
-        return PutBack(typed, left, right, unit, abs(left - right) <= CLOSE * size)
+        return PutBack(typed, left, right, unit, size, abs(left - right) <= CLOSE * size)
 
     def _size(self, node: Node, values: dict[str, float]) -> float:
         """How large a value is before its terms cancel: what its rounding goes with."""

@@ -13,12 +13,10 @@ from loadpath.evaluate.inline import inlined
 from loadpath.evaluate.numbers import ROW, Compiler, Values, Work
 from loadpath.formula.binding import free_names, own_name
 from loadpath.formula.tree import Call, Name, Node, span_of
-from loadpath.numeric.trouble import NoConvergence, NotDefined
 from loadpath.resolve.columns import is_brought_back
 
 if TYPE_CHECKING:
-    from loadpath.numeric.extremes import Extremes
-    from loadpath.numeric.quadrature import Quadrature
+    from loadpath.numeric import Extremes, NoConvergence, Quadrature
 
 MOST_TERMS = 100_000
 """Of a `sum(f, k, m, n)`."""
@@ -231,7 +229,7 @@ def expression_over(
         return float(compiler.compile_tree(part, frozenset(p))(e, p))
 
     def f_left(at: float) -> float:
-        from loadpath.numeric.extremes import left_of
+        from loadpath.numeric import left_of
 
         left = compiler.compile_tree(left_of(whole, x, at, value), names)
         return float(left(e, {**p, x: at}))
@@ -256,7 +254,7 @@ def _said(show: Show, node: Node, value: float) -> str:
 
 def look_over(compiler: Compiler, node: Call, e: Values, p: Values) -> Extremes:
     """What `largest` and its likes look at. Raises `Failure`."""
-    from loadpath.numeric.extremes import extremes
+    from loadpath.numeric import NotDefined, extremes
 
     of = over(compiler, node, e, p)
     try:
@@ -281,8 +279,7 @@ def _picked(function: str, found: Extremes) -> float:
 
 def integrate(compiler: Compiler, node: Call, e: Values, p: Values) -> Quadrature:
     """A definite integral in numbers. Raises `Failure`."""
-    from loadpath.numeric.pieces import bracket_places
-    from loadpath.numeric.quadrature import Quadrature, quadrature
+    from loadpath.numeric import NoConvergence, NotDefined, Quadrature, bracket_places, quadrature
 
     of = over(compiler, node, e, p)
     if of.low == of.high:

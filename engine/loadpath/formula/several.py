@@ -107,7 +107,8 @@ def read_solve(group: Group, reader: Reader) -> tuple[Statement, ...]:
         message = "`solve for` takes its equations on deeper lines"
         raise Mistake("stray-line", word, message, _SOLVE_FORM)
     equations = tuple(_equation(item) for item in group.deeper)
-    together = Equations(tuple(sought), equations, group.head.span)
+    notes = tuple(item.notes for item in group.deeper)
+    together = Equations(tuple(sought), equations, notes, group.head.span)
     spans = [group.span, *(each.span for each in sought[1:])]
     return tuple(Solution(span, group.whole.notes, i, together) for i, span in enumerate(spans))
 

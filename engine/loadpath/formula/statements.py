@@ -142,6 +142,8 @@ class Equations:
     sought: tuple[Sought, ...]
     equations: tuple[Relation, ...]
     """Each with one `=`."""
+    notes: tuple[tuple[Note, ...], ...]
+    """Those of each equation."""
     span: Span
     """Of the head line."""
 
@@ -163,6 +165,11 @@ class Solution(Statement):
     def name(self) -> str:
         """Of the unknown."""
         return self.sought.name
+
+    @property
+    def is_last(self) -> bool:
+        """True for the last unknown of its `solve for`."""
+        return self.index == len(self.together.sought) - 1
 
 
 # --- tables -------------------------------------------------------------------------------------------------

@@ -13,7 +13,6 @@ from typing import Any
 from markupsafe import Markup, escape
 
 from loadpath.document.model import Block, Document, FigureBlock, PlotBlock, Ref, TitleBlock
-from loadpath.figures import describe, svg
 from loadpath.findings.terminal import excerpt
 from loadpath.formula.names import symbol
 from loadpath.formula.tree import Name, Node, Shown
@@ -64,7 +63,7 @@ def _environment() -> Any:
             "names_in": names_in,
             "excerpt": excerpt,
             "own_name": lambda name: name.rpartition(".")[2],
-            "alt": lambda block: describe(block.picture),
+            "alt": _alt,
             "drawn": _drawn,
         }
     )
@@ -208,7 +207,15 @@ def _are_wide(sides: tuple[Node, ...]) -> bool:
     return any(widest(side) > COLUMN for side in sides)
 
 
+def _alt(block: PlotBlock) -> str:
+    from loadpath.figures import describe
+
+    return describe(block.picture) if block.picture else ""
+
+
 def _drawn(block: PlotBlock) -> str:
+    from loadpath.figures import svg
+
     assert block.picture is not None
     return f"data:image/svg+xml;base64,{base64.b64encode(svg(block.picture)).decode()}"
 

@@ -22,7 +22,6 @@ from loadpath.document.model import (
     Ref,
     SectionHead,
 )
-from loadpath.figures import describe, svg
 from loadpath.formula.names import plain_symbol
 from loadpath.formula.tree import Name, Node, Shown
 from loadpath.render.markdown_prose import escape as plain
@@ -72,7 +71,7 @@ def _environment() -> Any:
         "name_math": lambda name: _inline_math(Name(name)),
         "line": _line,
         "call": _call,
-        "alt": lambda block: describe(block.picture),
+        "alt": _alt,
         "own_name": lambda name: name.rpartition(".")[2],
         "aligned": lambda equations: Markup(f"$$\n{latex_equations(equations)}\n$$"),
         "cell": lambda text: Markup(str(_escape(text)).replace("\n", " ")),
@@ -134,6 +133,12 @@ def _values(document: Document) -> Callable[[Any], str]:
     return lambda value: str(_shown(document.values.get(value, value.typed)))
 
 
+def _alt(block: PlotBlock) -> str:
+    from loadpath.figures import describe
+
+    return describe(block.picture) if block.picture else ""
+
+
 def _image_name(block: FigureBlock | PlotBlock, stem: str) -> str:
     ending = "svg" if isinstance(block, PlotBlock) else ENDINGS.get(block.media_type, "bin")
     return f"{stem}.figure-{block.number}.{ending}"
@@ -142,4 +147,6 @@ def _image_name(block: FigureBlock | PlotBlock, stem: str) -> str:
 def _image_data(block: FigureBlock | PlotBlock) -> bytes:
     if isinstance(block, FigureBlock):
         return block.data
+    from loadpath.figures import svg
+
     return svg(block.picture) if block.picture else b""

@@ -24,7 +24,7 @@ class Unknowns:
                 self.open.add(name)
             case FunctionDefinition(name=name):
                 self._behind[name] = self.behind(uses)
-            case Solution() if statement.index == len(statement.together.sought) - 1:
+            case Solution() if statement.is_last:
                 for sought in statement.together.sought:
                     self.open.discard(sought.name)
                     self.closed.add(sought.name)

@@ -96,6 +96,8 @@ class PutBack:
     right: float
     """SI."""
     unit: Unit
+    size: float
+    """Of the terms before they cancel, SI: what rounding goes with."""
     close: bool
     """True where the two agree to rounding."""
 
@@ -105,7 +107,7 @@ class Solved:
     """How the unknowns of one `solve for` were found; its steps share it."""
 
     method: str
-    """`linear system`, `quadratic`, `bracketing (Brent) between the bounds`."""
+    """`as a linear system of 2 equations`, `by bracketing (Brent), between the bounds in 400 steps`."""
     symbols: dict[str, Node]
     """The solution in symbols, where there is one."""
     put_back: tuple[PutBack, ...]
