@@ -6,6 +6,7 @@ source: mpmath at 40 digits and scipy.special, general libraries that share no c
 from __future__ import annotations
 
 import math
+import re
 from collections.abc import Callable
 from fractions import Fraction
 
@@ -17,7 +18,8 @@ from hypothesis import strategies as st
 
 import loadpath
 from loadpath.formula.names import RESERVED
-from loadpath.functions import FUNCTIONS, LATER, NAMES
+from loadpath.functions import FUNCTIONS, NAMES, SPECIAL
+from loadpath.functions.special import COLUMNS, EXAMPLE_TABLE
 from loadpath.trace import Trace
 from loadpath.units import Dimension
 from loadpath.units import dimension as d
@@ -33,16 +35,20 @@ CONTRACT = {
 """source: the contract of the language, section 3."""
 
 
-def evaluated(*lines: str) -> Trace:
+def evaluated(*lines: str, above: str = "") -> Trace:
     body = "\n".join(f"    {line}" for line in lines)
-    return loadpath.evaluate(loadpath.read_text(f"---\ntitle: Functions\n---\n\n{body}\n"))
+    return loadpath.evaluate(loadpath.read_text(f"---\ntitle: Functions\n---\n\n{above}\n{body}\n"))
+
+
+def errors_of(trace: Trace) -> list[str]:
+    return [f.slug for f in trace.findings if f.severity == "error"]
 
 
 def test_the_functions_are_those_of_the_contract() -> None:
     assert NAMES == CONTRACT
-    assert set(FUNCTIONS) == CONTRACT - LATER
+    assert not set(FUNCTIONS) & set(SPECIAL)
     assert not NAMES & RESERVED
-    assert all(name == function.name for name, function in FUNCTIONS.items())
+    assert all(name == function.name for name, function in (FUNCTIONS | SPECIAL).items())
 
 
 # --- examples -----------------------------------------------------------------------------------------------
@@ -81,6 +87,46 @@ def test_what_the_dimension_check_makes_of_newtons(name: str) -> None:
         "steps": d.FORCE, "like-first": d.PLAIN,
     }  # fmt: skip
     assert trace["y"].unit.dimension == given[function.rule]
+
+
+# --- functions of whole expressions and of columns ----------------------------------------------------------
+
+OF_COLUMNS = {function.name for function in COLUMNS}
+
+
+def worked_example(name: str) -> Trace:
+    """The trace of a special function's example, the value it says beside it as `said`."""
+    typed, _, value = SPECIAL[name].example.partition(" | ")
+    above = EXAMPLE_TABLE if name in OF_COLUMNS else ""
+    return evaluated(*typed.split("; "), f"said = {value}", above=above)
+
+
+@pytest.mark.parametrize("name", SPECIAL)
+def test_the_special_example_gives_what_it_says(name: str) -> None:
+    assert f"{name}(" in SPECIAL[name].example
+    trace = worked_example(name)
+    assert errors_of(trace) == []
+    assert trace["x"].si == pytest.approx(trace["said"].si, rel=1e-14, abs=1e-15)
+    assert trace["x"].unit.dimension == trace["said"].unit.dimension
+
+
+@pytest.mark.parametrize("name", SPECIAL)
+def test_forms_of_a_special_function_are_of_different_length(name: str) -> None:
+    function = SPECIAL[name]
+    assert all(re.fullmatch(rf"{name}\((\w+)(, \w+)*\)", form) for form in function.forms)
+    assert len(set(function.counts)) == len(function.forms)
+
+
+@pytest.mark.parametrize("name", SPECIAL)
+@pytest.mark.parametrize("within_a_function", [False, True])
+def test_a_special_function_with_another_number_of_arguments(name: str, within_a_function: bool) -> None:
+    """Each count from none to one more than the longest form has, wherever the call stands."""
+    wrong = set(range(1, max(SPECIAL[name].counts) + 2)) - set(SPECIAL[name].counts)
+    assert wrong
+    for count in (0, *sorted(wrong)):
+        call = f"{name}({', '.join(['t', 't', '0', '1', '2'][:count])})"
+        lines = [f"f(t [1]) = {call}", "x = f(1)"] if within_a_function else ["t = 0.5", f"x = {call}"]
+        assert errors_of(evaluated(*lines)) == ["wrong-arguments"], (count, call)
 
 
 # --- values -------------------------------------------------------------------------------------------------

@@ -20,7 +20,7 @@ from loadpath.algebra.calculus import (
 )
 from loadpath.algebra.door import close
 from loadpath.algebra.equations import real_roots, roots, solve_linear
-from loadpath.algebra.failure import TIME_LIMIT, AlgebraFailure
+from loadpath.algebra.failure import TIME_LIMIT, AlgebraFailure, time_limit
 from loadpath.algebra.frame import MOST_NODES
 from loadpath.algebra.trees import depends_on, substitute_name
 
@@ -44,5 +44,6 @@ __all__ = [
     "single_brackets",
     "solve_linear",
     "substitute_name",
+    "time_limit",
     "vanishes_at_zero",
 ]

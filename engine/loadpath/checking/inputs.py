@@ -8,7 +8,7 @@ from collections.abc import Iterator
 from loadpath.findings import Finding, finding
 from loadpath.formula.names import canonical
 from loadpath.formula.statements import Choice, Column, Definition, Table
-from loadpath.formula.tree import Binary, Call, Name, Negative, Node, Number, span_of, walk
+from loadpath.formula.tree import Binary, Call, Name, Negative, Node, Number, Quantity, span_of, walk
 from loadpath.functions import FUNCTIONS
 from loadpath.resolve import expressions
 from loadpath.text import Span
@@ -69,7 +69,8 @@ def _table(trace: Trace, step: Step, statement: Table) -> Iterator[Finding]:
     """A table of data is a design input as a whole."""
     if step.entry.blocked_by:
         return
-    yield from _origin(trace, step, statement.name, statement.name_span, "table")
+    if any(_is_typed(node) for node in _cells(trace, step, statement)):
+        yield from _origin(trace, step, statement.name, statement.name_span, "table")
     columns = [s for s in trace if isinstance(s.statement, Column) and s.statement.table == statement.name]
     meant = {name.partition(".")[0] for name in trace.resolved.meant}
     if not step.used_by and not any(s.used_by for s in columns) and statement.name not in meant:
@@ -78,6 +79,24 @@ def _table(trace: Trace, step: Step, statement: Table) -> Iterator[Finding]:
             trace.sheet.source, statement.name_span,
             help="delete it, or take the word `Table` from its caption: it is then told, and not computed",
         )  # fmt: skip
+
+
+def _cells(trace: Trace, step: Step, statement: Table) -> Iterator[Node]:
+    yield from expressions(statement)
+    for of in trace:
+        if isinstance(of.statement, Column) and of.statement.table == statement.name:
+            yield from of.statement.cells
+
+
+def _is_typed(cell: Node) -> bool:
+    """True for a cell that states a value of its own: neither a name nor nothing."""
+    if any(isinstance(n, Name) for n in walk(cell)):
+        return False
+    return any(
+        (isinstance(n, Number) and _value(n) != 0)
+        or (isinstance(n, Quantity) and any(part.whole.strip("0.") for part in n.parts))
+        for n in walk(cell)
+    )
 
 
 # --- angles -------------------------------------------------------------------------------------------------

@@ -61,11 +61,12 @@ class Deriver:
         self.asides = []
         self.known = parameters is None
         types = parameters or {}
-        if isinstance(tree, Cases):
-            branches = tuple(replace(b, value=self._one(b.value, types)) for b in tree.branches)
-            new: Node = replace(tree, branches=branches)
-        else:
-            new = self._one(tree, types)
+        with algebra.time_limit(algebra.TIME_LIMIT):
+            if isinstance(tree, Cases):
+                branches = tuple(replace(b, value=self._one(b.value, types)) for b in tree.branches)
+                new: Node = replace(tree, branches=branches)
+            else:
+                new = self._one(tree, types)
         return Derived(tree, new, tuple(dict.fromkeys(self.asides)))
 
     def _one(self, tree: Node, types: dict[str, Type]) -> Node:

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import hashlib
 from collections.abc import Mapping
+from contextlib import AbstractContextManager, nullcontext
 from dataclasses import dataclass, field, replace
 from math import inf
 from typing import TYPE_CHECKING, Any
@@ -33,7 +34,7 @@ from loadpath.formula.statements import (
     Validity,
 )
 from loadpath.formula.tree import Node
-from loadpath.resolve import Resolved, is_relative, relations_in
+from loadpath.resolve import Resolved, expressions, is_relative, relations_in
 from loadpath.sheet import Image, Sheet
 from loadpath.trace.digits import digits_of_verdict, exact_digits
 from loadpath.trace.model import Row, Step, Trace, Verdict, Working
@@ -44,6 +45,8 @@ if TYPE_CHECKING:
     from loadpath.evaluate.solving import Solutions
 
 _NO_PARAMETERS: dict[str, Any] = {}
+ALGEBRA_IN_ALL = 120.0
+"""Seconds for a sheet that needs algebra."""
 
 
 def evaluate(resolved: Resolved) -> Trace:
@@ -75,8 +78,9 @@ class _Run:
     def trace(self) -> Trace:
         sheet = self.plan.resolved.sheet
         self.base = sheet.front.digits
-        for planned in self.plan.steps:
-            self.steps.append(self._step(planned))
+        with self._algebra_limit():
+            for planned in self.plan.steps:
+                self.steps.append(self._step(planned))
         self._bring_in_ranges()
         self._bring_in_digits()
         found = self.found
@@ -90,6 +94,15 @@ class _Run:
             digest(sheet),
             self._work_printed,
         )
+
+    def _algebra_limit(self) -> AbstractContextManager[None]:
+        """All algebra of one sheet together has a limit too."""
+        needs = (p.outline.entry.statement for p in self.plan.steps if not p.outline.entry.blocked_by)
+        if not any(isinstance(s, Solution) or any(map(is_derived, expressions(s))) for s in needs):
+            return nullcontext()
+        from loadpath.algebra import time_limit
+
+        return time_limit(ALGEBRA_IN_ALL)
 
     def _work_printed(self, node: Node) -> float:
         return float(self.plan.compiler.compile_tree(node)(self.values, _NO_PARAMETERS))

@@ -26,6 +26,8 @@ MOST_ADDED = 12
 MOST_SPOTS = 24
 """Places looked at that are listed."""
 ERROR_DIGITS = 2
+NOTHING = 1e-12
+"""A value below this share of the largest one looked at is printed as 0."""
 
 
 class Looking:
@@ -168,9 +170,10 @@ class Looking:
         digits = self.of.resolved.sheet.front.digits
         if found.method != "exact":
             yield Aside("", Name(own.name), f"looked over: {found.method}, then refined")
+        size = max(abs(spot.y) for spot in found.looked_at)
         for spot in found.looked_at[:MOST_SPOTS]:
             at = _shown(x_unit, spot.x, digits)
-            y = _shown(y_unit, spot.y, digits)
+            y = _shown(y_unit, 0.0 if abs(spot.y) <= NOTHING * size else spot.y, digits)
             yield Aside(
                 f"{spot.where}, ", Relation((put_in(call.arguments[0], {own.name: at}), y), ("=",)), ""
             )

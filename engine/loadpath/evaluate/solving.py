@@ -50,7 +50,8 @@ def solve(
     together: Equations, entries: dict[str, Entry], resolved: Resolved, compiler: Compiler, values: Values
 ) -> Solutions:
     """The unknowns of one `solve for`. Raises `Failure` where there is not exactly one solution."""
-    return _Solver(together, entries, resolved, compiler, values).solutions()
+    with algebra.time_limit(algebra.TIME_LIMIT):
+        return _Solver(together, entries, resolved, compiler, values).solutions()
 
 
 @dataclass(frozen=True, slots=True)

@@ -7,13 +7,13 @@ from dataclasses import replace
 
 from loadpath.formula.mistake import Mistake
 from loadpath.formula.statements import AskedUnit, Check, FunctionDefinition, Statement
-from loadpath.formula.tree import Name, Node, Quantity, Relation, Word, span_of, walk
+from loadpath.formula.tree import Call, Name, Node, Quantity, Relation, Word, span_of, walk
 from loadpath.resolve.dimensions import Checker
 from loadpath.resolve.mismatches import article, factor_between
 from loadpath.resolve.model import UNKNOWN, Entry, Type
 from loadpath.resolve.names import Names
 from loadpath.resolve.parts import relations_in
-from loadpath.resolve.units import typed_unit
+from loadpath.resolve.units import read_unit, typed_unit
 from loadpath.units import ONE, Unit
 
 RELATIVE = ("%", "ppm")
@@ -75,6 +75,7 @@ class Displays:
         if found is None or found.words is not None:
             return ONE
         alone = self._unit_of_names((o for o in relation.operands if isinstance(o, Name)), found)
+        alone = alone or self._unit_of_calls(relation, found)
         typed = next((t for o in relation.operands if (t := typed_unit(o, found)) is not None), None)
         if alone or typed or self.checker.system.knows(found.dimension):
             return alone or typed or self._fitting(found)
@@ -86,6 +87,16 @@ class Displays:
         for name in names:
             if name.name in self.names.by_name:
                 unit = self.entries[self.names.by_name[name.name]].unit
+                if unit.dimension == found.dimension and unit.absolute == found.absolute:
+                    return unit
+        return None
+
+    def _unit_of_calls(self, relation: Relation, found: Type) -> Unit | None:
+        """That of a side that is a call of a function which asks for a unit."""
+        for side in relation.operands:
+            definition = self.checker.function(side.function) if isinstance(side, Call) else None
+            if definition is not None and definition.unit is not None:
+                unit = read_unit(definition.unit.text, definition.unit.span)
                 if unit.dimension == found.dimension and unit.absolute == found.absolute:
                     return unit
         return None

@@ -3,11 +3,12 @@
 from __future__ import annotations
 
 import re
-from collections.abc import Callable
+from collections.abc import Callable, Iterator
 
 from loadpath.formula.mistake import Mistake
 from loadpath.formula.quantities import LONGEST_UNIT
-from loadpath.formula.tree import Node, Quantity, walk
+from loadpath.formula.tree import Branch, Call, Node, Quantity, children
+from loadpath.functions import FUNCTIONS
 from loadpath.resolve.mismatches import MASS_UNITS
 from loadpath.resolve.model import Flavour, Type
 from loadpath.text import Span
@@ -78,9 +79,17 @@ def names_behind_operators(unit: Unit, place: Span, is_name: Callable[[str], boo
     return found
 
 
+def _outside_calls(node: Node | Branch) -> Iterator[Node | Branch]:
+    """The node and what is below it, but nothing inside a call that does not give back what it is given."""
+    yield node
+    if not isinstance(node, Call) or node.function in FUNCTIONS:
+        for child in children(node):
+            yield from _outside_calls(child)
+
+
 def typed_unit(value: Node, found: Type) -> Unit | None:
     """The unit that a typed value already has: of its first quantity of the right dimension."""
-    for node in walk(value):
+    for node in _outside_calls(value):
         if isinstance(node, Quantity):
             unit = parse_unit(node.parts[-1].unit)
             if unit.dimension == found.dimension and unit.absolute == found.absolute:
