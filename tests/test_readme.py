@@ -112,12 +112,21 @@ def test_there_are_commands_to_run() -> None:
 
 
 def test_the_sheet_is_short_and_without_a_finding_that_counts() -> None:
-    (sheet,) = blocks("markdown")
+    sheet, _ = blocks("markdown")
     assert len(sheet.splitlines()) <= 16
     trace = audited(read_input("-", sheet))
     assert [f for f in trace.findings if f.severity != "note"] == []
     assert exit_code(trace) == 0
     assert len(trace.criteria) == 1
+
+
+def test_the_lines_of_algebra_are_worked() -> None:
+    """The deflection of a propped cantilever: source: handbook tables, w*L^4/(185*E*I) (from memory)."""
+    _, lines = blocks("markdown")
+    head = "---\ntitle: Algebra\nsources: {plan: a, ec3: b, profile: c}\n---\n\n"
+    trace = audited(read_input("-", head + lines))
+    assert [f for f in trace.findings if f.severity != "note"] == []
+    assert trace["v_max"].si == pytest.approx(12e3 * 4**4 / (185 * 210e9 * 3892e-8), rel=1e-3)
 
 
 # --- its links ----------------------------------------------------------------------------------------------
