@@ -123,7 +123,9 @@ def test_real_roots_of_a_product_are_those_it_was_made_from(wanted: list[Fractio
 
 
 @settings(max_examples=40)
-@given(st.lists(st.floats(-1e6, 1e6, allow_nan=False), min_size=3, max_size=6))
+@given(
+    st.lists(st.one_of(st.just(0.0), st.floats(1e-6, 1e6), st.floats(-1e6, -1e-6)), min_size=3, max_size=6)
+)
 def test_real_roots_against_mpmath(coefficients: list[float]) -> None:
     import mpmath
 
@@ -137,10 +139,15 @@ def test_real_roots_against_mpmath(coefficients: list[float]) -> None:
         # the polynomial changes sign, or touches zero, within one part in 1e15 of the root
         values = [
             sum(mpmath.mpf(c.numerator) / c.denominator * x**i for i, c in enumerate(exact))
-            for x in (mpmath.mpf(root) * (1 - mpmath.mpf(10) ** -15), mpmath.mpf(root) * (1 + mpmath.mpf(10) ** -15))
+            for x in (
+                mpmath.mpf(root) * (1 - mpmath.mpf(10) ** -15),
+                mpmath.mpf(root) * (1 + mpmath.mpf(10) ** -15),
+            )
         ]
         slack = sum(abs(mpmath.mpf(float(c))) * abs(mpmath.mpf(root)) ** i for i, c in enumerate(exact))
-        assert root == 0 or values[0] * values[1] <= 0 or min(map(abs, values)) <= slack * mpmath.mpf(10) ** -12
+        assert (
+            root == 0 or values[0] * values[1] <= 0 or min(map(abs, values)) <= slack * mpmath.mpf(10) ** -12
+        )
 
 
 def test_real_roots_close_together_and_far_apart() -> None:
@@ -163,3 +170,9 @@ def test_a_polynomial_without_roots_of_its_own() -> None:
     assert algebra.real_roots((Fraction(3),)) == ()
     with pytest.raises(ValueError, match="0 everywhere"):
         algebra.real_roots((Fraction(0), Fraction(0)))
+
+
+def test_a_root_beyond_any_number_is_said() -> None:
+    with pytest.raises(algebra.AlgebraFailure) as failure:
+        algebra.real_roots((Fraction(-1), Fraction(1, 10**400)))
+    assert failure.value.slug == "derived-too-large"

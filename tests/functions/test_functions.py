@@ -75,7 +75,7 @@ def test_too_few_and_too_many_arguments(name: str) -> None:
 @pytest.mark.parametrize("name", FUNCTIONS)
 def test_what_the_dimension_check_makes_of_newtons(name: str) -> None:
     function = FUNCTIONS[name]
-    arguments = ", ".join(["2 N"] * function.least)
+    arguments = ", ".join(["2 N"] * max(function.least, 2 if function.rule == "choose" else 1))
     trace = evaluated("u = 1 N -- unit", f"x = {name}({arguments})", "y = x")
     errors = [f.slug for f in trace.findings if f.severity == "error"]
     if function.rule == "plain":
@@ -111,10 +111,36 @@ def test_the_special_example_gives_what_it_says(name: str) -> None:
 
 
 @pytest.mark.parametrize("name", SPECIAL)
-def test_forms_of_a_special_function_are_of_different_length(name: str) -> None:
+def test_forms_of_a_special_function_are_calls_of_it(name: str) -> None:
     function = SPECIAL[name]
     assert all(re.fullmatch(rf"{name}\((\w+)(, \w+)*\)", form) for form in function.forms)
-    assert len(set(function.counts)) == len(function.forms)
+    assert len(set(function.forms)) == len(function.forms) == len(function.counts)
+
+
+@pytest.mark.parametrize("call", ["min(P)", "max(P)", "sum(P)", "count(P)", "min(2 kN)", "sum(2 kN)"])
+def test_one_value_where_a_column_is_brought_back_to_one_number(call: str) -> None:
+    assert errors_of(evaluated("P = 3 kN", f"x = {call}")) == ["needs-column"]
+
+
+@pytest.mark.parametrize(
+    ("call", "value"), [("min(demo.b)", 2e3), ("max(demo.b)", 5e3), ("sum(demo.b)", 11e3), ("count(demo.b)", 3)]
+)
+def test_a_column_is_brought_back_to_one_number(call: str, value: float) -> None:
+    trace = evaluated(f"x = {call}", above=EXAMPLE_TABLE)
+    assert errors_of(trace) == []
+    assert trace["x"].si == value
+
+
+@pytest.mark.parametrize(
+    ("call", "values"),
+    [("min(demo.b, 3 kN)", [2e3, 3e3, 3e3]), ("max(demo.b, 3 kN, 4.5 kN)", [4.5e3, 4.5e3, 5e3])],
+)
+def test_with_several_arguments_the_smallest_and_largest_go_row_by_row(
+    call: str, values: list[float]
+) -> None:
+    trace = evaluated(f"x = {call}", above=EXAMPLE_TABLE)
+    assert errors_of(trace) == []
+    assert list(trace["x"].si) == values
 
 
 @pytest.mark.parametrize("name", SPECIAL)

@@ -5,7 +5,12 @@ Names and quantities have no sign here and no value; decimals are exact. SymPy r
 in None where no closed form exists, or in AlgebraFailure.
 """
 
-from loadpath.algebra.calculus import (
+from loadpath.algebra.derivatives import breaks_in, derivative, jumps_in
+from loadpath.algebra.door import close
+from loadpath.algebra.equations import real_roots, roots, solve_linear
+from loadpath.algebra.failure import TIME_LIMIT, AlgebraFailure, time_limit
+from loadpath.algebra.frame import MOST_NODES
+from loadpath.algebra.integrals import (
     AboveZero,
     antiderivative,
     breaks_in,
@@ -18,10 +23,7 @@ from loadpath.algebra.calculus import (
     single_brackets,
     vanishes_at_zero,
 )
-from loadpath.algebra.door import close
-from loadpath.algebra.equations import real_roots, roots, solve_linear
-from loadpath.algebra.failure import TIME_LIMIT, AlgebraFailure, time_limit
-from loadpath.algebra.frame import MOST_NODES
+from loadpath.algebra.limits import limit, simplified, single_brackets
 from loadpath.algebra.trees import depends_on, substitute_name
 
 __all__ = [

@@ -15,33 +15,28 @@ from dataclasses import dataclass
 from fractions import Fraction
 from math import comb
 
+from loadpath.algebra.collecting import collected, positive_first
 from loadpath.algebra.failure import NoForm, no_closed_form, remaining, too_large
+from loadpath.algebra.powers import holds, polynomial, split, straight
 from loadpath.algebra.terms import (
     MOST_TERMS,
     Term,
     Terms,
     as_term,
-    collected,
     expanded,
     factor,
-    holds,
     inverse,
     merged,
-    polynomial,
-    positive_first,
     power,
     product,
     read,
-    replaced,
     scaled,
     settled,
     sign,
-    split,
-    straight,
     times,
     write,
 )
-from loadpath.algebra.trees import ZERO, negated
+from loadpath.algebra.trees import ZERO, negated, replaced
 from loadpath.formula.tree import Binary, Bracket, Call, Name, Node, walk
 
 

@@ -3,8 +3,10 @@
 from __future__ import annotations
 
 from fractions import Fraction
+from math import isfinite
 
 from loadpath.algebra import door, failure
+from loadpath.algebra.collecting import collected, positive_first
 from loadpath.algebra.failure import NoForm, time_limit, too_large
 from loadpath.algebra.frame import bounds, finished
 from loadpath.algebra.terms import (
@@ -13,11 +15,9 @@ from loadpath.algebra.terms import (
     Terms,
     as_number,
     as_term,
-    collected,
     factor,
     inverse,
     merged,
-    positive_first,
     power,
     product,
     scaled,
@@ -152,8 +152,9 @@ def real_roots(coefficients: tuple[Fraction, ...], *, seconds: float | None = No
         raise too_large("a polynomial of more than 200 coefficients")
     if len(known) == 1:
         return ()
-    if len(known) == 2:
-        return (float(-known[0] / known[1]),)
     with time_limit(failure.TIME_LIMIT if seconds is None else seconds):
         pairs = [[c.numerator, c.denominator] for c in reversed(known)]
-        return tuple(float(value) for value in door.ask("real_roots", coefficients=pairs))
+        found = tuple(float(value) for value in door.ask("real_roots", coefficients=pairs))
+    if not all(map(isfinite, found)):
+        raise too_large("a root of the polynomial is too large to be held")
+    return found

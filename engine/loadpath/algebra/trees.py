@@ -21,7 +21,8 @@ from loadpath.formula.tree import (
     walk,
 )
 
-ZERO, ONE = Number("0"), Number("1")
+ZERO = Number("0")
+ONE = Number("1")
 LONGEST = 60
 """Characters of a number that can still be typed."""
 ABSOLUTE = ("degC", "degF")
@@ -175,3 +176,9 @@ def negated(node: Node) -> Node:
         case Negative(operand=operand):
             return operand
     return Negative(node)
+
+
+def replaced(node: Node, change: Callable[[Node], Node | None]) -> Node:
+    """Top down: where `change` gives a tree it stands in place of the node."""
+    new = change(node)
+    return new if new is not None else changed_below(node, lambda child: replaced(child, change))

@@ -12,18 +12,18 @@ from __future__ import annotations
 from fractions import Fraction
 from typing import Any
 
+from loadpath.algebra.collecting import positive_first
 from loadpath.algebra.failure import NoForm, remaining, too_large
+from loadpath.algebra.powers import holds
 from loadpath.algebra.terms import (
     Term,
     Terms,
     as_number,
     as_term,
     factor,
-    holds,
     inverse,
     merged,
     numeric,
-    positive_first,
     power,
     read,
     times,

@@ -130,7 +130,8 @@ class Algebra:
     def value(self, e: Any, at: dict[Any, Any]) -> float | None:
         """A real number, or None."""
         try:
-            number = complex(e.subs(at).evalf(20))
+            # put in while evaluating: an exact power of a number put in first may never end
+            number = complex(e.evalf(20, subs=at))
         except (TypeError, ValueError, OverflowError, ZeroDivisionError):
             return None
         small = abs(number.imag) <= 1e-9 * max(1.0, abs(number.real))
@@ -248,11 +249,11 @@ class Algebra:
         s = self.s
         symbols = sorted((e.free_symbols | value.free_symbols) - {x}, key=lambda v: v.name)
         at = {v: s.Rational(23 + 7 * i, 20) for i, v in enumerate(symbols)}
-        known = self.value(value, at)
-        if known is None:
+        known, middle = self.value(value, at), self.value(place, at)
+        if known is None or middle is None:
             return True
-        for beside in (s.Rational(1, 10**6), s.Rational(-1, 10**6)):
-            number = self.value(e.subs(x, place + beside), at)
+        for beside in (1e-6, -1e-6):
+            number = self.value(e, {**at, x: s.Float(middle + beside, 30)})
             if number is not None and abs(number - known) > 1e-3 * max(1.0, abs(known)):
                 return False
         return True

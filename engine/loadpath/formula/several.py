@@ -199,6 +199,8 @@ def _curves(reader: Reader, form: str) -> tuple[tuple[Node, ...], str, Span, Nod
     if reader.word() in RESERVED:
         raise meant.reserved(reader, reader.word())
     name, place = reader.name("the name that runs over the range")
+    if "." in name:
+        raise Mistake("bad-syntax", place, f"`{name}` holds a dot and cannot run over a range", "write `x`")
     _word(reader, "from", "and where the range begins", form)
     low = reader.expression()
     _word(reader, "to", "and where the range ends", form)

@@ -15,6 +15,7 @@ from loadpath.formula.statements import Check, Criterion, Validity
 from loadpath.resolve import expressions
 from loadpath.trace import texts
 from loadpath.trace.model import Step, Trace, Verdict, criterion_kind
+from loadpath.units import Unit
 from loadpath.units.printing import quantity
 
 SCHEMA = "loadpath-trace/1"
@@ -72,6 +73,8 @@ class CriterionRecord:
     satisfied: bool | None
     verdict: str
     conditional_on: list[str]
+    rows: list[dict[str, Any]]
+    """Where it is judged row by row: `row`, `demand`, `limit`, `utilisation`, `satisfied` of each."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -254,7 +257,19 @@ def _criterion(step: Step) -> CriterionRecord:
         verdict.satisfied,
         verdict_words(step),
         list(verdict.conditional_on),
+        [_row(row.label, row.verdict, shown) for row in step.rows if row.verdict is not None],
     )
+
+
+def _row(label: str, verdict: Verdict, unit: Unit) -> dict[str, Any]:
+    demand, limit = (None if si is None else unit.from_si(si) for si in (verdict.demand, verdict.limit))
+    return {
+        "row": label,
+        "demand": demand,
+        "limit": limit,
+        "utilisation": verdict.utilisation,
+        "satisfied": verdict.satisfied,
+    }
 
 
 def finding_record(finding: Finding) -> FindingRecord:
