@@ -67,8 +67,8 @@ OPERATIONS: dict[str, Callable[[float, float], float]] = {
     "+": operator.add, "-": operator.sub, "*": operator.mul, "/": operator.truediv, "^": math.pow,
 }  # fmt: skip
 FUNCTIONS: dict[str, Callable[..., float]] = {
-    "sqrt": math.sqrt, "cbrt": math.cbrt, "exp": math.exp, "ln": math.log, "log10": math.log10, "sin": math.sin,
-    "cos": math.cos, "tan": math.tan, "sec": lambda u: 1 / math.cos(u), "asin": math.asin, "acos": math.acos,
-    "atan": math.atan, "sinh": math.sinh, "cosh": math.cosh, "tanh": math.tanh, "abs": abs, "min": min,
-    "max": max,
+    "sqrt": math.sqrt, "cbrt": math.cbrt, "exp": math.exp, "ln": math.log, "log10": math.log10,
+    "sin": math.sin, "cos": math.cos, "tan": math.tan, "sec": lambda u: 1 / math.cos(u), "asin": math.asin,
+    "acos": math.acos, "atan": math.atan, "sinh": math.sinh, "cosh": math.cosh, "tanh": math.tanh,
+    "abs": abs, "min": min, "max": max,
 }  # fmt: skip

@@ -29,6 +29,7 @@ BLOCK = re.compile(r"^```(\w[^\n`]*)\n(.*?)^```$", re.MULTILINE | re.DOTALL)
 IN_WORDS_ONLY = {
     "unreadable-file": "a file that is not there or not text is no sheet",
     "engine-fault": "no sheet should cause one",
+    "algebra-time-out": "what takes longer than the limit hangs on the machine; tests/algebra cause it",
 }
 """Slugs whose page holds no sheets, and why."""
 

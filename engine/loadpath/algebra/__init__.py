@@ -10,19 +10,7 @@ from loadpath.algebra.door import close
 from loadpath.algebra.equations import real_roots, roots, solve_linear
 from loadpath.algebra.failure import TIME_LIMIT, AlgebraFailure, time_limit
 from loadpath.algebra.frame import MOST_NODES
-from loadpath.algebra.integrals import (
-    AboveZero,
-    antiderivative,
-    breaks_in,
-    definite,
-    denominators,
-    derivative,
-    jumps_in,
-    limit,
-    simplified,
-    single_brackets,
-    vanishes_at_zero,
-)
+from loadpath.algebra.integrals import AboveZero, antiderivative, definite, denominators, vanishes_at_zero
 from loadpath.algebra.limits import limit, simplified, single_brackets
 from loadpath.algebra.trees import depends_on, substitute_name
 

@@ -245,7 +245,7 @@ def power(term: Term, exponent: Fraction) -> Terms:
             raise NoForm
         return (UNIT,) if exponent == 0 else ()
     if exponent.denominator == 1:
-        number = _number_power(term.number, int(exponent))
+        number = number_power(term.number, int(exponent))
         if number is None:
             return (factor(Binary("^", write((term,)), write(numeric(exponent)))),)
         out = Term(number)
@@ -263,7 +263,7 @@ def power(term: Term, exponent: Fraction) -> Terms:
     return (factor(write((term,)), exponent) if inside is None else times(Term(root), inside),)
 
 
-def _number_power(number: Fraction, exponent: int) -> Fraction | None:
+def number_power(number: Fraction, exponent: int) -> Fraction | None:
     """None where the power would be too long a number."""
     bits = number.numerator.bit_length() + number.denominator.bit_length()
     if number not in (1, -1) and bits * abs(exponent) > MOST_BITS:
@@ -279,7 +279,7 @@ def _root(number: Fraction, exponent: Fraction) -> Fraction | None:
     under = _whole_root(number.denominator, exponent.denominator)
     if over is None or under is None:
         return None
-    return _number_power(Fraction(over, under), exponent.numerator)
+    return number_power(Fraction(over, under), exponent.numerator)
 
 
 def _whole_root(value: int, degree: int) -> int | None:

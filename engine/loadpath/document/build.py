@@ -245,8 +245,11 @@ class _Builder:
             for i, f in enumerate(self.listed)
         )
         return Registers(
-            tuple(self._input_entry(b) for b in blocks if isinstance(b, InputRow))
-            + tuple(self._table_entry(b) for b in blocks if isinstance(b, TableBlock) and b.name),
+            tuple(
+                self._input_entry(b) if isinstance(b, InputRow) else self._table_entry(b)
+                for b in blocks
+                if isinstance(b, InputRow) or (isinstance(b, TableBlock) and b.name)
+            ),
             tuple(
                 AssumptionEntry(a.key, a.text, _state(a), a.confirm, tuple(cited[a.key]))
                 for a in front.assumptions
@@ -412,4 +415,5 @@ def _verdict_line(step: Step) -> VerdictLine:
         ratio_text(verdict),
         verdict_words(step, plain_symbol),
         strong,
+        step.rows[step.governing].label if step.governing is not None and step.rows else "",
     )

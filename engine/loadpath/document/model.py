@@ -131,6 +131,8 @@ class ResultRow:
     branches: tuple[BranchRow, ...] = ()
     lines: tuple[Line, ...] = ()
     calls: tuple[CallLine, ...] = ()
+    derived: int | None = None
+    """Which of the sides algebra made of the formula, counted from 0."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -143,7 +145,6 @@ class ColumnRow:
     value: Shown
     closes: bool = True
     calls: tuple[CallLine, ...] = ()
-    lines: tuple[Line, ...] = ()
 
 
 @dataclass(frozen=True, slots=True)
@@ -156,6 +157,8 @@ class ColumnBlock:
     """Formula, then what algebra made of it."""
     rows: tuple[ColumnRow, ...]
     lines: tuple[Line, ...] = ()
+    """What is said beneath: of the whole, then of the rows, each thing once with the rows that it is true
+    of."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -216,6 +219,8 @@ class SolutionRow:
     """Other roots, and why they were not taken."""
     put_back: tuple[PutBackLine, ...] = ()
     """On the last of the steps that share them."""
+    equations_at: Ref | None = None
+    """The first of the steps that share them, whose trail says what they hang on; None on that one itself."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -284,6 +289,8 @@ class JudgedLine:
     ratio: str
     verdict: str
     governs: bool
+    strong: bool
+    """True where it governs or stands against use."""
     calls: tuple[CallLine, ...] = ()
 
 
@@ -400,6 +407,8 @@ class VerdictLine:
     verdict: str
     strong: bool
     """True where it stands against use."""
+    row: str = ""
+    """Label of the row that governs it, where it is judged row by row."""
 
 
 Prose = tuple[str | Shown, ...]

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections import Counter
 from typing import TYPE_CHECKING
 
 from loadpath.document.model import Head, Line, PlotBlock
@@ -35,18 +36,34 @@ def plot_block(writer: StepWriter, step: Step, statement: Plot, head: Head, numb
 
 
 def _picture(drawn: Curves, digits: int) -> Picture:
-    curves = tuple(_drawn(drawn, curve, digits) for curve in drawn.curves)
+    names = _names(drawn)
+    curves = tuple(
+        _drawn(drawn, curve, digits, name) for curve, name in zip(drawn.curves, names, strict=True)
+    )
     return Picture(plain_symbol(drawn.variable), _symbol(drawn.unit), curves, "")
 
 
-def _drawn(drawn: Curves, curve: Curve, digits: int) -> Drawn:
+def _drawn(drawn: Curves, curve: Curve, digits: int, named: tuple[str, str]) -> Drawn:
     points = tuple((drawn.unit.from_si(x), curve.unit.from_si(y)) for x, y in curve.points)
-    name, symbol = _name(curve.tree)
+    name, symbol = named
     return Drawn(name, symbol, _symbol(curve.unit), points, _peaks(drawn, curve, digits))
 
 
+def _names(drawn: Curves) -> list[tuple[str, str]]:
+    """The words beside each curve, and the name they begin with: `M(x)` for `M(x, w_1, P_1)`, whose caption
+    says it in full, where no other curve is the same function."""
+    functions = Counter(c.tree.function for c in drawn.curves if isinstance(c.tree, Call))
+    x = Name(drawn.variable)
+    trees = (
+        Call(c.tree.function, (x,))
+        if isinstance(c.tree, Call) and functions[c.tree.function] == 1 and x in c.tree.arguments
+        else c.tree
+        for c in drawn.curves
+    )
+    return [_name(tree) for tree in trees]
+
+
 def _name(tree: Node) -> tuple[str, str]:
-    """The words beside a curve, and the name they begin with."""
     if isinstance(tree, Call) and all(isinstance(a, Name) for a in tree.arguments):
         arguments = ", ".join(plain_symbol(a.name) for a in tree.arguments if isinstance(a, Name))
         return f"{plain_symbol(tree.function)}({arguments})", tree.function

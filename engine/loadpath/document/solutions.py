@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
 from typing import TYPE_CHECKING
 
 from loadpath.document.model import Head, Line, PutBackLine, Ref, SolutionRow, UnknownRow
@@ -41,6 +42,9 @@ def solution_row(writer: StepWriter, step: Step, statement: Solution, head: Head
             Line(("another root, ", Relation((Name(name), shown(value)), ("=",)), f", is not taken: {why}"))
             for name, value, why in solved.others
         )
+    first_step = _first_of(writer, step, statement)
+    if first_step is not None and set(step.uses) <= {*first_step.uses, first_step.id}:
+        head = replace(head, feeds_from=())
     return SolutionRow(
         head,
         Name(statement.name),
@@ -55,7 +59,14 @@ def solution_row(writer: StepWriter, step: Step, statement: Solution, head: Head
         tuple(_put_back(each, writer.trace.sheet.front.digits) for each in solved.put_back)
         if solved and last
         else (),
+        Ref(first_step.number) if first_step is not None else None,
     )
+
+
+def _first_of(writer: StepWriter, step: Step, statement: Solution) -> Step | None:
+    """The first of the steps that share the equations; None for that one itself."""
+    first = writer.trace.by_name.get(statement.together.sought[0].name)
+    return None if first is None or first.number == step.number else first
 
 
 def _bounds(statement: Solution) -> tuple[Relation, ...]:

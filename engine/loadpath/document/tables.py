@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import math
+from collections import defaultdict
 from typing import TYPE_CHECKING
 
 from loadpath.document.model import (
@@ -17,7 +19,7 @@ from loadpath.document.model import (
 from loadpath.formula.names import plain_symbol
 from loadpath.formula.statements import Column, Definition, Plot, Table, Tabulate
 from loadpath.formula.tree import Name, Node, Shown
-from loadpath.trace import Step, texts
+from loadpath.trace import Curve, Step, texts
 from loadpath.trace.digits import exact_digits, ratio_text
 from loadpath.trace.file import verdict_words_of
 from loadpath.units import Unit
@@ -25,6 +27,11 @@ from loadpath.units.printing import plain, unit_symbol
 
 if TYPE_CHECKING:
     from loadpath.document.steps import StepWriter
+
+NOTHING = 1e-12
+"""A value below this share of the largest of its curve is zero."""
+FEW = 2
+"""So many rows are left out by name, where something is said of all others."""
 
 
 def table_block(writer: StepWriter, step: Step, statement: Table, head: Head, index: int) -> TableBlock:
@@ -89,7 +96,7 @@ def column_block(writer: StepWriter, step: Step, statement: Definition, head: He
     if working is not None and working.typed is not None:
         sides, lines = (working.typed, working.tree), writer.lines(working)
     rows = tuple(_row(writer, step, i) for i in range(len(step.rows)))
-    return ColumnBlock(head, Name(statement.name), sides, rows, lines)
+    return ColumnBlock(head, Name(statement.name), sides, rows, (*lines, *_said_of_rows(writer, step)))
 
 
 def _row(writer: StepWriter, step: Step, index: int) -> ColumnRow:
@@ -97,14 +104,29 @@ def _row(writer: StepWriter, step: Step, index: int) -> ColumnRow:
     shown = texts.row_shown(step, index)
     assert shown is not None and row.working is not None
     sides = (put.tree,) if put is not None and not isinstance(put.tree, Shown) else ()
-    return ColumnRow(
-        row.label,
-        sides,
-        shown,
-        put.closes if put else True,
-        writer.calls(row.working),
-        (*writer.lines(row.working), *writer.further_digits(put)),
-    )
+    return ColumnRow(row.label, sides, shown, put.closes if put else True, writer.calls(row.working))
+
+
+def _said_of_rows(writer: StepWriter, step: Step) -> tuple[Line, ...]:
+    """What is said beneath the rows, each thing once: `web, doubler: min: governed by h`."""
+    said: dict[Line, list[int]] = defaultdict(list)
+    for i, row in enumerate(step.rows):
+        put = texts.row_substitution(writer.trace, step, i)
+        if row.working is not None:
+            for line in dict.fromkeys((*writer.lines(row.working), *writer.further_digits(put))):
+                said[line].append(i)
+    labels = [row.label for row in step.rows]
+    return tuple(Line((_rows(labels, of), *line.parts)) for line, of in said.items())
+
+
+def _rows(labels: list[str], of: list[int]) -> str:
+    """The rows that something is said of, in words."""
+    if len(of) == len(labels) > 1:
+        return "every row: "
+    if len(of) > FEW and len(labels) - len(of) <= FEW:
+        others = (label for i, label in enumerate(labels) if i not in of)
+        return f"every row but {', '.join(others)}: "
+    return f"row{'s' if len(of) > 1 else ''} {', '.join(labels[i] for i in of)}: "
 
 
 def judged_lines(writer: StepWriter, step: Step) -> tuple[JudgedLine, ...]:
@@ -121,6 +143,7 @@ def judged_lines(writer: StepWriter, step: Step) -> tuple[JudgedLine, ...]:
                 ratio_text(row.verdict),
                 verdict_words_of(step, row.verdict, plain_symbol),
                 i == step.governing,
+                i == step.governing or row.verdict.satisfied is not True or row.verdict.one_sided,
                 writer.calls(row.working) if row.working else (),
             )
         )
@@ -143,9 +166,16 @@ def value_table(writer: StepWriter, step: Step, statement: Tabulate, head: Head)
     for i in range(len(drawn.curves[0].points)):
         x = drawn.unit.from_si(drawn.curves[0].points[i][0])
         cells = [Shown(plain(x, min(exact_digits(x, digits), digits)), "")]
-        cells += [Shown(plain(c.unit.from_si(c.points[i][1]), digits), "") for c in drawn.curves]
+        cells += [Shown(plain(_without_crumbs(c, i), digits), "") for c in drawn.curves]
         rows.append(tuple(cells))
     return TableBlock(head, "", "", (), (), body=tuple(rows), title=title, heads=tuple(heads))
+
+
+def _without_crumbs(curve: Curve, index: int) -> float:
+    """A value of a curve in its unit; what rounding left of zero is zero."""
+    y = curve.points[index][1]
+    size = max((abs(each) for _, each in curve.points if math.isfinite(each)), default=0.0)
+    return 0.0 if abs(y) <= NOTHING * size else curve.unit.from_si(y)
 
 
 def range_line(statement: Plot | Tabulate) -> Line:

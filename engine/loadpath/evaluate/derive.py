@@ -28,6 +28,8 @@ WRITTEN_OUT = 10
 AGREES = 1e-6
 """A closed form and its quadrature agree within this much."""
 
+SAMPLES = 200
+"""Places between the bounds at which a denominator is looked at."""
 GROWS = 5.0
 """What grows so much at each thousandth of the way has no limit."""
 
@@ -119,7 +121,7 @@ class Deriver:
                 "give bounds, so that it is worked numerically: `integral(f, t, 0, x)`",
             )  # fmt: skip
         at_zero = Relation((Name(x), Number("0")), ("=",))
-        vanishes = algebra.vanishes_at_zero(tree, x)
+        vanishes = algebra.vanishes_at_zero(tree, x, self._above_zero)
         before = (
             "antiderivative taken: the one that is 0 at"
             if vanishes
@@ -137,22 +139,38 @@ class Deriver:
                 raise
             found = None
         tree = None if found is None else self._fitting(call, found, types)
-        if tree is None or not self._agrees(call, tree):
+        if tree is None or not self._agrees(call, f, tree):
             return call
         return tree
 
-    def _agrees(self, call: Call, tree: Node) -> bool:
-        """A closed form is believed where its value and that of a quadrature agree."""
+    def _agrees(self, call: Call, f: Node, tree: Node) -> bool:
+        """A closed form is believed where its value and that of a quadrature agree; where it hangs on what is
+        not known yet, where nothing it divides by passes through 0 between the bounds."""
         if not self.known:
-            return True
+            return self._never_divides_by_zero(call, f)
         try:
             closed = self.compiler.compile_tree(tree)(self.values, _NO_PARAMETERS)
             numeric = integrate(self.compiler, call, self.values, _NO_PARAMETERS)
-        except KeyError:
-            return True  # hangs on a name that lives only around it
+        except KeyError:  # hangs on an unknown, or on a name that lives only around it
+            return self._never_divides_by_zero(call, f)
         except (ArithmeticError, ValueError, Failure):
             return False
         return math.isclose(closed, numeric.value, rel_tol=AGREES, abs_tol=10 * numeric.error)
+
+    def _never_divides_by_zero(self, call: Call, f: Node) -> bool:
+        """True where the denominators keep their sign between the bounds; False too where that is not known."""
+        x, compiler = _second(call), self.compiler
+        for denominator in algebra.denominators(f, x):
+            work = compiler.compile_tree(denominator, frozenset([x]))
+            try:
+                a, b = (compiler.compile_tree(n)(self.values, _NO_PARAMETERS) for n in call.arguments[2:])
+                places = [a + (b - a) * i / SAMPLES for i in range(SAMPLES + 1)]
+                signs = {math.copysign(1, work(self.values, {x: at})) for at in places}
+            except (ArithmeticError, ValueError, KeyError):
+                return False
+            if len(signs) > 1:
+                return False
+        return True
 
     def _derivative(self, call: Call, f: Node, types: dict[str, Type]) -> Node:
         x = _second(call)
@@ -211,9 +229,12 @@ class Deriver:
     def _above_zero(self, inner: Node) -> bool:
         """True where the inside of a bracket at x = 0 is known to be above 0."""
         try:
-            return bool(self.compiler.compile_tree(inner)(self.values, _NO_PARAMETERS) > 0)
+            above = bool(self.compiler.compile_tree(inner)(self.values, _NO_PARAMETERS) > 0)
         except (ArithmeticError, ValueError, KeyError):
             return False
+        if above:
+            self.asides.append(Aside("with", Relation((inner, Number("0")), (">",)), ""))
+        return above
 
     def _fitting(self, call: Call, tree: Node, types: dict[str, Type]) -> Node | None:
         """The tree, where it has the dimension that the call has; the check is that of any typed formula."""

@@ -7,6 +7,7 @@ import base64
 import math
 import re
 import unicodedata
+from collections.abc import Sequence
 from functools import lru_cache
 from typing import Any
 
@@ -18,8 +19,14 @@ from loadpath.formula.names import symbol
 from loadpath.formula.tree import Name, Node, Shown
 from loadpath.render.math import COLUMN, PAGE, equations, flow, mathml, widest
 from loadpath.render.templates import environment, folder, without_turns
-from loadpath.units.printing import NARROW, THIN, quantity
+from loadpath.units.printing import MINUS, NARROW, THIN, quantity
 
+POINT, GAP = 0.5, 0.34
+"""Width of a decimal point and of the gap between groups of digits, as parts of a digit's width."""
+TALL = 8
+"""A table of more rows than this may be broken between two sheets of paper."""
+ROW_WIDTHS = {"row": 24.0, "judged": 17.0}
+"""Width in em of formulas that stand in the rows of a table."""
 CELL = 17
 """Characters that a cell of the printed title block surely holds on one line."""
 
@@ -41,6 +48,7 @@ def render(document: Document) -> str:
             figure=_figure,
             kind=lambda block: type(block).__name__,
             contents=_contents(document.blocks),
+            tall=TALL,
         )
     )
     return without_turns(str(page))
@@ -53,6 +61,7 @@ def _environment() -> Any:
             "math": lambda node: Markup(mathml(node)),
             "flat": lambda node: Markup(mathml(node, flat=True)),
             "flow": _flow,
+            "in_row": _in_row,
             "equations": _equations,
             "are_wide": _are_wide,
             "name_math": lambda name: _flow(Name(name)),
@@ -63,6 +72,7 @@ def _environment() -> Any:
             "names_in": names_in,
             "excerpt": excerpt,
             "own_name": lambda name: name.rpartition(".")[2],
+            "hung": hung,
             "alt": _alt,
             "drawn": _drawn,
         }
@@ -158,6 +168,23 @@ def printed(value: Shown | str) -> str:
     return f"“{value.number}”" if value.word else quantity(value.number, value.unit).replace(THIN, NARROW)
 
 
+def hung(column: Sequence[Shown | None]) -> list[str]:
+    """For each number of a column the room to leave on its right, in digits, so that decimal points stand in
+    line; "" where none is left, and where a number has a power of ten or is none."""
+    tails = [_tail(value) for value in column]
+    most = max((tail for tail in tails if tail is not None), default=0.0)
+    return ["" if tail is None or tail == most else f"{most - tail:g}" for tail in tails]
+
+
+def _tail(value: Shown | None) -> float | None:
+    """Width of what stands behind the decimal point and of the point itself, in digits."""
+    text = printed(value) if value is not None and not value.word else ""
+    if not re.fullmatch(f"{MINUS}?[0-9.{NARROW}]+", text):
+        return None
+    whole, point, part = text.partition(".")
+    return len(part.replace(NARROW, "")) + GAP * part.count(NARROW) + POINT * len(point)
+
+
 def symbol_html(name: str) -> Markup:
     """A name in running text: σ with its subscript."""
     s = symbol(name)
@@ -191,6 +218,11 @@ def names_in(words: str) -> Markup:
 
 def _flow(node: Node, sign: str = "", wide: bool = False) -> Markup:
     return Markup("<wbr>").join(Markup(piece) for piece in flow(node, sign, most=PAGE if wide else COLUMN))
+
+
+def _in_row(node: Node, sign: str = "", kind: str = "row") -> Markup:
+    """A formula in a row of a table, where there is less room."""
+    return Markup("<wbr>").join(Markup(piece) for piece in flow(node, sign, most=ROW_WIDTHS[kind]))
 
 
 def _equations(nodes: tuple[Node, ...]) -> list[tuple[Markup, Markup]]:

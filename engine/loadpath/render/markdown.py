@@ -30,6 +30,8 @@ from loadpath.render.math import latex, latex_equations, latex_lines
 from loadpath.render.templates import environment, without_turns
 from loadpath.units.printing import quantity
 
+BREAK = r"\cr"
+"""Between two lines of math."""
 ENDINGS = {"image/png": "png", "image/jpeg": "jpg", "image/svg+xml": "svg"}
 
 
@@ -63,7 +65,7 @@ def render(document: Document, stem: str) -> tuple[str, dict[str, bytes]]:
 @lru_cache(maxsize=1)
 def _environment() -> Any:
     filters: dict[str, Callable[..., Any]] = {
-        "display": lambda node: Markup(f"$$\n{latex_equations([node])}\n$$"),
+        "display": _display,
         "equation": lambda name, sides: Markup(f"$$\n{latex_lines(name, sides)}\n$$"),
         "inline": _inline_math,
         "shown": _shown,
@@ -100,6 +102,12 @@ def _shown(value: Shown | str) -> Markup:
     if isinstance(value, str):
         return escape(value)
     return escape(f"“{value.number}”" if value.word else quantity(value.number, value.unit))
+
+
+def _display(node: Node) -> Markup:
+    """A formula on its own, broken where it is longer than a line."""
+    lines = latex_equations([node])
+    return Markup(f"$$\n{lines if BREAK in lines else latex(node)}\n$$")
 
 
 def _inline_math(node: Node) -> Markup:
