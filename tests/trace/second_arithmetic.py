@@ -27,7 +27,16 @@ OWN_FACTORS = {
     "Btu": 1055.05585262, "US_gal": 231 * 0.0254**3, "atm": 101325.0, "degF": 5 / 9,
 }  # fmt: skip
 
-LOOKS = ("integral", "sum", "largest", "smallest", "where_largest", "where_smallest", "limit_of", "derivative")
+LOOKS = (
+    "integral",
+    "sum",
+    "largest",
+    "smallest",
+    "where_largest",
+    "where_smallest",
+    "limit_of",
+    "derivative",
+)
 """Functions whose first argument is worked again and again."""
 
 
@@ -158,7 +167,8 @@ class Worker(Reader):
     def _holds(self, condition: str, bound: dict[str, float]) -> bool:
         """`and` binds tighter than `or`."""
         return any(
-            all(self._relation(part, bound) for part in group.split(" and ")) for group in condition.split(" or ")
+            all(self._relation(part, bound) for part in group.split(" and "))
+            for group in condition.split(" or ")
         )
 
     def _relation(self, text: str, bound: dict[str, float]) -> bool:
@@ -301,6 +311,7 @@ def _si(number: float, unit: str) -> Amount:
 
 
 # --- numerical methods, plain and slow ----------------------------------------------------------------------
+
 
 def quadrature(f: Callable[[float], float], low: float, high: float) -> float:
     """Gauss and Kronrod's rule on ever smaller pieces, by scipy (QUADPACK)."""

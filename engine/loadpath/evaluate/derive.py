@@ -82,7 +82,7 @@ class Deriver:
             try:
                 found = self._worked(node, types)
             except AlgebraFailure as trouble:
-                message = trouble.message
+                message = f"`{short(node)}`: {trouble.message}"
                 raise Failure(trouble.slug, lambda show: message, node.at, trouble.help) from None
             if sum(1 for _ in walk(found)) > MOST_NODES:
                 raise too_large(node.at, MOST_NODES)

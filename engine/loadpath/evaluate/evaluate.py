@@ -7,12 +7,14 @@ from collections.abc import Mapping
 from contextlib import AbstractContextManager, nullcontext
 from dataclasses import dataclass, field, replace
 from math import inf
+from time import monotonic
 from typing import TYPE_CHECKING, Any
 
 from loadpath.evaluate.curves import draw
 from loadpath.evaluate.explain import run
 from loadpath.evaluate.failure import Failure, shower
 from loadpath.evaluate.numbers import ROW
+from loadpath.evaluate.limits import ALGEBRA_IN_ALL, STEP_SECONDS
 from loadpath.evaluate.plan import Plan, Planned, defined_by, guarded_by, make_plan, sides_of
 from loadpath.evaluate.symbolic import is_derived
 from loadpath.evaluate.verdicts import both_sides, judge, worst
@@ -45,8 +47,6 @@ if TYPE_CHECKING:
     from loadpath.evaluate.solving import Solutions
 
 _NO_PARAMETERS: dict[str, Any] = {}
-ALGEBRA_IN_ALL = 120.0
-"""Seconds for a sheet that needs algebra."""
 
 
 def evaluate(resolved: Resolved) -> Trace:
@@ -81,6 +81,7 @@ class _Run:
         with self._algebra_limit():
             for planned in self.plan.steps:
                 self.steps.append(self._step(planned))
+        self.plan.compiler.deadline = inf
         self._bring_in_ranges()
         self._bring_in_digits()
         found = self.found
@@ -116,6 +117,7 @@ class _Run:
             blocked = next((self.broken[n] for n in entry.uses if n in self.broken), 0)
         if blocked:
             return self._not_computed(planned, blocked)
+        self.plan.compiler.deadline = monotonic() + STEP_SECONDS
         try:
             return self._worked(planned)
         except Failure as failure:

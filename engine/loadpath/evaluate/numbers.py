@@ -71,6 +71,8 @@ class Compiler:
         self.columns = columns or {}
         self.two_way = two_way or {}
         self._bodies: dict[str, Work] = {}
+        self.deadline = math.inf
+        """Until when the step at hand may take (`time.monotonic`)."""
         self._derived: set[str] = set()
         """Functions whose bodies are derived while the sheet is worked."""
 

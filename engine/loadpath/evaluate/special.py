@@ -6,10 +6,12 @@ import math
 from collections.abc import Callable
 from dataclasses import dataclass
 from itertools import pairwise
+from time import monotonic
 from typing import TYPE_CHECKING, Any
 
 from loadpath.evaluate.failure import Failure, Show, short
 from loadpath.evaluate.inline import inlined
+from loadpath.evaluate.limits import STEP_SECONDS
 from loadpath.evaluate.numbers import ROW, Compiler, Values, Work
 from loadpath.formula.binding import free_names, own_name
 from loadpath.formula.tree import Call, Name, Node, span_of
@@ -207,8 +209,19 @@ class Over:
     value: Callable[[Node], float]
 
 
+def check_time(compiler: Compiler, node: Call) -> None:
+    """Raises `Failure` where the step at hand has taken too long."""
+    if monotonic() > compiler.deadline:
+        raise Failure(
+            "algebra-time-out",
+            lambda show: f"`{short(node)}` was stopped: the step took more than {STEP_SECONDS:.0f} s",
+            node.at, "work it once, give it a name, and use that; or take fewer places",
+        )  # fmt: skip
+
+
 def over(compiler: Compiler, node: Call, e: Values, p: Values) -> Over:
     """The expression of a call such as `largest(f, x, a, b)`. Raises `Failure` for bounds that are none."""
+    check_time(compiler, node)
     own = own_name(node)
     assert own is not None
     low, high = (compiler.compile_tree(a, frozenset(p))(e, p) for a in node.arguments[2:])
@@ -313,6 +326,7 @@ def _sum(compiler: Compiler, node: Call, parameters: frozenset[str]) -> Work:
     bounds = [compiler.compile_tree(a, parameters) for a in node.arguments[2:]]
 
     def total(e: Values, p: Values) -> float:
+        check_time(compiler, node)
         low, high = whole_bounds(node, *(bound(e, p) for bound in bounds))
         return math.fsum(work(e, {**p, name: float(k)}) for k in range(low, high + 1))
 
