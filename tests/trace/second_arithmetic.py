@@ -1,7 +1,7 @@
 """A second arithmetic for whole formulas: it reads their plain text and works it in SI with full values.
 
-It shares nothing with the engine but the text: its own reader (that of the pocket calculator), its own factors of
-units, scipy's QUADPACK for integrals, differences for derivatives, a fine walk for extremes. Slow and plain.
+It shares nothing with the engine but the text: its own reader (that of the pocket calculator), its own
+factors of units, scipy's QUADPACK for integrals, differences for derivatives, a fine walk for extremes.
 """
 
 from __future__ import annotations
@@ -17,7 +17,7 @@ from itertools import pairwise
 import numpy as np
 from pocket_calculator import _NUMBER, _UNIT, FUNCTIONS, Amount, Reader, unit_amount
 
-# source: NIST SP 811 (2008), appendix B (from memory): the definitions of what is no power of ten of an SI unit
+# source: NIST SP 811 (2008), appendix B (from memory): the definitions of units that no power of ten gives
 OWN_FACTORS = {
     "deg": math.pi / 180, "rpm": 2 * math.pi / 60, "min": 60.0, "h": 3600.0, "day": 86400.0,
     "in": 0.0254, "ft": 0.3048, "yd": 0.9144, "mile": 1609.344,
@@ -336,7 +336,7 @@ def difference(f: Callable[[float], float], at: float) -> float:
 
 
 def walked(f: Callable[[float], float], low: float, high: float, sign: float) -> tuple[float, float]:
-    """Place and value of the largest (sign 1) or smallest (-1) of f on a fine walk, made finer at its best."""
+    """Place and value of the largest (sign 1) or smallest (-1) of f: a walk, made finer at its best."""
     a, b, place, pieces = low, high, low, 200
     for _ in range(6):
         step = (b - a) / pieces

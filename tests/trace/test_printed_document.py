@@ -1,7 +1,7 @@
-"""What stands in a document, worked with a pocket calculator: every printed equation, row by row and beneath steps.
+"""What stands in a document, worked with a pocket calculator: every printed equation, beneath steps too.
 
-Reads the document model, which all formats are drawn from: substitutions, sums written out, calls, criteria row by
-row, cells, equations with the solution put back, the places that `largest` looked at, tables of values.
+Reads the document model, which all formats are drawn from: substitutions, sums written out, calls, criteria
+row by row, cells, equations with the solution put back, the places that `largest` looked at, tables of values.
 """
 
 from __future__ import annotations
@@ -15,7 +15,7 @@ from pathlib import Path
 import pytest
 from pocket_calculator import FUNCTIONS, DoesNotCancel, work
 from second_arithmetic import Known, Worker, factor, told
-from test_second_arithmetic import evaluated, known_of, trace_of
+from test_second_arithmetic import known_of, trace_of
 
 from loadpath.document import Document, build
 from loadpath.document.model import (
@@ -24,16 +24,13 @@ from loadpath.document.model import (
     CriterionBox,
     JudgedRow,
     Line,
-    PutBackLine,
     ResultRow,
     SolutionRow,
     TableBlock,
 )
 from loadpath.formula.canonical import text
-from loadpath.formula.names import plain_symbol
 from loadpath.formula.statements import Column, Tabulate
 from loadpath.formula.tree import Call, Cases, Logic, Name, Node, Relation, Shown, walk
-from loadpath.trace import Trace
 from loadpath.units.printing import read_plain
 
 ROOT = Path(__file__).parents[2]
@@ -129,6 +126,11 @@ def last_digit(number: str) -> float:
     return float(10.0 ** (int(ten or 0) - decimals))
 
 
+def significant(number: str) -> int:
+    """How many digits are printed, leading zeros left out."""
+    return len(number.partition("e")[0].replace(".", "").lstrip("-0"))
+
+
 def trouble(of: Printed) -> str:
     """What a pocket calculator has against a printed equation; "" where it lands within the last digit."""
     said = f"{of.where}: {text(of.formula)} = {text(of.value)}"
@@ -197,21 +199,19 @@ def spots(lines: tuple[Line, ...]) -> list[tuple[str, Node, Shown]]:
     return found
 
 
-def trouble_with_spot(at: Node, value: Shown, known: Known, size: float) -> str:
+def trouble_with_spot(at: Node, value: Shown, known: Known, size: float, digits: int) -> str:
     """The expression at the printed place, and half a digit beside it, must come to the printed value."""
     place = next(n for n in walk(at) if isinstance(n, Shown))
-    half = max(0.5 * last_digit(place.number), 1e-9 * abs(read_plain(place.number)), 1e-12)
-    unit = value.unit
+    number = read_plain(place.number)
+    # fewer digits than the sheet asks for are all that the place has
+    half = 0.5 * last_digit(place.number) if significant(place.number) >= digits else 0.0
+    tiny = 1e-9 * abs(number) + 1e-12
     values = []
-    for move in (-half, 0.0, half):
-        moved = (
-            f"({read_plain(place.number) + move!r} {place.unit})"
-            if place.unit
-            else f"({read_plain(place.number) + move!r})"
-        )
+    for move in (-half, -tiny, 0.0, tiny, half):
+        moved = f"({number + move!r} {place.unit})" if place.unit else f"({number + move!r})"
         formula = text(at).replace(text(place), moved)
         with told(formula):
-            values.append(Worker(formula, known).run() / factor(unit))
+            values.append(Worker(formula, known).run() / factor(value.unit))
     rough = 1.5 * last_digit(value.number) + 1e-12 * size
     if min(values) - rough <= read_plain(value.number) <= max(values) + rough:
         return ""
@@ -221,10 +221,13 @@ def trouble_with_spot(at: Node, value: Shown, known: Known, size: float) -> str:
 @pytest.mark.parametrize("path", SHEETS, ids=lambda p: p.name.removesuffix(".sheet.md"))
 def test_each_place_looked_at_has_its_value(path: Path) -> None:
     known, said = known_of(trace_of(path)), []
+    digits = trace_of(path).sheet.front.digits
     for where, lines, value, formula in lines_beneath(document_of(path)):
         found = spots(lines)
         size = max((abs(read_plain(v.number)) for _, _, v in found), default=0.0)
-        said += [f"{where}: {t}" for _, at, v in found if (t := trouble_with_spot(at, v, known, size))]
+        said += [
+            f"{where}: {t}" for _, at, v in found if (t := trouble_with_spot(at, v, known, size, digits))
+        ]
         if (
             found
             and value is not None

@@ -1,7 +1,7 @@
-"""Every formula of every sheet, typed and derived, worked again by the second arithmetic of second_arithmetic.py.
+"""Every formula of every sheet, typed and derived, worked again by second_arithmetic.py.
 
-The engine's algebra, its columns, its looking over a range and its solutions are held against plain numerical work
-on the text of the formulas.
+The engine's algebra, its columns, its looking over a range and its solutions are held against plain
+numerical work on the text of the formulas.
 """
 
 from __future__ import annotations
@@ -13,7 +13,7 @@ from functools import cache
 from pathlib import Path
 
 import pytest
-from second_arithmetic import Known, Worker, factor, quadrature, told
+from second_arithmetic import Known, Worker, told
 
 import loadpath
 from loadpath.formula.canonical import text
@@ -160,3 +160,70 @@ def test_every_formula_typed_and_derived(path: Path) -> None:
     trace = trace_of(path)
     known = known_of(trace)
     assert [said for claim in claims(trace) if (said := trouble(claim, known))] == []
+
+
+# --- curves -------------------------------------------------------------------------------------------------
+
+
+@pytest.mark.parametrize("path", SHEETS, ids=lambda p: p.name.removesuffix(".sheet.md"))
+def test_points_of_curves(path: Path) -> None:
+    """Every ninth point lies on the curve; jumps are drawn with both sides."""
+    trace = trace_of(path)
+    known, said = known_of(trace), []
+    for step in trace:
+        for curve in step.curves.curves if step.curves else ():
+            worker, name = Worker(text(curve.tree), known), step.curves.variable  # type: ignore[union-attr]
+            size = max(abs(y) for _, y in curve.points if not math.isnan(y))
+            for x, y in curve.points[::9]:
+                near = [worker.run({name: x * (1 + e) + e}) for e in (-1e-9, 0.0, 1e-9)]
+                if not min(near) - 1e-6 * size <= y <= max(near) + 1e-6 * size:
+                    said.append(f"{step.id}: {text(curve.tree)} at {x} is {near[1]}, drawn at {y}")
+    assert said == []
+
+
+# --- the second arithmetic itself ---------------------------------------------------------------------------
+
+KNOWN = Known(
+    values={"a": 2.0, "L": 3.0, "pick": "web"},
+    columns={"t.b": (1.0, 2.0, 4.0), "t.h": (10.0, 20.0, 40.0)},
+    rows={"t.b": ("top", "web", "foot"), "t.h": ("top", "web", "foot")},
+    functions={
+        "f": (("x",), "a*x^2"),
+        "g": (("x",), "cases x when x < 1; f(x) when x <= 2 and a > 1; 9 otherwise"),
+    },
+    two_way={"w": ([1.0, 2.0], [10.0, 20.0], [[1.0, 2.0], [3.0, 4.0]])},
+)
+
+
+@pytest.mark.parametrize(
+    ("formula", "value"),
+    [
+        ("a*L - 2 mm / (4 mm)", 5.5),
+        ("<L - a>^2 + <a - L>^0", 1.0),
+        ("6 ft 6 in - 78 in + a", 2.0),
+        ("20 degC - 0", 293.15),
+        ("sum(t.b*t.h) + max(t.b) + count(t.b)", 10 + 40 + 160 + 4 + 3),
+        ('t.b at "foot" + t.h at pick', 24.0),
+        ("min(a, L)*2", 4.0),
+        ("integral(f(x), x, 0, L)", 18.0),
+        ("largest(x*(L - x), x, 0, L) + where_largest(x*(L - x), x, 0, L)", 2.25 + 1.5),
+        ("smallest(-f(x), x, 0, L)", -18.0),
+        ("sum(k^2, k, 1, 4)", 30.0),
+        ("limit_of(sin(x)/x, x, 0)", 1.0),
+        ("interp(3, t.b, t.h) + lookup(3.9, t.b, t.h)", 30.0 + 20.0),
+        ("interp(1.5, 15, w)", 2.5),
+        ("g(0.5) + g(1.5) + g(7)", 0.5 + 4.5 + 9),
+    ],
+)
+def test_the_second_arithmetic_itself(formula: str, value: float) -> None:
+    assert Worker(formula, KNOWN).run() == pytest.approx(value, rel=1e-7)
+
+
+def test_a_wrong_value_or_a_wrong_derived_expression_is_noticed() -> None:
+    trace = evaluated("    L = 3 m -- l\n    f(x [m]) = integral(x^2, x)\n    y = f(L)")
+    known = known_of(trace)
+    (claim,) = [c for c in claims(trace) if c.where == "y"]
+    assert trouble(claim, known) == ""
+    assert "the second arithmetic says" in trouble(Claim("y", claim.tree, claim.value * (1 + 1e-8)), known)
+    known.functions["f"] = ("x",), "x^3/3.001"
+    assert "the second arithmetic says" in trouble(claim, known)

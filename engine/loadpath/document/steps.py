@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections import defaultdict
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 from textwrap import dedent
 
 from loadpath.document.model import (
@@ -25,6 +25,7 @@ from loadpath.document.model import (
 from loadpath.document.solutions import solution_row, unknown_row
 from loadpath.document.tables import column_block, judged_lines, table_block, value_table
 from loadpath.findings import Finding
+from loadpath.formula.binding import own_name
 from loadpath.formula.names import plain_symbol
 from loadpath.formula.statements import (
     Check,
@@ -267,7 +268,12 @@ class StepWriter:
         """A call that looks at a whole expression or column: its value, and what was looked at."""
         put = texts.call_substitution(self.trace, called)
         sides = (put.tree,) if put else ()
-        return CallLine(called.call, sides, shown(called.value), True, self.lines(called.working))
+        call = called.call
+        if own_name(call) is not None:  # the range as it stands here
+            scope = texts.scope_of(self.trace, outer)
+            bounds = tuple(substitute(a, scope, outer.calls) for a in call.arguments[2:])
+            call = replace(call, arguments=(*call.arguments[:2], *bounds))
+        return CallLine(call, sides, shown(called.value), True, self.lines(called.working))
 
     def _function(self, step: Step, statement: FunctionDefinition, head: Head) -> FunctionRow:
         name = Call(statement.name, tuple(Name(p.name) for p in statement.parameters))
@@ -280,7 +286,7 @@ class StepWriter:
             units += [", ", Name(n), words]
         body = None if isinstance(statement.body, Cases) else statement.body
         working = step.working
-        derived = working.tree if working and not isinstance(working.tree, Cases) else None
+        derived = None if working is None or isinstance(working.tree, Cases) else _derived(step)
         value = working.tree if working and body is None else statement.body
         branches = self.branches(statement, value, None)
         lines = self.lines(working) if working else ()

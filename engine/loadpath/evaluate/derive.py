@@ -40,7 +40,8 @@ _NO_PARAMETERS: dict[str, Any] = {}
 class Derived:
     """An expression with what algebra made of it."""
 
-    typed: Node
+    typed: Node | None
+    """None where algebra changed nothing."""
     tree: Node
     asides: tuple[Aside, ...] = ()
     """Which antiderivative was taken, which jump was left out."""
@@ -69,7 +70,7 @@ class Deriver:
                 new: Node = replace(tree, branches=branches)
             else:
                 new = self._one(tree, types)
-        return Derived(tree, new, tuple(dict.fromkeys(self.asides)))
+        return Derived(None if new == tree else tree, new, tuple(dict.fromkeys(self.asides)))
 
     def _one(self, tree: Node, types: dict[str, Type]) -> Node:
         made: set[int] = set()
@@ -140,6 +141,8 @@ class Deriver:
             found = None
         tree = None if found is None else self._fitting(call, found, types)
         if tree is None or not self._agrees(call, f, tree):
+            if not self.known:
+                self.asides.append(Aside("", call, "has no closed form: worked numerically, where it is called"))
             return call
         return tree
 

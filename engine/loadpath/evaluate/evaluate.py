@@ -13,8 +13,8 @@ from typing import TYPE_CHECKING, Any
 from loadpath.evaluate.curves import draw
 from loadpath.evaluate.explain import run
 from loadpath.evaluate.failure import Failure, shower
-from loadpath.evaluate.numbers import ROW
 from loadpath.evaluate.limits import ALGEBRA_IN_ALL, STEP_SECONDS
+from loadpath.evaluate.numbers import ROW
 from loadpath.evaluate.plan import Plan, Planned, defined_by, guarded_by, make_plan, sides_of
 from loadpath.evaluate.symbolic import is_derived
 from loadpath.evaluate.verdicts import both_sides, judge, worst

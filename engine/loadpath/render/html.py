@@ -25,8 +25,8 @@ POINT, GAP = 0.5, 0.34
 """Width of a decimal point and of the gap between groups of digits, as parts of a digit's width."""
 TALL = 8
 """A table of more rows than this may be broken between two sheets of paper."""
-ROW_WIDTHS = {"row": 24.0, "judged": 17.0}
-"""Width in em of formulas that stand in the rows of a table."""
+ROW = 24.0
+"""Width in em of a formula in a row of a table."""
 CELL = 17
 """Characters that a cell of the printed title block surely holds on one line."""
 
@@ -217,12 +217,12 @@ def names_in(words: str) -> Markup:
 
 
 def _flow(node: Node, sign: str = "", wide: bool = False) -> Markup:
-    return Markup("<wbr>").join(Markup(piece) for piece in flow(node, sign, most=PAGE if wide else COLUMN))
+    return _joined(flow(node, sign, most=PAGE if wide else COLUMN))
 
 
-def _in_row(node: Node, sign: str = "", kind: str = "row") -> Markup:
+def _in_row(node: Node, sign: str = "", flat: bool = False) -> Markup:
     """A formula in a row of a table, where there is less room."""
-    return Markup("<wbr>").join(Markup(piece) for piece in flow(node, sign, most=ROW_WIDTHS[kind]))
+    return _joined(flow(node, sign, most=ROW, flat=flat))
 
 
 def _equations(nodes: tuple[Node, ...]) -> list[tuple[Markup, Markup]]:
