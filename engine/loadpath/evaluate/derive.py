@@ -142,7 +142,8 @@ class Deriver:
         tree = None if found is None else self._fitting(call, found, types)
         if tree is None or not self._agrees(call, f, tree):
             if not self.known:
-                self.asides.append(Aside("", call, "has no closed form: worked numerically, where it is called"))
+                said = "has no closed form: worked numerically, where it is called"
+                self.asides.append(Aside("", call, said))
             return call
         return tree
 
@@ -161,7 +162,7 @@ class Deriver:
         return math.isclose(closed, numeric.value, rel_tol=AGREES, abs_tol=10 * numeric.error)
 
     def _never_divides_by_zero(self, call: Call, f: Node) -> bool:
-        """True where the denominators keep their sign between the bounds; False too where that is not known."""
+        """True where the denominators keep their sign between the bounds; False where that is not known."""
         x, compiler = _second(call), self.compiler
         for denominator in algebra.denominators(f, x):
             work = compiler.compile_tree(denominator, frozenset([x]))
