@@ -141,7 +141,10 @@ def statements_of(sheet: Sheet) -> tuple[list[str], list[str]]:
     read: list[str] = []
     faulty: list[str] = []
     for block in sheet.blocks:
-        if isinstance(block, Formulas) and indent_of(sheet.source.line(line_of(sheet, block.span.start))) >= 4:
+        if (
+            isinstance(block, Formulas)
+            and indent_of(sheet.source.line(line_of(sheet, block.span.start))) >= 4
+        ):
             bad = [s.span.start for s in block.statements if isinstance(s, Faulty)]
             for group in groups(sheet.source, block.span):
                 start = sheet.source.line_starts[line_of(sheet, group.span.start) - 1]
@@ -515,7 +518,7 @@ CASES = {
     "M = a +\n    b*c -- continued": True,
     "strength x:\n    a\n    <= b": True,
     "solve for R_A [kN]\n    R_A*L = P*a": True,
-    "solve for R_A [kN], R_B [kN] -- reactions [a]\n    R_A + R_B = P -- up\n    R_B*L = P*a -- about A": True,
+    "solve for R_A [kN], R_B [kN] -- both [a]\n    R_A + R_B = P -- up\n    R_B*L = P*a -- about A": True,
     "solve for x\n    a*x^2\n        + b*x = 0\n    3 = y": True,
     "solve for e [mm] between 0 mm and 40 mm\n    P/A*(1 + e*c/r^2) = f_y": True,
     "solve for x between -a/2 and f(b, c), y [1] between 0 and 1, z\n    x = y\n    y = z": True,
@@ -626,7 +629,11 @@ def sentence(random: Random, between: list[str]) -> str:
     """One statement that the grammar makes, with white space drawn from `between` where it may stand."""
     text = ""
     for word in made("start", random, random.randint(3, 10)):
-        is_call = word == "(" and re.search(r"\w'?$", text) and not re.search(r"\b(and|or|when|for|from|to|between|plot|tabulate|at)$", text)
+        is_call = (
+            word == "("
+            and re.search(r"\w'?$", text)
+            and not re.search(r"\b(and|or|when|for|from|to|between|plot|tabulate|at)$", text)
+        )
         text += ("" if is_call or not text else random.choice(between)) + word
     return text
 
@@ -650,8 +657,9 @@ def test_both_agree_where_words_run_together(random: Random) -> None:
 
 pieces = st.sampled_from([
     "", " ", "-", "--", " -- ", "+", "*", "/", "^", "(", ")", "<", ">", "<=", "=", "==", "[", "]", ",", ".",
-    ":", '"', " at ", " from ", " to ", " between ", " steps", "solve for ", "plot ", "1", "1/2 ", "1/2 in", " kN", "kN", "%", "a", "f(", " when ", " otherwise", " and ", " or ",
-    " for ", " as psi", "cases", "\n        ", "_", "'", "e5", "²",
+    ":", '"', " at ", " from ", " to ",
+    " between ", " steps", "solve for ", "plot ", "1", "1/2 ", "1/2 in", " kN", "kN", "%", "a", "f(",
+    " when ", " otherwise", " and ", " or ", " for ", " as psi", "cases", "\n        ", "_", "'", "e5", "²",
 ])  # fmt: skip
 
 

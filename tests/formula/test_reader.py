@@ -190,7 +190,7 @@ def test_conditions(text: str, tree: Node) -> None:
         ("a*", "bad-syntax", "*", "write"),
         ('"b"', "unknown-choice", '"', "when"),
         ("a as psi", "bad-syntax", "as", "(f_c as psi)"),
-        ("plates.b at 2", "not-available", "at", "value"),
+        ("plates.b at 2", "bad-syntax", "2", "label"),
         ("when", "reserved-word", "when", "when_1"),
         ("W/1/2 in", "mixed-number", "1/2", "W/(1/2 in)"),
         ("W^1/2 in", "mixed-number", "1/2", "W^(1/2 in)"),

@@ -123,7 +123,8 @@ def test_one_value_where_a_column_is_brought_back_to_one_number(call: str) -> No
 
 
 @pytest.mark.parametrize(
-    ("call", "value"), [("min(demo.b)", 2e3), ("max(demo.b)", 5e3), ("sum(demo.b)", 11e3), ("count(demo.b)", 3)]
+    ("call", "value"),
+    [("min(demo.b)", 2e3), ("max(demo.b)", 5e3), ("sum(demo.b)", 11e3), ("count(demo.b)", 3)],
 )
 def test_a_column_is_brought_back_to_one_number(call: str, value: float) -> None:
     trace = evaluated(f"x = {call}", above=EXAMPLE_TABLE)

@@ -29,16 +29,20 @@ import pytest
 from click.testing import CliRunner, Result
 
 import loadpath
+from loadpath.algebra import TIME_LIMIT
 from loadpath.cli import VERBS, main
 from loadpath.document import build
 from loadpath.document.model import CriterionBox, JudgedRow
+from loadpath.evaluate.derive import MOST_NODES
 from loadpath.findings import SLUGS
 from loadpath.formula.meant import LATER as LATER_STATEMENTS
 from loadpath.formula.names import KINDS as CRITERION_KINDS
 from loadpath.formula.names import RESERVED
+from loadpath.formula.several import MOST_CURVES, MOST_STEPS, MOST_UNKNOWNS
 from loadpath.functions import NAMES as FUNCTION_NAMES
 from loadpath.sheet.front_matter import KEYS
 from loadpath.sheet.front_values import STATUSES, UNIT_KINDS, UNIT_SYSTEMS
+from loadpath.sheet.tables import MOST_COLUMNS, MOST_ROWS
 from loadpath.trace import Trace
 from loadpath.trace.file import record
 from loadpath.units.dimension import say
@@ -269,6 +273,19 @@ def test_language_lists_what_is_kept_for_later() -> None:
     section = PAGES["language"].split("\n## Kept for later\n")[1].split("\nWords that")[0]
     assert words_in_code(section) & (RESERVED | FUNCTION_NAMES) == set(LATER_STATEMENTS)
     assert "`+-`" in section
+
+
+def test_language_states_the_limits_that_the_engine_has() -> None:
+    section = " ".join(PAGES["language"].split("\n## How much is too much\n")[1].split())
+    for words in (
+        f"a table of {MOST_COLUMNS} columns or {MOST_ROWS} rows",
+        f"{MOST_UNKNOWNS} unknowns in one `solve for`",
+        f"{MOST_CURVES} curves in one `plot` or `tabulate`, and {MOST_STEPS} steps",
+        f"a derived expression of {MOST_NODES} parts",
+    ):
+        assert words in section
+    assert "ten seconds for one piece of algebra" in section and TIME_LIMIT == 10
+    assert f"at most {MOST_COLUMNS} columns and {MOST_ROWS} rows" in " ".join(PAGES["tables"].split())
 
 
 def test_language_names_every_key_of_the_front_matter() -> None:

@@ -16,6 +16,7 @@ from recompute import WORKED, compared
 from si_factors import si
 
 import loadpath
+from loadpath.trace.file import record
 
 HERE = Path(__file__).parent
 
@@ -57,6 +58,61 @@ def test_case(case_id: str) -> None:
         if step.kind not in ("result", "solution") or not abs(step.si - value) <= tolerance:
             wrong.append(f"{expected['name']}: {step.kind} {step.si}, published {value} +- {tolerance:.2g}")
     assert wrong == [], f"source: {case['source']}"
+
+
+@pytest.mark.parametrize(
+    ("case_id", "criterion", "worst", "over", "row"),
+    [
+        ("A44-load-combinations", "strength bending", "eta_max", "", "LC1"),
+        ("A49-truss-table", "strength bars", "u_max", "", "CD"),
+        ("A50-bolt-group", "strength bolts", "R_max", "R_n", "b4"),
+    ],
+)
+def test_the_worst_row_of_a_criterion_on_columns(
+    case_id: str, criterion: str, worst: str, over: str, row: str
+) -> None:
+    """The worst utilisation is that of the case; the row is the first of those that have it."""
+    case = CASES[case_id]
+    values = {each["name"]: si(each["value"], each["unit"]) for each in (*case["inputs"], *case["expected"])}
+    ratio = values[worst] / (values[over] if over else 1.0)
+    trace = loadpath.evaluate(loadpath.read(HERE / f"{case_id}.sheet.md"))
+    step = trace[criterion]
+    assert step in trace.criteria
+    assert step.verdict is not None and step.governing is not None
+    assert step.verdict.utilisation == pytest.approx(ratio, rel=1e-9)
+    assert step.verdict.satisfied is (ratio <= 1)
+    assert step.rows[step.governing].label == row
+    ratios = [each.verdict.utilisation for each in step.rows if each.verdict]
+    assert len(ratios) == len(case["tables"][0]["rows"])
+    assert max(ratios) == step.verdict.utilisation
+    (written,) = [c for c in record(trace, "1").criteria if c.id == criterion]
+    assert (written.utilisation, written.satisfied) == (step.verdict.utilisation, ratio <= 1)
+
+
+def test_every_criterion_on_columns_is_compared_above() -> None:
+    on_columns = {
+        (case_id, step.id)
+        for case_id in ALGEBRA
+        if "tables" in ALGEBRA[case_id]
+        for step in loadpath.evaluate(loadpath.read(HERE / f"{case_id}.sheet.md")).criteria
+        if step.rows
+    }
+    assert {case_id for case_id, _ in on_columns} == {
+        "A44-load-combinations",
+        "A49-truss-table",
+        "A50-bolt-group",
+    }
+
+
+def test_the_sheets_hold_no_expected_number() -> None:
+    """An expected value that stands on the sheet would prove nothing."""
+    inputs = {str(each["value"]) for case in ALGEBRA.values() for each in case["inputs"]}
+    for case_id, case in ALGEBRA.items():
+        text = (HERE / f"{case_id}.sheet.md").read_text(encoding="utf-8")
+        for expected in case["expected"]:
+            typed = str(expected["value"])
+            if len(typed.strip("-0.")) >= 6 and typed not in inputs:
+                assert typed[:9] not in text, (case_id, expected["name"])
 
 
 @pytest.mark.parametrize("case_id", [case_id for case_id in ALGEBRA if "tables" in ALGEBRA[case_id]])

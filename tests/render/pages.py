@@ -115,6 +115,93 @@ Before any section, with **bold**, *slanted*, `code`, a [link](https://example.o
 """A sheet with every kind of step, and some mistakes."""
 
 
+SEVERAL = """---
+title: Several
+number: SB-2
+sources: {s: A source}
+assumptions: {A1: {text: The wall is dry, confirm: true}}
+---
+
+## Tables
+
+    P = 30 kN -- load [s]
+
+Table plates: of the girder [s] [A1]
+
+| plate | b [mm] | h [mm] | k |
+|---|---|---|---|
+| lower flange | 220 | 20 | 1 |
+| web | 10 | 400.25 | P/(10 kN) |
+
+    A = plates.b*plates.h -- area
+    t = min(plates.b, plates.h) -- thickness
+    b_w = plates.b at "web"
+    G = sum(A)
+    sigma [MPa] = P/A*plates.k -- stress
+    strength plates: 2*sigma <= 20 MPa -- each [s]
+    limit first: b_w >= 5 mm -- [s]
+
+Table grid: of factors [s]
+
+| r | 0.1 | 0.2 |
+|---|---|---|
+| 1 | 1.68 | 1.53 |
+| 2 | 1.71 | 1.55 |
+
+    K = interp(1.5, 0.15, grid)
+
+## Algebra
+
+    L = 4 m -- span [s]
+    q = 2 kN/m -- load [s]
+    unknown R [kN] -- reaction
+    V(x [m]) [kN] = R - q*x
+    M(x [m]) [kN*m] = integral(V(x), x) -- moment
+    solve for R
+        M(L) = 0
+    W = integral(q*x/L, x, 0 m, L) -- area
+    M_max = largest(M(x), x, 0 m, L)
+    solve for R_A [kN], R_B [kN]
+        R_A + R_B = P
+        R_B*L = P*(1 m)
+    solve for d [m] between 0 m and L/2
+        sin(d/L) = 0.25
+    plot V(x), M(x) for x from 0 m to L -- shear and moment
+    tabulate M(x), V(x) for x from 0 m to L, 4 steps
+    check: integral(q, x, 0 m, L) = q*L within 0.1 % -- whole load
+    strength moment: M_max <= 5 kN*m -- [s]
+"""
+"""A sheet with tables, columns, unknowns, algebra and figures."""
+LABELS = [
+    "<script>alert(1)</script>",
+    "`code` $x$ a|b \\ *c* _d_ [e](#f) <b> & \" '",
+    "</td></tr></table><img src=x onerror=alert(1)>",
+    "Donaudampfschifffahrtselektrizitätenhauptbetriebswerkbauunterbeamter",
+]
+"""Row labels without good will."""
+
+
+def labelled(label: str) -> str:
+    """A sheet that shows a row label wherever one can stand."""
+    cell = re.sub(r"([!-/:-@\[-`{-~])", r"\\\1", label)
+    return f"""---
+title: Labels
+---
+
+Table pieces: with a label
+
+| {cell} | b [mm] |
+|---|---|
+| {cell} | 3 |
+| web | 4 |
+
+    A = min(pieces.b, 3.5 mm)^2 -- area
+    t = max(A)
+    limit pieces: 2*A <= 9 mm^2
+    valid: 2*A <= 25 mm^2 for t
+"""
+
+
 def traced(text: str, name: str = "sheet.sheet.md", files: dict[str, bytes] | None = None) -> Trace:
     world = MemoryWorld({"a.png": PNG, **(files or {})})
     return audited(read_sheet(Source(name, text), world))

@@ -14,11 +14,12 @@ from collections import Counter
 from collections.abc import Iterator
 from dataclasses import dataclass
 from functools import cache
+from itertools import chain, pairwise
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
 import pytest
-from pages import CALCSHEETS, EVERYTHING, HOSTILE, ROOT, built, everywhere, issued
+from pages import CALCSHEETS, EVERYTHING, HOSTILE, LABELS, ROOT, SEVERAL, built, everywhere, issued, labelled
 
 from loadpath.document import Document
 from loadpath.pipeline import audited, read_input
@@ -83,6 +84,12 @@ MANY_STEPS = "---\ntitle: Two hundred steps\nnumber: SB-200\n---\n\n" + "".join(
     + f"    strength part-{part}: b_{part}_18 <= 100 kN\n\n"
     for part in range(1, 11)
 )
+MANY_ROWS = (
+    "---\ntitle: Sixty rows\nnumber: SB-60\n---\n\n## Bars\n\nTable bars: of a truss\n\n"
+    "| bar | F [kN] | A [cm^2] |\n|---|---|---|\n"
+    + "".join(f"| bar {i} | {i}.5 | 4.25 |\n" for i in range(1, 61))
+    + "\n    s = bars.F/bars.A -- stress\n    strength bars: s <= 100 MPa -- each\n"
+)
 OTHER_WRITINGS = """---
 title: 吊耳计算书 · Расчёт проушины
 subtitle: حساب عروة الرفع
@@ -111,6 +118,9 @@ def sheets() -> dict[str, Document]:
     return {
         **{path.name.removesuffix(".sheet.md"): issued(path) for path in CALCSHEETS},
         "everything": built(EVERYTHING),
+        "several": built(SEVERAL),
+        "labels": built(labelled(LABELS[-1])),
+        "many rows": built(MANY_ROWS),
         "long names": built(LONG_NAMES),
         "many steps": built(MANY_STEPS),
         "other writings": built(OTHER_WRITINGS),
@@ -121,12 +131,18 @@ def sheets() -> dict[str, Document]:
 NAMES = [
     *(path.name.removesuffix(".sheet.md") for path in CALCSHEETS),
     "everything",
+    "several",
+    "labels",
+    "many rows",
     "long names",
     "many steps",
     "other writings",
     "hostile",
 ]
-PRINTED = ["hoist-beam", "lifting-lug", "everything", "long names", "many steps", "other writings"]
+PRINTED = [
+    *("hoist-beam", "lifting-lug", "cradle-beam", "keel-girder"),
+    *("everything", "several", "many rows", "long names", "many steps", "other writings"),
+]
 
 
 # --- the browser --------------------------------------------------------------------------------------------
@@ -516,3 +532,66 @@ def test_a_row_of_a_step_is_never_torn_apart(printed: Any) -> None:
                 if any(w.text == step.number and w.left < 110 for w in s.words)
             )
             assert squeezed(quantity(shown.number, shown.unit)) in sheet.text
+
+
+# --- tables -------------------------------------------------------------------------------------------------
+
+
+def test_a_column_that_is_pointed_at_marks_what_feeds_it_and_what_it_feeds(show: Any) -> None:
+    page = show("several")
+    marked = "[...document.querySelectorAll('.{}')].map(e => e.id).sort()"
+    page.hover("[id='s1.2c']")
+    assert page.evaluate(marked.format("feeds")) == ["s1.1"]
+    assert page.evaluate(marked.format("fed")) == ["s1.7"]
+    page.hover("[id='s1.2'] tbody tr:last-child td:nth-of-type(1)")
+    assert page.evaluate(marked.format("fed")) == ["s1.3", "s1.4", "s1.5"]
+    page.hover("[id='s1.7'] .work")
+    assert page.evaluate(marked.format("feeds")) == ["s1.1", "s1.2c", "s1.3"]
+    assert page.evaluate("lowContrast()")[:6] == []
+
+
+def test_columns_of_numbers_and_results_by_row_end_at_one_edge(show: Any) -> None:
+    page = show("keel-girder")
+    edges = "s => [...document.querySelectorAll(s)].map(e => Math.round(e.getBoundingClientRect().right))"
+    assert len(set(page.evaluate(edges, "[id='s3.7'] .res, [id='s3.7'] table"))) == 1
+    assert len(set(page.evaluate(edges, "[id='s2.10'] .work .val, [id='s3.7'] .res"))) == 1
+    point = """s => [...document.querySelectorAll(s)].map(cell => {
+      const text = cell.lastChild, at = text.textContent.indexOf('.'), range = document.createRange()
+      range.setStart(text, at < 0 ? text.length - 1 : at - 1)
+      range.setEnd(text, at < 0 ? text.length : at)
+      return range.getBoundingClientRect().right
+    })"""
+    units = page.evaluate(point, "[id='s1.1'] tbody td:nth-of-type(3)")
+    assert len(units) == 4 and max(units) - min(units) < 1, "units digits stand one below the other"
+
+
+def test_a_wide_table_scrolls_on_a_telephone(show: Any) -> None:
+    page = show("keel-girder", TELEPHONE)
+    inner, outer = page.evaluate(
+        "(e => [e.scrollWidth, e.clientWidth])(document.querySelector(\"[id='s3.6'] .scroll\"))"
+    )
+    assert inner > outer > 300
+
+
+@needs_pdftotext
+def test_a_long_table_is_broken_between_rows_under_its_repeated_head(printed: Any) -> None:
+    sheets = printed("many rows", "")
+    rows = [[b.text for a, b in pairwise(s.words) if a.text == "bar" and b.text.isdigit()] for s in sheets]
+    expected = {str(n): 3 for n in range(1, 60)} | {"60": 6}
+    assert Counter(chain.from_iterable(rows)) == expected, (
+        "in data, result and criterion; the one that governs twice at the front and once in the register too"
+    )
+    data = [sheet for sheet in sheets if "inkN" in sheet.text]
+    assert len(data) >= 2, "the head of the data stands on each sheet that the table goes on to"
+    assert len([sheet for sheet in sheets if "eachside" in sheet.text]) >= 2
+    alone = [s for s, labels in zip(sheets, rows, strict=True) if len(labels) == 1]
+    assert all("Criteria" in sheet.text for sheet in alone), "no row alone on a sheet"
+
+
+@needs_pdftotext
+def test_a_figure_keeps_its_caption_and_a_table_of_a_few_rows_its_rows(printed: Any) -> None:
+    sheets = printed("keel-girder", "")
+    for label in ("doubler", "lowerflange", "upperflange", "web"):
+        assert any("Tableplates" in s.text and label in s.text for s in sheets)
+    captions = [a for s in sheets for a, b in pairwise(s.words) if (a.text, b.text) == ("Figure", "2")]
+    assert captions and all(word.top > 200 for word in captions), "the picture stands above it"

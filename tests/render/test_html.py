@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import base64
 import re
+from dataclasses import replace
 from functools import cache
 from itertools import pairwise
 from pathlib import Path
@@ -16,19 +17,23 @@ from pages import (
     CALCSHEETS,
     EVERYTHING,
     HOSTILE,
+    LABELS,
     PLAIN_HOSTILE,
     ROOT,
+    SEVERAL,
     as_xml,
     built,
     everywhere,
     issued,
+    labelled,
     skeleton,
     words,
 )
 
-from loadpath.document.model import CAUTION, TitleBlock
+from loadpath.document.model import CAUTION, ResultRow, TitleBlock
+from loadpath.formula.tree import Shown
 from loadpath.pipeline import audited, read_input
-from loadpath.render.html import css_string, render, style, title_block_strings
+from loadpath.render.html import TALL, css_string, hung, render, style, title_block_strings
 from loadpath.render.markdown import render as markdown
 from loadpath.render.templates import folder
 from loadpath.trace import texts
@@ -37,6 +42,8 @@ from loadpath.units.printing import quantity
 PAGES = {
     **{path.name.removesuffix(".sheet.md"): (lambda p=path: render(issued(p))) for path in CALCSHEETS},
     "everything": lambda: render(built(EVERYTHING)),
+    "several": lambda: render(built(SEVERAL)),
+    **{f"label {i}": (lambda t=text: render(built(labelled(t)))) for i, text in enumerate(LABELS)},
     "bare": lambda: render(built("---\ntitle: Bare\n---\n")),
     "no sheet": lambda: render(built("no front matter\n")),
     **{f"hostile {i}": (lambda t=text: render(built(everywhere(t)))) for i, text in enumerate(HOSTILE)},
@@ -111,7 +118,7 @@ def test_nothing_is_fetched_from_elsewhere(name: str) -> None:
     for element in root.iter():
         for attribute in ("src", "srcset", "data", "action", "poster", "background", "style"):
             value = element.attrib.get(attribute, "")
-            assert re.match(r"data:image/|--u:[\d.]+$|text-align:(left|right|center)$|$", value)
+            assert re.match(r"data:image/|--[ud]:[\d.]+$|text-align:(left|right|center)$|$", value)
     css = "".join(e.text or "" for e in root.iter("style"))
     assert "@import" not in css
     addresses = re.findall(r"url\(([^)]{0,40})", css)
@@ -151,7 +158,7 @@ def test_nothing_waits_for_script_to_be_seen() -> None:
     css = (folder() / "style.css").read_text(encoding="utf-8")
     screen = re.sub(r"@media print\{.*?\n\}", "", css, flags=re.DOTALL)
     hidden = {selector.strip() for selector in re.findall(r"([^{}]*)\{[^{}]*display:none", screen)}
-    assert hidden <= {".rows thead"}
+    assert hidden <= {".rows thead", ".byrow thead"}, "rows that say themselves what they are"
 
 
 # --- a screen reader ----------------------------------------------------------------------------------------
@@ -213,11 +220,11 @@ TAGS = {
     "figcaption", "img", "pre", "blockquote", "hr",
     "math", "mrow", "mi", "mn", "mo", "mtext", "ms", "mspace", "mfrac", "msqrt", "mroot", "msub", "msup",
     "msubsup",
-    "mtable", "mtr", "mtd", "mpadded", "mstyle",
+    "munder", "munderover", "mtable", "mtr", "mtd", "mpadded", "mstyle",
 }  # fmt: skip
 ATTRIBUTES = {
     "lang", "class", "charset", "name", "content", "href", "id", "aria-labelledby", "aria-label",
-    "aria-hidden",
+    "aria-hidden", "data-of",
     "scope", "colspan", "src", "alt", "style", "start",
     "displaystyle", "width", "stretchy", "fence", "separator", "form", "lspace", "rspace", "minsize",
     "maxsize",
@@ -444,3 +451,191 @@ def test_paper_and_language_are_those_of_the_sheet() -> None:
     root = as_xml(render(built("---\ntitle: T\npage: Letter\nlanguage: de\n---\n")))
     assert root.attrib == {"lang": "de", "class": "Letter"}
     assert page("bare").attrib == {"lang": "en", "class": "A4"}
+
+
+# --- tables, algebra, figures -------------------------------------------------------------------------------
+
+
+def step(number: str, name: str = "several") -> ElementTree.Element:
+    return next(e for e in page(name).iter("div") if e.get("id") == f"s{number}")
+
+
+def of_class(root: ElementTree.Element, name: str) -> list[ElementTree.Element]:
+    return [e for e in root.iter() if name in e.get("class", "").split()]
+
+
+def plain(element: ElementTree.Element) -> str:
+    """Its words, without the sign that says "of" in a formula."""
+    return words(element).replace("\u2061", "")
+
+
+def rows_of(element: ElementTree.Element) -> list[list[str]]:
+    return [[plain(cell) for cell in row] for row in element.iter("tr")]
+
+
+def markup(name: str, start: str, end: str) -> str:
+    text = source(name)
+    at = text.index(start)
+    return text[at : text.index(end, at) + len(end)]
+
+
+def test_a_table_of_data_in_full() -> None:
+    assert markup("several", '<div class="step data" id="s1.2">', "</table>") == (
+        '<div class="step data" id="s1.2"><a class="num" href="#s1.2">1.2</a>\n'
+        '<div class="caption"><b>Table plates</b> <span class="note">of the girder '
+        '<a class="cite" href="#src-s">[s]</a> <a class="cite" href="#a-A1">[A1]</a></span></div>\n'
+        '<div class="scroll"><table class="data">\n'
+        '<thead><tr><th scope="col">plate</th>'
+        '<th scope="col" id="s1.2a"><a class="num" href="#s1.2a">1.2a</a> '
+        '<math displaystyle="true"><mi>b</mi></math> <span class="unit">in mm</span></th>'
+        '<th scope="col" id="s1.2b"><a class="num" href="#s1.2b">1.2b</a> '
+        '<math displaystyle="true"><mi>h</mi></math> <span class="unit">in mm</span></th>'
+        '<th scope="col" id="s1.2c"><a class="num" href="#s1.2c">1.2c</a> '
+        '<math displaystyle="true"><mi>k</mi></math></th></tr></thead>\n'
+        "<tbody>\n"
+        '<tr><th scope="row">lower flange</th><td>220</td><td style="--d:2.5">20</td>'
+        '<td style="--d:3.5">1</td></tr>\n'
+        '<tr><th scope="row">web</th><td>10</td><td>400.25</td><td><math displaystyle="true"><mi>P</mi>'
+        '<mo form="infix" lspace="0.06em" rspace="0.06em">/</mo><mrow>'
+        '<mo form="prefix" stretchy="false">(</mo><mrow><mn>10</mn><mspace width="0.2em"/><mtext>kN</mtext>'
+        '</mrow><mo form="postfix" stretchy="false">)</mo></mrow></math> = 3.000</td></tr>\n'
+        "</tbody>\n</table>"
+    )
+
+
+def test_each_column_has_a_trail_of_its_own() -> None:
+    trails = [e for e in step("1.2").iter("div") if e.get("data-of")]
+    assert [e.get("data-of") for e in trails] == ["s1.2a", "s1.2b", "s1.2c"]
+    assert words(trails[2]) == "k 1.2c from P 1.1 · used in σ 1.7"
+
+
+def test_a_result_goes_row_by_row_with_its_values_at_the_right() -> None:
+    assert markup("several", '<table class="byrow">', "</table>") == (
+        '<table class="byrow">\n<tbody>\n'
+        '<tr><th scope="row">lower flange</th><td><div class="flow"><math displaystyle="true">'
+        '<mo form="infix">=</mo><mrow><mn>220</mn><mspace width="0.2em"/><mtext>mm</mtext></mrow><mo>×</mo>'
+        '<mrow><mn>20</mn><mspace width="0.2em"/><mtext>mm</mtext></mrow></math></div></td>'
+        '<td class="res">4400\u202fmm²</td></tr>\n'
+        '<tr><th scope="row">web</th><td><div class="flow"><math displaystyle="true">'
+        '<mo form="infix">=</mo><mrow><mn>10</mn><mspace width="0.2em"/><mtext>mm</mtext></mrow><mo>×</mo>'
+        '<mrow><mn>400.25</mn><mspace width="0.2em"/><mtext>mm</mtext></mrow></math></div></td>'
+        '<td class="res">4002\u202fmm²</td></tr>\n'
+        "</tbody></table>"
+    )
+
+
+def test_a_criterion_is_judged_row_by_row_beside_its_own_verdict() -> None:
+    box = step("1.8")
+    (table,) = of_class(box, "judged")
+    assert rows_of(table) == [
+        ["lower flange", "2×6.818MPa≤20MPa", "13.64MPa≤20MPa", "0.682",
+         "satisfied, conditional on A1"],
+        ["web", "2×22.49MPa≤20MPa", "44.97MPa>20MPa", "2.249", "not satisfied, governs"],
+    ]  # fmt: skip
+    assert [e.get("class") for e in table.iter("tr")] == [None, "strong"]
+    assert [words(e) for e in of_class(box, "judge")] == ["2.249not satisfied"]
+    assert "strength, plates, row web" in words(next(page("several").iter("section")))
+
+
+def test_a_two_way_table_and_the_rows_read() -> None:
+    assert rows_of(step("1.10")) == [["r", "0.1", "0.2"], ["1", "1.68", "1.53"], ["2", "1.71", "1.55"]]
+    assert "read in rows 1 and 2" in words(step("1.11"))
+
+
+def test_what_algebra_made_is_marked() -> None:
+    assert [words(e) for e in of_class(step("2.5"), "how")] == ["worked out"]
+    assert of_class(step("2.4"), "how") == []
+    (side,) = [e for e in of_class(step("2.14"), "flow") if of_class(e, "how")]
+    assert words(side) == "worked out q⋅L=q⋅L"
+
+
+def test_the_side_that_algebra_made_of_a_result_is_marked() -> None:
+    document = built(SEVERAL)
+    blocks = tuple(
+        replace(b, derived=1) if isinstance(b, ResultRow) and b.head.number == "2.7" else b
+        for b in document.blocks
+    )
+    root = as_xml(render(replace(document, blocks=blocks)))
+    (area,) = [e for e in root.iter("div") if e.get("id") == "s2.7"]
+    assert [bool(of_class(side, "how")) for side in of_class(area, "side")] == [False, True, False]
+    text, _ = markdown(replace(document, blocks=blocks), "several")
+    assert "\\mathrm{d}x\n$$\n\nworked out\n\n$$\n{} = \\dfrac{q \\cdot L}{2}" in text
+
+
+def test_a_solution_shows_equations_value_and_proof() -> None:
+    first, last, numeric = step("2.9"), step("2.10"), step("2.11")
+    assert [words(e) for e in of_class(first, "left")] == ["RA+RB", "RB⋅L"]
+    assert "solved as a linear system of 2 equations" in words(first)
+    assert words(of_class(last, "trail")[0]) == "from the equations of 2.9"
+    (table,) = of_class(last, "putback")
+    assert rows_of(table) == [
+        ["put back", "left", "right", "left less right"],
+        ["RA+RB=P", "30.0000 kN", "30.0000 kN", "0 kN"],
+        ["RB⋅L=P⋅1m", "30.0000 kN⋅m", "30.0000 kN⋅m", "0 kN⋅m"],
+    ]
+    assert "between bounds" in words(numeric) and "Brent" in words(numeric)
+    assert words(of_class(numeric, "work")[0]) == "d= 1.011 m"
+
+
+def test_an_unknown_is_one_line() -> None:
+    said = "2.3Runknown: reaction used in V 2.4, R 2.6in kN, solved for in 2.6"
+    assert words(step("2.3")) == said
+
+
+def test_a_plot_is_a_figure_with_caption_and_alternative() -> None:
+    figure = next(step("2.12").iter("figure"))
+    image = next(figure.iter("img"))
+    assert image.attrib["src"].startswith("data:image/svg+xml;base64,")
+    assert image.attrib["alt"].startswith("Plot of V(x) in kN and M(x) in kN⋅m against x in m")
+    assert plain(next(figure.iter("figcaption"))) == "Figure 1shear and moment: V(x), M(x) for x from 0m to L"
+
+
+def test_a_table_of_values() -> None:
+    assert rows_of(step("2.13")) == [
+        ["x in m", "M(x) in kN⋅m", "V(x) in kN"],
+        ["0", "0", "4.000"], ["1", "3.000", "2.000"], ["2", "4.000", "0"], ["3", "3.000", "−2.000"],
+        ["4", "0", "−4.000"],
+    ]  # fmt: skip
+    assert plain(of_class(step("2.13"), "caption")[0]) == "Values of M(x), V(x) for x from 0m to L"
+
+
+@pytest.mark.parametrize("label", LABELS)
+def test_a_row_label_is_shown_as_typed_wherever_it_stands(label: str) -> None:
+    root = page(f"label {LABELS.index(label)}")
+    shown = " ".join(label.split())
+    heads = [words(th) for th in root.iter("th")]
+    assert heads.count(shown) == 5, "corner, table, result, criterion, validity"
+    assert f"row {shown}: min: governed by" in words(root)
+    assert {e.tag for e in root.iter()} <= TAGS and {a for e in root.iter() for a in e.attrib} <= ATTRIBUTES
+    assert skeleton(source(f"label {LABELS.index(label)}"))[0] == ("html", ("class", "lang"))
+
+
+@pytest.mark.parametrize(
+    ("column", "room"),
+    [
+        (["1", "2.5", "12.25"], ["2.5", "1", ""]),
+        (["1", "2", "30"], ["", "", ""]),
+        (["12345.678", "0.5"], ["", "2"]),
+        (["0.123456", "1"], ["", "6.84"]),
+        (["1.5e-9", "2.25", "3"], ["", "", "2.5"]),
+        (["-1.5", "2"], ["", "1.5"]),
+        ([None, "1", "1.5"], ["", "1.5", ""]),
+        ([], []),
+    ],
+)
+def test_decimal_points_of_a_column_stand_in_line(column: list[str | None], room: list[str]) -> None:
+    assert hung([None if n is None else Shown(n, "") for n in column]) == room
+
+
+def test_more_rows_than_a_few_have_a_head_that_is_repeated_and_may_be_broken() -> None:
+    few, many = (
+        as_xml(render(built(
+            "---\ntitle: Bars\n---\n\nTable bars: b\n\n| bar | F [kN] |\n|---|---|\n"
+            + "".join(f"| {i}a | {i} |\n" for i in range(rows))
+            + "\n    G = 2*bars.F -- g\n    limit bars: G <= 99 kN\n"
+        )))
+        for rows in (TALL, TALL + 1)
+    )  # fmt: skip
+    assert len(of_class(few, "tall")) == 0 and len(of_class(many, "tall")) == 3
+    assert len([t for t in of_class(few, "byrow") if list(t.iter("thead"))]) == 0
+    assert len([t for t in of_class(many, "byrow") if list(t.iter("thead"))]) == 2

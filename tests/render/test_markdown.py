@@ -13,7 +13,18 @@ from hypothesis import given, settings
 from hypothesis import strategies as st
 from markdown_it import MarkdownIt
 from markdown_it.token import Token
-from pages import CALCSHEETS, EVERYTHING, HOSTILE, PNG, built, everywhere, issued
+from pages import (
+    CALCSHEETS,
+    EVERYTHING,
+    HOSTILE,
+    LABELS,
+    PNG,
+    SEVERAL,
+    built,
+    everywhere,
+    issued,
+    labelled,
+)
 
 from loadpath.document.model import CAUTION
 from loadpath.render.markdown import escape, render
@@ -29,6 +40,8 @@ TEXTS = {
         for path in CALCSHEETS
     },
     "everything": lambda: render(built(EVERYTHING), "every thing (1)"),
+    "several": lambda: render(built(SEVERAL), "several"),
+    **{f"label {i}": (lambda t=text: render(built(labelled(t)), "labels")) for i, text in enumerate(LABELS)},
     "bare": lambda: render(built("---\ntitle: Bare\n---\n"), "bare"),
     "no sheet": lambda: render(built("no front matter\n"), "none"),
     **{
@@ -93,7 +106,7 @@ def test_math_is_closed(name: str) -> None:
 
 @each_text
 def test_anchors_are_unique_and_links_arrive(name: str) -> None:
-    anchors = re.findall(r'<a id="(s[\d.]+)"></a>', written(name))
+    anchors = re.findall(r'<a id="(s[\d.]+[a-z]*)"></a>', written(name))
     assert len(anchors) == len(set(anchors))
     links = [str(t.attrs["href"]) for t in tokens(written(name)) if t.type == "link_open"]
     assert {link[1:] for link in links if link.startswith("#")} <= set(anchors)
@@ -148,7 +161,7 @@ def test_an_image_that_was_refused_is_told_and_not_linked() -> None:
 def test_a_host_finds_no_html_but_the_anchors_and_no_image_but_the_figures(name: str) -> None:
     for token in tokens(written(name)):
         if token.type in ("html_inline", "html_block"):
-            assert re.fullmatch(r'<a id="s[\d.]+">|</a>', token.content), token.content
+            assert re.fullmatch(r'<a id="s[\d.]+[a-z]*">|</a>', token.content), token.content
         if token.type == "image":
             assert re.fullmatch(r"[\w%]+\.figure-\d+\.(svg|png|jpg)", str(token.attrs["src"]))
         if token.type == "link_open":
@@ -316,3 +329,124 @@ def test_a_finding_is_one_quotation_with_its_mend() -> None:
     (mismatch,) = (t for t in texts if "unit-mismatch" in t[0])
     assert mismatch[0].startswith("**Error, line 66.**")
     assert len(mismatch) == 2 and "factor" in mismatch[1]
+
+
+# --- tables, algebra, figures -------------------------------------------------------------------------------
+
+
+def part(number: str, name: str = "several") -> str:
+    """What is written of one step, without its anchor."""
+    _, _, rest = written(name).partition(f'<a id="s{number}"></a>')
+    return re.split(r'\n<a id="s\d+\.\d+"></a>|\n## ', rest)[0].strip()
+
+
+def test_a_table_of_data_in_full() -> None:
+    assert part("1.2") == (
+        "**1.2** **Table plates** *of the girder \\[s\\] \\[A1\\]*\n\n"
+        '| plate | <a id="s1.2a"></a>1.2a $b$ in mm | <a id="s1.2b"></a>1.2b $h$ in mm '
+        '| <a id="s1.2c"></a>1.2c $k$ |\n'
+        "|---|---:|---:|---:|\n"
+        "| lower flange | 220 | 20 | 1 |\n"
+        "| web | 10 | 400.25 | $\\dfrac{P}{10\\thinspace \\mathrm{kN}}$ = 3.000 |\n\n"
+        "- 1.2a $b$: used in [A 1.3](#s1.3), [t 1.4](#s1.4), [b\\_w 1.5](#s1.5)\n"
+        "- 1.2b $h$: used in [A 1.3](#s1.3), [t 1.4](#s1.4)\n"
+        "- 1.2c $k$: from [P 1.1](#s1.1) · used in [σ 1.7](#s1.7)"
+    )
+
+
+def test_a_result_row_by_row_in_full() -> None:
+    assert part("1.4") == (
+        "**1.4** *thickness*\n\n"
+        "$$\nt = \\min(\\mathrm{plates.}b, \\mathrm{plates.}h)\n$$\n\n"
+        "| row | with values | result |\n|---|---|---:|\n"
+        "| lower flange | $\\min(220\\thinspace \\mathrm{mm}, 20\\thinspace \\mathrm{mm})$ | **20.00 mm** |\n"
+        "| web | $\\min(10\\thinspace \\mathrm{mm}, 400.25\\thinspace \\mathrm{mm})$ | **10.00 mm** |\n\n"
+        "- row lower flange: min: governed by $\\mathrm{plates.}h$\n\n"
+        "- row web: min: governed by $\\mathrm{plates.}b$\n\n"
+        "from [plates.b 1.2a](#s1.2a), [plates.h 1.2b](#s1.2b)"
+    ).replace(" mm**", "\u202fmm**")
+
+
+def test_a_criterion_row_by_row_in_full() -> None:
+    mpa = "\\thinspace \\mathrm{MPa}"
+    assert part("1.8") == (
+        f"**1.8** **Strength** plates each \\[s\\]\n\n$$\n2 \\cdot \\sigma \\le 20{mpa}\n$$\n\n"
+        "| row | with values | each side | ratio | verdict |\n|---|---|---|---:|---|\n"
+        f"| lower flange | $2 \\times 6.818{mpa} \\le 20{mpa}$ | $13.64{mpa} \\le 20{mpa}$ | 0.682 "
+        "| satisfied, conditional on A1 |\n"
+        f"| **web** | $2 \\times 22.49{mpa} \\le 20{mpa}$ | $44.97{mpa} \\gt 20{mpa}$ | **2.249** "
+        "| **not satisfied, governs** |\n\n"
+        "ratio **2.249**, **not satisfied**\n\nfrom [σ 1.7](#s1.7)"
+    )
+    assert "[1.8](#s1.8) strength, plates, row web | 2.249 |" in written("several")
+
+
+def test_a_two_way_table_in_full() -> None:
+    assert part("1.10").startswith(
+        "**1.10** **Table grid** *of factors \\[s\\]*\n\n"
+        "| r | 0.1 | 0.2 |\n|---:|---:|---:|\n| 1 | 1.68 | 1.53 |\n| 2 | 1.71 | 1.55 |\n\nused in"
+    )
+
+
+def test_what_algebra_made_stands_by_itself() -> None:
+    assert (
+        "M(x) = \\int V(x)\\thinspace \\mathrm{d}x\n$$\n\nworked out\n\n"
+        "$$\n{} = R \\cdot x - \\dfrac{q \\cdot x^{2}}{2}\n$$"
+    ) in part("2.5")
+    assert "\n\nworked out\n\n$$\nq \\cdot L = q \\cdot L\n$$\n\nwith values: $2" in part("2.14")
+    assert "worked out" not in part("2.4")
+
+
+def test_a_solution_in_full() -> None:
+    assert part("2.10") == (
+        "**2.10**\n\n$$\n"
+        "R_{\\mathrm{B}} = \\dfrac{P \\cdot 1\\thinspace \\mathrm{m}}{L} = "
+        "\\dfrac{30\\thinspace \\mathrm{kN} \\times 1\\thinspace \\mathrm{m}}{4\\thinspace \\mathrm{m}}"
+        "\n$$\n\n= **7.500 kN**\n\n"
+        "| put back | left | right | left less right |\n|---|---:|---:|---:|\n"
+        "| $R_{\\mathrm{A}} + R_{\\mathrm{B}} = P$ | 30.0000 kN | 30.0000 kN | 0 kN |\n"
+        "| $R_{\\mathrm{B}} \\cdot L = P \\cdot 1\\thinspace \\mathrm{m}$ | 30.0000 kN⋅m | 30.0000 kN⋅m "
+        "| 0 kN⋅m |\n\n"
+        "from the equations of [2.9](#s2.9)"
+    ).replace(" kN", "\u202fkN")
+    bounds = "between bounds $0\\thinspace \\mathrm{m} \\le d \\le \\dfrac{L}{2}$, solved by bracketing"
+    assert bounds in part("2.11")
+    assert "\n\n$d$ = **1.011\u202fm**\n\n" in part("2.11")
+
+
+def test_an_unknown_is_one_line() -> None:
+    assert part("2.3") == (
+        "**2.3** *unknown: reaction*: $R$ in kN, solved for in [2.6](#s2.6) "
+        "· used in [V 2.4](#s2.4), [R 2.6](#s2.6)"
+    )
+
+
+def test_a_plot_is_a_file_beside_the_text_with_its_caption() -> None:
+    _, images = render(built(SEVERAL), "several")
+    assert list(images) == ["several.figure-1.svg"]
+    (image,) = [t for t in tokens(part("2.12")) if t.type == "image"]
+    assert image.attrs["src"] in images and images[str(image.attrs["src"])].startswith(b"<svg ")
+    assert image.content.startswith("Plot of V(x) in kN and M(x) in kN⋅m against x in m")
+    assert "\n\n**Figure 1** *shear and moment*: $V(x)$, $M(x)$ for $x$ from" in part("2.12")
+
+
+def test_a_table_of_values_in_full() -> None:
+    assert part("2.13").startswith(
+        "**2.13** Values of $M(x)$, $V(x)$ for $x$ from $0\\thinspace \\mathrm{m}$ to $L$\n\n"
+        "| $x$ in m | $M(x)$ in kN⋅m | $V(x)$ in kN |\n|---:|---:|---:|\n"
+        "| 0 | 0 | 4.000 |\n| 1 | 3.000 | 2.000 |\n| 2 | 4.000 | 0 |\n"
+        "| 3 | 3.000 | −2.000 |\n| 4 | 0 | −4.000 |\n"
+    )
+
+
+@pytest.mark.parametrize("label", LABELS)
+def test_a_row_label_is_shown_as_typed_wherever_it_stands(label: str) -> None:
+    name = f"label {LABELS.index(label)}"
+    paragraphs = [t.children or () for t in HOST.parse(written(name)) if t.type == "inline"]
+    cells = ["".join(c.content for c in inside if c.type == "text") for inside in paragraphs]
+    assert cells.count(label) == 5, "corner, table, result, criterion, validity"
+    assert any(cell.startswith(f"row {label}: min: governed by") for cell in cells)
+    assert not [t for t in tokens(written(name)) if t.type in ("image", "code_inline")]
+    assert {t.content for t in tokens(written(name)) if t.type in ("html_inline", "html_block")} <= {
+        "</a>", *(f'<a id="s0.{n}">' for n in ("1", "1a", "2", "3", "4", "5"))
+    }  # fmt: skip

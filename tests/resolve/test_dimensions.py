@@ -88,7 +88,7 @@ def test_kinds_of_results(expression: str, unit: str) -> None:
         ("g*n", "wrong-arguments", "g", "`g`"),
         ("g(L, L)", "wrong-arguments", "g", "1 argument"),
         ("sqrt()", "wrong-arguments", "sqrt", "1 argument"),
-        ("max(P)", "wrong-arguments", "max", "2 or more"),
+        ("max(P)", "needs-column", "P", "one value"),
         ("T*n", "absolute-temperature", "*", "multiplied"),
         ("-T", "absolute-temperature", "-T", "negated"),
         ("T^2", "absolute-temperature", "^", "raised"),

@@ -44,7 +44,7 @@ def blocked(*lines: str, **more: str) -> dict[str, int]:
         (("f(x) = x", "x = 2"), "shadowed-name", "x", "name"),
         (("f(pi) = pi",), "shadowed-name", "pi", "name"),
         (("a = sqrt",), "wrong-arguments", "sqrt", "sqrt(...)"),
-        (("a = interp(2, 3, 4)",), "not-available", "interp", "plain"),
+        (("a = interp(2, 3, 4)",), "needs-column", "3", "curve.x"),
         (("limit a: 2 <= b",), "unknown-name", "b", "define"),
         (("valid: 2 <= 3 for chi",), "unknown-name", "chi", "define"),
     ],
@@ -66,9 +66,11 @@ def test_the_parameter_of_a_function_lives_only_there() -> None:
     assert slugs("f(x) = 2*x", "a = x") == ["unknown-name"]
 
 
-def test_the_own_name_of_a_function_that_cannot_be_worked_yet_is_no_unknown_name() -> None:
-    assert slugs("w = 2", "W = integral(w*x, x, 0, 2)") == ["not-available"]
-    assert slugs("w = 2", "W = sum(w*k, k, 0, 5) + k") == ["not-available"]
+def test_a_name_that_lives_only_in_a_call_is_unknown_beside_it() -> None:
+    assert slugs("w = 2", "W = integral(w*x, x, 0, 2)") == []
+    assert slugs("w = 2", "W = sum(w*k, k, 0, 5)") == []
+    assert slugs("w = 2", "W = sum(w*k, k, 0, 5) + k") == ["unknown-name"]
+    assert slugs("w = 2", "W = integral(w*x, x, 0, x)") == ["unknown-name"]
 
 
 def test_units_and_words_are_no_names() -> None:

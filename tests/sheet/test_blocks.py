@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import pytest
 
-from loadpath.formula.statements import Definition, Faulty
+from loadpath.formula.statements import Column, Definition, Faulty, Table
 from loadpath.project import MemoryWorld
 from loadpath.sheet import Block, Formulas, Heading, Image, Prose
 from loadpath.sheet.blocks import read_blocks
@@ -170,16 +170,19 @@ def test_a_caption_that_holds_a_value_says_that_it_cannot() -> None:
 # --- what would leave something out of sight --------------------------------------------------------------
 
 
-def test_a_table_of_data_is_told_to_come_later() -> None:
+def test_a_captioned_table_is_a_block_of_statements() -> None:
+    """What they hold is held in test_tables.py."""
     table = "| part | b [mm] |\n|---|---|\n| top | 200 |\n"
     for gap in ("", "\n"):
         blocks, found = read(f"Table plates: the pieces\nof the girder [a]\n{gap}{table}")
-        assert found == ["1:1 not-available"]
+        assert found == []
         assert isinstance(blocks[-1], Formulas)
-        (faulty,) = blocks[-1].statements
-        assert isinstance(faulty, Faulty) and faulty.names == ("plates",)
+        assert [type(statement) for statement in blocks[-1].statements] == [Table, Column]
     assert read(f"Table 3 shows the pieces:\n\n{table}")[1] == []
-    assert read(f"Table plates: the pieces\n\nText.\n\n{table}")[1] == []
+    blocks, found = read(f"Table plates: the pieces\n\nText.\n\n{table}")
+    assert found == ["1:1 table-shape"]
+    (faulty,) = (s for block in blocks if isinstance(block, Formulas) for s in block.statements)
+    assert isinstance(faulty, Faulty) and faulty.names == ("plates",)
 
 
 def test_a_fence_that_is_not_closed_is_a_mistake() -> None:

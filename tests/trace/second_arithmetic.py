@@ -173,7 +173,7 @@ class Worker(Reader):
 
     def _relation(self, text: str, bound: dict[str, float]) -> bool:
         parts = re.split(r" (<=|>=|=) | (<|>) (?!\^)", text)
-        sides = [p for p in parts[::3]]
+        sides = list(parts[::3])
         signs = [a or b for a, b in zip(parts[1::3], parts[2::3], strict=True)]
         if '"' in sides[-1]:
             return self.known.values[sides[0]] == sides[-1].strip('"')

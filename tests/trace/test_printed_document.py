@@ -1,7 +1,8 @@
 """What stands in a document, worked with a pocket calculator: every printed equation, beneath steps too.
 
 Reads the document model, which all formats are drawn from: substitutions, sums written out, calls, criteria
-row by row, cells, equations with the solution put back, the places that `largest` looked at, tables of values.
+row by row, cells, equations with the solution put back, the places that `largest` looked at,
+tables of values.
 """
 
 from __future__ import annotations

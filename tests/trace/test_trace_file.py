@@ -217,6 +217,84 @@ def test_a_chain_tells_its_governing_part() -> None:
     assert (b.demand, b.limit, b.utilisation) == tuple(map(pytest.approx, (2, 3, 2 / 3)))
 
 
+# --- algebra and columns ------------------------------------------------------------------------------------
+
+COLUMNS = """---
+title: Columns and algebra
+sources: {s: A source}
+assumptions: {A1: {text: Something, confirm: true}}
+---
+
+Table t: two pieces [A1]
+
+| piece | b [mm] | h [mm] |
+|-------|--------|--------|
+| top   | 10     | 2*3 mm |
+| web   | 5      | 4      |
+
+    A = t.b*t.h
+    strength area: A <= 61 mm^2 -- [s]
+    unknown C [kN]
+    P = 6 kN -- load [s]
+    V(x [m]) [kN] = C - P*<x - 1 m>^0
+    M(x [m]) [kN*m] = integral(V(x), x)
+    solve for C
+        M(3 m) = 0
+    U = largest(M(x), x, 0 m, 3 m)
+    plot M(x) for x from 0 m to 3 m
+    tabulate M(x) for x from 0 m to 3 m, 3 steps
+    n [1] = sum(k, k, 1, 3)
+    solve for q [mm] between 0 mm and 9 mm
+        q^2 = 16 mm^2
+    y = integral(x^2, x, 0, 3)
+    s = sum(A)
+"""
+
+
+def test_columns_and_algebra_in_the_file() -> None:
+    made = file_of(COLUMNS)
+    assert [f.message for f in made.findings if f.severity == "error"] == []
+    assert list(Draft202012Validator(SCHEMA).iter_errors(strict(made.to_json()))) == []
+    assert TraceFile.from_json(made.to_json()) == made
+    steps = {s.id: s for s in made.steps}
+    kinds = {"table", "result", "criterion", "unknown", "input", "function", "solution", "plot"}
+    assert {s.kind for s in made.steps} >= kinds
+    area = steps["A"]
+    assert (area.value, area.unit, area.rows) == (pytest.approx([60, 20]), "mm^2", ["top", "web"])
+    assert area.si == pytest.approx([60e-6, 20e-6])
+    assert area.display == "60.00\u202fmm², 20.00\u202fmm²"
+    assert (steps["strength area"].governing, steps["t.b"].rows) == ("top", ["top", "web"])
+    assert steps["M"].derived == "C*x - P*<x - 1 m>^1"
+    assert (steps["C"].kind, steps["C"].value, steps["C"].method) == (
+        "solution",
+        pytest.approx(4),
+        "as a linear equation",
+    )
+    assert steps["q"].derived and steps["q"].value == pytest.approx(4)
+    assert (steps["y"].value, steps["n"].value, steps["s"].value) == tuple(map(pytest.approx, (9, 6, 80)))
+    (criterion,) = made.criteria
+    assert (criterion.demand, criterion.limit, criterion.unit) == (
+        pytest.approx(60),
+        pytest.approx(61),
+        "mm^2",
+    )
+    assert (criterion.utilisation, criterion.verdict) == (
+        pytest.approx(60 / 61),
+        "satisfied, conditional on A1",
+    )
+
+
+def test_trails_of_unknowns_solutions_and_columns() -> None:
+    """A function hangs on the unknown, what is evaluated with it after the solution on both."""
+    steps = {s.id: s for s in file_of(COLUMNS).steps}
+    assert {"unknown C", "P"} <= set(steps["V"].uses)
+    assert {"M", "unknown C"} <= set(steps["C"].uses)
+    assert {"M", "C"} <= set(steps["U"].uses)
+    assert {"t.b", "t.h"} <= set(steps["A"].uses)
+    assert {"s", "strength area"} <= set(steps["A"].used_by)
+    assert {"M", "C"} <= set(steps["plot M(x)"].uses)
+
+
 # --- ids ----------------------------------------------------------------------------------------------------
 
 
@@ -264,6 +342,12 @@ def test_values_are_at_full_precision_and_agree_with_si(path: Path) -> None:
             value = by_id[step.id].value
             assert isinstance(value, float)
             assert step.unit.to_si(value) == pytest.approx(step.si, rel=1e-14)
+        if isinstance(step.si, tuple):
+            made = by_id[step.id]
+            assert made.si == list(step.si)
+            assert isinstance(made.value, list) and len(made.value) == len(made.rows) == len(step.si)
+            for value, si in zip(made.value, step.si, strict=True):
+                assert step.unit.to_si(value) == pytest.approx(si, rel=1e-14, abs=1e-300)
 
 
 def test_only_the_name_of_the_file_is_told() -> None:

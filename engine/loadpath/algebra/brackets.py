@@ -36,8 +36,8 @@ from loadpath.algebra.terms import (
     times,
     write,
 )
-from loadpath.algebra.trees import ZERO, negated, replaced
-from loadpath.formula.tree import Binary, Bracket, Call, Name, Node, walk
+from loadpath.algebra.trees import ZERO, negated
+from loadpath.formula.tree import Binary, Bracket, Call, Name, Node, rebuilt, walk
 
 
 @dataclass(frozen=True, slots=True)
@@ -190,7 +190,7 @@ def _switched(terms: Terms, inners: tuple[Node, ...], on: bool, off: tuple[Node,
             return ZERO
         return write(power(as_term(read(node.inner)), Fraction(node.power)))
 
-    return replaced(write(terms), change)
+    return rebuilt(write(terms), change)
 
 
 def _about(rest: Term, bracket: Bracket, x: str) -> Terms:

@@ -12,7 +12,7 @@ from queue import Empty, SimpleQueue
 from threading import Lock, Thread
 from typing import Any
 
-from loadpath.algebra.failure import NoForm, remaining, timed_out, too_large
+from loadpath.algebra.failure import NoForm, clock_stopped, no_start, remaining, timed_out, too_large
 
 
 class Worker:
@@ -68,20 +68,37 @@ _lock = Lock()
 _worker: Worker | None = None
 
 
+START_LIMIT = 60.0
+"""Seconds that loading SymPy may take."""
+
+
+def _started() -> Worker:
+    """A worker that has SymPy loaded. Raises AlgebraFailure where it does not start."""
+    with clock_stopped():
+        worker = Worker()
+        if not worker.ask(_request("ready", 0), START_LIMIT):
+            worker.end()
+            raise no_start()
+    return worker
+
+
+def _request(work: str, seconds: float, **arguments: Any) -> bytes:
+    return json.dumps({"work": work, "seconds": seconds, **arguments}).encode() + b"\n"
+
+
 def ask(work: str, **arguments: Any) -> Any:
     """What the worker answers; None where it found no closed form.
 
     Raises AlgebraFailure where the time is up or the expression is too large for it.
     """
     global _worker
-    request = json.dumps({"work": work, "seconds": remaining(), **arguments}).encode() + b"\n"
     with _lock:
         fresh = _worker is None or _worker.owner != os.getpid()
         for _ in range(2):
             if _worker is None or _worker.owner != os.getpid():
-                _worker = Worker()
+                _worker = _started()
                 fresh = True
-            answer = _worker.ask(request, remaining())
+            answer = _worker.ask(_request(work, remaining(), **arguments), remaining())
             if answer or answer is None or fresh:
                 break
             # it had ended since it was last used

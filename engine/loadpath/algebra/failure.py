@@ -8,7 +8,7 @@ from contextlib import contextmanager
 from contextvars import ContextVar
 
 TIME_LIMIT = 10.0
-"""Seconds that one call may take, SymPy's start included."""
+"""Seconds that one call may take; loading SymPy, once a process, comes on top."""
 
 _SPLIT = "split the expression, or give the values first and work it in numbers"
 
@@ -43,14 +43,38 @@ def timed_out() -> AlgebraFailure:
     return AlgebraFailure("algebra-time-out", "the algebra was stopped because it took too long", _SPLIT)
 
 
+def no_start() -> AlgebraFailure:
+    """The failure of a machine on which SymPy can't be loaded."""
+    return AlgebraFailure(
+        "algebra-time-out", "SymPy, which does the algebra, could not be started", "look at the installation"
+    )
+
+
 _end: ContextVar[float | None] = ContextVar("end", default=None)
+_stood_still = 0.0
+"""Seconds for which the clock of the calls has stood still."""
+
+
+def _now() -> float:
+    return time.monotonic() - _stood_still
+
+
+@contextmanager
+def clock_stopped() -> Iterator[None]:
+    """What is done inside counts on no call's limit."""
+    global _stood_still
+    start = time.monotonic()
+    try:
+        yield
+    finally:
+        _stood_still += time.monotonic() - start
 
 
 @contextmanager
 def time_limit(seconds: float) -> Iterator[None]:
     """One limit over everything done inside."""
     before = _end.get()
-    end = time.monotonic() + seconds
+    end = _now() + seconds
     token = _end.set(end if before is None else min(before, end))
     try:
         yield
@@ -63,7 +87,7 @@ def remaining() -> float:
     end = _end.get()
     if end is None:
         return TIME_LIMIT
-    left = end - time.monotonic()
+    left = end - _now()
     if left <= 0:
         raise timed_out()
     return left

@@ -26,8 +26,8 @@ from loadpath.algebra.terms import (
     times,
     write,
 )
-from loadpath.algebra.trees import ZERO, decimals_in, depends_on, is_zero, replaced
-from loadpath.formula.tree import Binary, Bracket, Call, Name, Node
+from loadpath.algebra.trees import ZERO, decimals_in, depends_on, is_zero
+from loadpath.formula.tree import Binary, Bracket, Call, Name, Node, rebuilt
 
 AboveZero = Callable[[Node], bool]
 """The caller's answer, from values, to whether a tree without the variable is above zero."""
@@ -149,7 +149,7 @@ def denominators(f: Node, x: str) -> tuple[Node, ...]:
                 found[Call("cos", (only,))] = None
         return None
 
-    replaced(f, look)
+    rebuilt(f, look)
     return tuple(found)
 
 
@@ -163,7 +163,7 @@ def _at(terms: Terms, x: str, place: Node, above_zero: AboveZero) -> Terms:
             return _bracket_at(node, x, place, start, above_zero)
         return None
 
-    opened = read(replaced(write(terms), change))
+    opened = read(rebuilt(write(terms), change))
     return settled(put(opened, x, ZERO if start else place))
 
 

@@ -12,8 +12,8 @@ from loadpath.algebra.frame import framed
 from loadpath.algebra.powers import holds, polynomial, put, split
 from loadpath.algebra.primitives import asked
 from loadpath.algebra.terms import Terms, expanded, merged, product, read, scaled, settled, sign
-from loadpath.algebra.trees import ZERO, decimals_in, depends_on, replaced
-from loadpath.formula.tree import Binary, Bracket, Name, Node, Number
+from loadpath.algebra.trees import ZERO, decimals_in, depends_on
+from loadpath.formula.tree import Binary, Bracket, Name, Node, Number, rebuilt
 
 
 def limit(f: Node, x: str, a: Node, *, seconds: float | None = None) -> Node | None:
@@ -68,7 +68,7 @@ def _sides(f: Node, x: str, a: Node) -> list[Node]:
             live = on if known == 0 else known > 0
             return Binary("^", node.inner, Number(str(node.power))) if live else ZERO
 
-        out.append(replaced(f, change))
+        out.append(rebuilt(f, change))
     return out
 
 

@@ -2,15 +2,14 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Iterable
+from collections.abc import Iterable
 from dataclasses import MISSING, fields, replace
 from fractions import Fraction
-from typing import Any
 
 from loadpath.algebra.failure import too_large
+from loadpath.formula.binding import put_in
 from loadpath.formula.tree import (
     Binary,
-    Branch,
     Name,
     Negative,
     Node,
@@ -19,6 +18,7 @@ from loadpath.formula.tree import (
     Part,
     Quantity,
     walk,
+    with_children,
 )
 
 ZERO = Number("0")
@@ -36,34 +36,13 @@ def depends_on(f: Node, x: str) -> bool:
 
 def substitute_name(f: Node, x: str, node: Node) -> Node:
     """The tree with a tree in place of each use of a name."""
-    if isinstance(f, Name):
-        return node if f.name == x else f
-    return changed_below(f, lambda child: substitute_name(child, x, node))
-
-
-def changed_below(node: Node, change: Callable[[Node], Node]) -> Node:
-    """The node with each of its direct children changed; branches of `cases` included."""
-    new = {}
-    for field in fields(node):
-        value = getattr(node, field.name)
-        if isinstance(value, (Node, Branch)):
-            new[field.name] = _one(value, change)
-        elif isinstance(value, tuple) and value and isinstance(value[0], (Node, Branch)):
-            new[field.name] = tuple(_one(item, change) for item in value)
-    return replace(node, **new) if new else node
-
-
-def _one(value: Node | Branch, change: Callable[[Node], Node]) -> Any:
-    if isinstance(value, Branch):
-        condition = None if value.condition is None else change(value.condition)
-        return Branch(change(value.value), condition)
-    return change(value)
+    return put_in(f, {x: node})
 
 
 def without_spans(node: Node) -> Node:
     """The same tree, typed nowhere."""
     spans = {f.name: f.default for f in fields(node) if not f.compare and f.default is not MISSING}
-    return changed_below(replace(node, **spans) if spans else node, without_spans)
+    return with_children(replace(node, **spans) if spans else node, without_spans)
 
 
 def size(node: Node) -> int:
@@ -153,7 +132,7 @@ def decimals_in(node: Node) -> bool:
         found = found or decimals_in(child)
         return child
 
-    changed_below(node, look)
+    with_children(node, look)
     return found
 
 
@@ -176,9 +155,3 @@ def negated(node: Node) -> Node:
         case Negative(operand=operand):
             return operand
     return Negative(node)
-
-
-def replaced(node: Node, change: Callable[[Node], Node | None]) -> Node:
-    """Top down: where `change` gives a tree it stands in place of the node."""
-    new = change(node)
-    return new if new is not None else changed_below(node, lambda child: replaced(child, change))

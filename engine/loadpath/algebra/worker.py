@@ -54,6 +54,10 @@ class Algebra:
         self.logs = (sympy.asinh, sympy.acosh, sympy.atanh, sympy.acoth)
         self.periodic = (sympy.sin, sympy.cos, sympy.tan, sympy.sec)
 
+    def ready(self) -> bool:
+        """The first answer: SymPy is loaded."""
+        return True
+
     # --- wire ---
 
     def symbol(self, number: int) -> Any:

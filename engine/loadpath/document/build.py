@@ -33,7 +33,7 @@ from loadpath.document.model import (
 from loadpath.document.steps import StepWriter, is_listed, ref
 from loadpath.findings import Finding
 from loadpath.formula.names import plain_symbol
-from loadpath.formula.statements import Criterion
+from loadpath.formula.statements import Column, Criterion
 from loadpath.formula.tree import Shown
 from loadpath.sheet import Formulas, Heading, Image, Value, Words
 from loadpath.sheet import Prose as SheetProse
@@ -238,7 +238,7 @@ class _Builder:
         front = self.front
         cited: dict[str, list[Ref]] = defaultdict(list)
         for step in self.trace.steps:
-            for key in step.sources:
+            for key in step.sources if not isinstance(step.statement, Column) else ():
                 cited[key].append(Ref(step.number))
         findings = tuple(
             (f, self.placed.get(i, f"f{i + 1}" if f.severity != "note" else ""))

@@ -17,7 +17,7 @@ from loadpath.document.model import (
     TableColumn,
 )
 from loadpath.formula.names import plain_symbol
-from loadpath.formula.statements import Column, Definition, Plot, Table, Tabulate
+from loadpath.formula.statements import Column, Criterion, Definition, Plot, Table, Tabulate
 from loadpath.formula.tree import Name, Node, Shown
 from loadpath.trace import Curve, Step, texts
 from loadpath.trace.digits import exact_digits, ratio_text
@@ -35,15 +35,16 @@ FEW = 2
 
 
 def table_block(writer: StepWriter, step: Step, statement: Table, head: Head, index: int) -> TableBlock:
-    """A table of data with its columns, which are the steps that follow it."""
+    """A table of data with its columns, which are the steps that follow it, within its lines."""
     if statement.two_way is not None:
         return _two_way(writer, statement, head)
     columns = []
     for place in range(index + 1, len(writer.trace.steps)):
         of = writer.trace.steps[place]
-        if not isinstance(of.statement, Column) or of.statement.table != statement.name:
+        if of.statement.span.start > statement.span.end:
             break
-        columns.append(_column(writer, of, of.statement, place))
+        if isinstance(of.statement, Column):  # one that could not be read is a row of its own
+            columns.append(_column(writer, of, of.statement, place))
     return TableBlock(head, statement.name, statement.head, statement.labels, tuple(columns))
 
 
@@ -96,7 +97,7 @@ def column_block(writer: StepWriter, step: Step, statement: Definition, head: He
     if working is not None and working.typed is not None:
         sides, lines = (working.typed, working.tree), writer.lines(working)
     rows = tuple(_row(writer, step, i) for i in range(len(step.rows)))
-    return ColumnBlock(head, Name(statement.name), sides, rows, (*lines, *_said_of_rows(writer, step)))
+    return ColumnBlock(head, Name(statement.name), sides, rows, (*lines, *said_of_rows(writer, step)))
 
 
 def _row(writer: StepWriter, step: Step, index: int) -> ColumnRow:
@@ -107,7 +108,7 @@ def _row(writer: StepWriter, step: Step, index: int) -> ColumnRow:
     return ColumnRow(row.label, sides, shown, put.closes if put else True, writer.calls(row.working))
 
 
-def _said_of_rows(writer: StepWriter, step: Step) -> tuple[Line, ...]:
+def said_of_rows(writer: StepWriter, step: Step) -> tuple[Line, ...]:
     """What is said beneath the rows, each thing once: `web, doubler: min: governed by h`."""
     said: dict[Line, list[int]] = defaultdict(list)
     for i, row in enumerate(step.rows):
@@ -132,6 +133,7 @@ def _rows(labels: list[str], of: list[int]) -> str:
 def judged_lines(writer: StepWriter, step: Step) -> tuple[JudgedLine, ...]:
     """The rows of a criterion, a validity or a check on columns."""
     out = []
+    worst = step.governing if isinstance(step.statement, Criterion) else None
     for i, row in enumerate(step.rows):
         if row.verdict is None:
             continue
@@ -142,8 +144,8 @@ def judged_lines(writer: StepWriter, step: Step) -> tuple[JudgedLine, ...]:
                 writer.lines_of(step, compared),
                 ratio_text(row.verdict),
                 verdict_words_of(step, row.verdict, plain_symbol),
-                i == step.governing,
-                i == step.governing or row.verdict.satisfied is not True or row.verdict.one_sided,
+                i == worst,
+                i == worst or row.verdict.satisfied is not True or row.verdict.one_sided,
                 writer.calls(row.working) if row.working else (),
             )
         )

@@ -4,26 +4,11 @@ whole expressions."""
 from __future__ import annotations
 
 from collections.abc import Callable
-from dataclasses import replace
 
 from loadpath.evaluate.failure import Failure
 from loadpath.formula.binding import put_in
 from loadpath.formula.statements import FunctionDefinition
-from loadpath.formula.tree import (
-    As,
-    At,
-    Binary,
-    Bracket,
-    Branch,
-    Call,
-    Cases,
-    Logic,
-    Negative,
-    Node,
-    Relation,
-    span_of,
-    walk,
-)
+from loadpath.formula.tree import Call, Node, span_of, walk, with_children
 from loadpath.text import Span
 
 MOST_NODES = 20_000
@@ -34,29 +19,7 @@ FunctionOf = Callable[[str], FunctionDefinition | None]
 def mapped(node: Node, change: Callable[[Node], Node]) -> Node:
     """The tree with `change` done to each node, the lowest first."""
 
-    def go(each: Node) -> Node:
-        match each:
-            case Negative(operand=operand) | As(operand=operand):
-                each = replace(each, operand=go(operand))
-            case At():
-                return each
-            case Binary(left=left, right=right):
-                each = replace(each, left=go(left), right=go(right))
-            case Call(arguments=arguments):
-                each = replace(each, arguments=tuple(go(a) for a in arguments))
-            case Bracket(inner=inner):
-                each = replace(each, inner=go(inner))
-            case Relation(operands=operands) | Logic(operands=operands):
-                each = replace(each, operands=tuple(go(o) for o in operands))
-            case Cases(branches=branches):
-                each = replace(each, branches=tuple(branch(b) for b in branches))
-        return change(each)
-
-    def branch(each: Branch) -> Branch:
-        condition = None if each.condition is None else go(each.condition)
-        return replace(each, value=go(each.value), condition=condition)
-
-    return go(node)
+    return change(with_children(node, lambda child: mapped(child, change)))
 
 
 def inlined(node: Node, function: FunctionOf, place: Span | None = None) -> Node:

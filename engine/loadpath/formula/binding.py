@@ -5,22 +5,7 @@ from __future__ import annotations
 from collections.abc import Mapping
 from dataclasses import replace
 
-from loadpath.formula.tree import (
-    As,
-    At,
-    Binary,
-    Bracket,
-    Branch,
-    Call,
-    Cases,
-    Factor,
-    Logic,
-    Name,
-    Negative,
-    Node,
-    Relation,
-    children,
-)
+from loadpath.formula.tree import Branch, Call, Name, Node, children, with_children
 
 BRINGS_ITS_OWN: dict[str, tuple[int, ...]] = {
     "integral": (4,), "sum": (4,), "limit_of": (3,),
@@ -59,39 +44,16 @@ def free_names(node: Node | Branch, bound: frozenset[str] = frozenset()) -> set[
 
 def put_in(node: Node, values: Mapping[str, Node]) -> Node:
     """The tree with other trees in place of names; what lives only within a call stays its own."""
-    if not values:
-        return node
-    match node:
-        case Name(name=name):
-            return values.get(name, node)
-        case Call():
-            return _put_in_call(node, values)
-        case Negative(operand=operand) | As(operand=operand):
-            return replace(node, operand=put_in(operand, values))
-        case At(operand=operand, row=row):
-            return replace(node, operand=put_in(operand, values), row=put_in(row, values))
-        case Binary(left=left, right=right):
-            return replace(node, left=put_in(left, values), right=put_in(right, values))
-        case Bracket(inner=inner):
-            return replace(node, inner=put_in(inner, values))
-        case Factor(body=body):
-            return replace(node, body=put_in(body, values))
-        case Relation(operands=operands) | Logic(operands=operands):
-            return replace(node, operands=tuple(put_in(each, values) for each in operands))
-        case Cases(branches=branches):
-            return replace(node, branches=tuple(_put_in_branch(each, values) for each in branches))
-    return node
-
-
-def _put_in_branch(branch: Branch, values: Mapping[str, Node]) -> Branch:
-    condition = None if branch.condition is None else put_in(branch.condition, values)
-    return replace(branch, value=put_in(branch.value, values), condition=condition)
+    if isinstance(node, Name):
+        return values.get(node.name, node)
+    if isinstance(node, Call) and own_name(node) is not None:
+        return _put_in_call(node, values)
+    return with_children(node, lambda child: put_in(child, values))
 
 
 def _put_in_call(call: Call, values: Mapping[str, Node]) -> Call:
     own = own_name(call)
-    if own is None:
-        return replace(call, arguments=tuple(put_in(each, values) for each in call.arguments))
+    assert own is not None
     body, outer = call.arguments[0], call.arguments[2:]
     inner = {name: tree for name, tree in values.items() if name != own.name}
     used = free_names(body)

@@ -88,8 +88,10 @@ class Cursor:
         return last.group() if last else ""
 
     def span(self, start: int, end: int | None = None) -> Span:
-        """Indexes as a span of the source, up to the place where none is given."""
-        return Span(self.item.start + start, self.item.start + (self.at if end is None else end))
+        """Indexes as a span of the source; where no end is given, up to the blanks before the place."""
+        if end is None:
+            end = start + len(self.text[start : self.at].rstrip())
+        return Span(self.item.start + start, self.item.start + end)
 
     def here(self, length: int = 1) -> Span:
         """The next characters, or the last one where the text is over."""

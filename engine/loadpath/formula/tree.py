@@ -8,8 +8,8 @@ Whatever is done with formulas (printing, substitution, dimensions, numbers) is 
 
 from __future__ import annotations
 
-from collections.abc import Iterator
-from dataclasses import dataclass, field
+from collections.abc import Callable, Iterator
+from dataclasses import dataclass, field, replace
 from typing import Literal
 
 from loadpath.text import Span
@@ -231,6 +231,36 @@ def children(node: Node | Branch) -> Iterator[Node | Branch]:
             yield from value
         elif value is not None:
             yield value
+
+
+def with_children(node: Node, change: Callable[[Node], Node]) -> Node:
+    """The node with each tree directly below changed, those of the branches of `cases` too; the node itself
+    where nothing is."""
+    new: dict[str, Node | tuple[Node | Branch, ...]] = {}
+    for name in _CHILDREN.get(type(node), ()):
+        old = getattr(node, name)
+        if isinstance(old, tuple):
+            items = tuple(_changed(item, change) for item in old)
+            if any(a is not b for a, b in zip(items, old, strict=True)):
+                new[name] = items
+        elif (item := change(old)) is not old:
+            new[name] = item
+    return replace(node, **new) if new else node
+
+
+def _changed(item: Node | Branch, change: Callable[[Node], Node]) -> Node | Branch:
+    if isinstance(item, Node):
+        return change(item)
+    value, condition = change(item.value), None if item.condition is None else change(item.condition)
+    if value is item.value and condition is item.condition:
+        return item
+    return replace(item, value=value, condition=condition)
+
+
+def rebuilt(node: Node, change: Callable[[Node], Node | None]) -> Node:
+    """Top down: where `change` gives a tree it stands for the node; else the nodes below are asked."""
+    new = change(node)
+    return new if new is not None else with_children(node, lambda child: rebuilt(child, change))
 
 
 def walk(node: Node | Branch) -> Iterator[Node | Branch]:

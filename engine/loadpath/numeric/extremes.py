@@ -8,12 +8,12 @@ from dataclasses import dataclass, replace
 from itertools import pairwise
 from typing import Literal
 
-from loadpath.formula.tree import Bracket, Node
+from loadpath.formula.tree import Bracket, Node, rebuilt
 from loadpath.numeric.pieces import CRUMB, Piece, begins_at, bracket_places, jumps, pieces, same_place
 from loadpath.numeric.polynomial import at, derivative, roots_in_unit
 from loadpath.numeric.search import edge, lowest_between
 from loadpath.numeric.sides import beside, evenly, sides, spread_of
-from loadpath.numeric.trees import ZERO, Worth, holding, mapped, unrolled
+from loadpath.numeric.trees import ZERO, Worth, holding, unrolled
 from loadpath.numeric.trouble import Curve, check_bounds, signed, tried, worked
 
 Where = Literal["end", "break", "turning point", "left of a jump", "right of a jump", "sample"]
@@ -83,8 +83,7 @@ def left_of(node: Node, x: str, at: float, value: Worth) -> Node:
             return None
         return ZERO if begins_at(each, x, at, value) else None
 
-    new: Node = mapped(node, change)
-    return new
+    return rebuilt(node, change)
 
 
 def extremes(

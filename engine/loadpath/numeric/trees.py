@@ -3,11 +3,20 @@
 from __future__ import annotations
 
 from collections.abc import Callable
-from dataclasses import fields, replace
-from typing import Any
 
 from loadpath.formula.binding import own_name, put_in
-from loadpath.formula.tree import Binary, Branch, Call, Negative, Node, Number, Quantity, children, walk
+from loadpath.formula.tree import (
+    Binary,
+    Branch,
+    Call,
+    Negative,
+    Node,
+    Number,
+    Quantity,
+    children,
+    rebuilt,
+    walk,
+)
 from loadpath.units import parse_unit
 
 ZERO, ONE = Number("0"), Number("1")
@@ -32,19 +41,6 @@ def holding(node: Node, names: frozenset[str]) -> frozenset[int]:
     return frozenset(found)
 
 
-def mapped(node: Any, change: Callable[[Node], Node | None]) -> Any:
-    """The tree with nodes changed from the top down; where `change` gives None, the nodes below are asked."""
-    if isinstance(node, tuple):
-        return tuple(mapped(each, change) for each in node)
-    if not isinstance(node, Node | Branch):
-        return node
-    if isinstance(node, Node) and (new := change(node)) is not None:
-        return new
-    below = {field.name: getattr(node, field.name) for field in fields(node)}
-    changed = {name: new for name, old in below.items() if (new := mapped(old, change)) != old}
-    return replace(node, **changed) if changed else node
-
-
 def unrolled(node: Node, x: str, value: Worth) -> Node:
     """The tree with each `sum(f, k, m, n)` that holds the name written out term by term."""
     if not any(isinstance(each, Call) and each.function == "sum" for each in walk(node)):
@@ -66,8 +62,7 @@ def unrolled(node: Node, x: str, value: Worth) -> Node:
             whole = Binary("+", whole, term)
         return unrolled(whole, x, value)
 
-    new: Node = mapped(node, change)
-    return new
+    return rebuilt(node, change)
 
 
 def _counted(k: int) -> Node:

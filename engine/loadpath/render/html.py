@@ -181,7 +181,7 @@ def _tail(value: Shown | None) -> float | None:
     text = printed(value) if value is not None and not value.word else ""
     if not re.fullmatch(f"{MINUS}?[0-9.{NARROW}]+", text):
         return None
-    whole, point, part = text.partition(".")
+    _, point, part = text.partition(".")
     return len(part.replace(NARROW, "")) + GAP * part.count(NARROW) + POINT * len(point)
 
 

@@ -4,7 +4,7 @@ beside it."""
 from __future__ import annotations
 
 import re
-from collections.abc import Callable
+from collections.abc import Callable, Sequence
 from functools import lru_cache
 from itertools import chain
 from typing import Any
@@ -65,7 +65,7 @@ def render(document: Document, stem: str) -> tuple[str, dict[str, bytes]]:
 @lru_cache(maxsize=1)
 def _environment() -> Any:
     filters: dict[str, Callable[..., Any]] = {
-        "display": _display,
+        "display": lambda node: _aligned([node]),
         "equation": lambda name, sides: Markup(f"$$\n{latex_lines(name, sides)}\n$$"),
         "inline": _inline_math,
         "shown": _shown,
@@ -75,7 +75,7 @@ def _environment() -> Any:
         "call": _call,
         "alt": _alt,
         "own_name": lambda name: name.rpartition(".")[2],
-        "aligned": lambda equations: Markup(f"$$\n{latex_equations(equations)}\n$$"),
+        "aligned": _aligned,
         "cell": lambda text: Markup(str(_escape(text)).replace("\n", " ")),
     }
     return environment(filters, _escape)
@@ -104,10 +104,10 @@ def _shown(value: Shown | str) -> Markup:
     return escape(f"“{value.number}”" if value.word else quantity(value.number, value.unit))
 
 
-def _display(node: Node) -> Markup:
-    """A formula on its own, broken where it is longer than a line."""
-    lines = latex_equations([node])
-    return Markup(f"$$\n{lines if BREAK in lines else latex(node)}\n$$")
+def _aligned(nodes: Sequence[Node]) -> Markup:
+    """Formulas on their own, one beneath the other; each is broken where it is longer than a line."""
+    lines = latex_equations(nodes)
+    return Markup(f"$$\n{lines if BREAK in lines else latex(nodes[0])}\n$$")
 
 
 def _inline_math(node: Node) -> Markup:
