@@ -167,11 +167,15 @@ class Algebra:
 
     # --- what is asked ---
 
-    def antiderivative(self, f: Any, x: Any) -> Any:
-        """An antiderivative that was differentiated and compared."""
+    def antiderivative(self, f: Any, x: Any, quick: bool) -> Any:
+        """An antiderivative that was differentiated and compared.
+
+        `quick`: without the two searches that may take long for nothing.
+        """
         s = self.s
+        slow = {"heurisch": False, "meijerg": False} if quick else {}
         for form in dict.fromkeys((f, s.expand(f))):
-            found = self.general(s.integrate(form, x))
+            found = self.general(s.integrate(form, x, **slow))
             if found is None or found.has(s.Integral):
                 continue
             self.wire(found)
@@ -207,7 +211,7 @@ class Algebra:
     def integrate(self, f: Wire, **_: Any) -> Any:
         """An antiderivative and its value at 0, None where it has none."""
         x = self.symbol(0)
-        found = self.antiderivative(self.build(f), x)
+        found = self.antiderivative(self.build(f), x, quick=False)
         at_zero = self.at(found, x, self.s.Integer(0))
         return {"form": self.wire(found), "at_zero": None if at_zero is None else self.wire(at_zero)}
 
@@ -226,7 +230,7 @@ class Algebra:
     def definite(self, f: Wire, a: Wire, b: Wire) -> Wire:
         """F(b) - F(a), written shortly."""
         x = self.symbol(0)
-        found = self.antiderivative(self.build(f), x)
+        found = self.antiderivative(self.build(f), x, quick=True)
         ends = [self.at(found, x, self.build(w)) for w in (a, b)]
         if ends[0] is None or ends[1] is None:
             raise NoForm

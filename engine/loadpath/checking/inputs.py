@@ -118,7 +118,8 @@ def _leaves_of_calls(trace: Trace) -> Iterator[Node]:
     for step in trace:
         for tree in expressions(step.statement):
             for node in walk(tree):
-                if isinstance(node, Call) and node.function in FUNCTIONS and FUNCTIONS[node.function].angle:
+                of = FUNCTIONS.get(node.function) if isinstance(node, Call) and node.arguments else None
+                if isinstance(node, Call) and of is not None and of.angle:
                     yield from _angles_in(node.arguments[0])
 
 

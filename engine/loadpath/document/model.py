@@ -206,6 +206,8 @@ class SolutionRow:
     name: Node
     equations: tuple[Relation, ...]
     """As typed, on the first of the steps that share them; else ()."""
+    notes: tuple[tuple[Inline, ...], ...]
+    """Those of each equation."""
     derived: tuple[Relation, ...]
     """The same with integrals and derivatives worked, where algebra had something to do."""
     bounds: tuple[Relation, ...]

@@ -40,7 +40,15 @@ def _picture(drawn: Curves, digits: int) -> Picture:
     curves = tuple(
         _drawn(drawn, curve, digits, name) for curve, name in zip(drawn.curves, names, strict=True)
     )
-    return Picture(plain_symbol(drawn.variable), _symbol(drawn.unit), curves, "")
+    alt = "" if all(curve.largest for curve in drawn.curves) else _alt(drawn, curves)
+    return Picture(plain_symbol(drawn.variable), _symbol(drawn.unit), curves, alt)
+
+
+def _alt(drawn: Curves, curves: tuple[Drawn, ...]) -> str:
+    """What a plot shows whose extremes were not all sought."""
+    a, b = (_joined(_number(drawn.unit, x, 4), drawn.unit) for x in (drawn.low, drawn.high))
+    names = ", ".join(f"{c.name} in {c.unit}" if c.unit else c.name for c in curves)
+    return f"Plot of {names} against {plain_symbol(drawn.variable)}, from {a} to {b}; with gaps or poles."
 
 
 def _drawn(drawn: Curves, curve: Curve, digits: int, named: tuple[str, str]) -> Drawn:

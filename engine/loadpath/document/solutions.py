@@ -49,6 +49,7 @@ def solution_row(writer: StepWriter, step: Step, statement: Solution, head: Head
         head,
         Name(statement.name),
         together.equations if first else (),
+        tuple(writer.inlines(notes) for notes in together.notes) if first else (),
         solved.derived if solved and first and solved.derived != together.equations else (),
         _bounds(statement) if first else (),
         solved.method if solved and first else "",

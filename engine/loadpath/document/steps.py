@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections import defaultdict
-from dataclasses import dataclass, field, replace
+from dataclasses import dataclass, field
 from textwrap import dedent
 
 from loadpath.document.model import (
@@ -23,9 +23,8 @@ from loadpath.document.model import (
     StepBlock,
 )
 from loadpath.document.solutions import solution_row, unknown_row
-from loadpath.document.tables import column_block, judged_lines, table_block, value_table
+from loadpath.document.tables import column_block, judged_lines, said_of_rows, table_block, value_table
 from loadpath.findings import Finding
-from loadpath.formula.binding import own_name
 from loadpath.formula.names import plain_symbol
 from loadpath.formula.statements import (
     Check,
@@ -175,8 +174,9 @@ class StepWriter:
         alone = next((c for c in working.calls if c.call == working.tree and is_looking(c.call)), None)
         calls = () if alone else self.calls(working)
         if alone is not None:
-            sides += (alone.working.written,) if alone.working.written else ()
-            lines += self.lines(alone.working)
+            look = self._look(alone, working)
+            sides += look.sides or ((look.call,) if look.call != working.tree else ())
+            lines += look.conditions
         return ResultRow(
             head,
             name,
@@ -186,6 +186,7 @@ class StepWriter:
             self.branches(statement, statement.value, working),
             lines,
             calls,
+            None if working.typed is None else 0 if working.taken else 1,
         )
 
     def branches(self, statement: Statement, value: Node, working: Working | None) -> tuple[BranchRow, ...]:
@@ -268,12 +269,9 @@ class StepWriter:
         """A call that looks at a whole expression or column: its value, and what was looked at."""
         put = texts.call_substitution(self.trace, called)
         sides = (put.tree,) if put else ()
-        call = called.call
-        if own_name(call) is not None:  # the range as it stands here
-            scope = texts.scope_of(self.trace, outer)
-            bounds = tuple(substitute(a, scope, outer.calls) for a in call.arguments[2:])
-            call = replace(call, arguments=(*call.arguments[:2], *bounds))
-        return CallLine(call, sides, shown(called.value), True, self.lines(called.working))
+        call, more = texts.looked_call(self.trace, called, outer)
+        lines = (*self.lines(called.working), *((_FURTHER,) if more else ()))
+        return CallLine(call, sides, shown(called.value), True, lines)
 
     def _function(self, step: Step, statement: FunctionDefinition, head: Head) -> FunctionRow:
         name = Call(statement.name, tuple(Name(p.name) for p in statement.parameters))
@@ -311,11 +309,16 @@ class StepWriter:
             is_listed(step),
             verdict.satisfied is not None,
             verdict.satisfied,
-            (*self._governing(step, statement), *(self.lines(step.working) if step.working else ())),
+            (*self._governing(step, statement), *self._said(step)),
             self.calls(step.working) if step.working and not step.rows else (),
             rows=judged_lines(self, step),
             derived=_derived(step),
         )
+
+    def _said(self, step: Step) -> tuple[Line, ...]:
+        if step.rows:
+            return said_of_rows(self, step)
+        return self.lines(step.working) if step.working else ()
 
     def _faulty_criterion(self, step: Step, head: Head) -> CriterionBox:
         kind = criterion_kind(step)
@@ -444,7 +447,8 @@ def _own_notes(statement: Statement) -> tuple[Note, ...]:
 def ref(step: Step) -> Ref:
     """A link to a step, by name and number."""
     if step.verdict is not None or not step.entry.name:
-        words = step.id if step.kind not in ("valid", "check") else step.kind
+        words = step.kind if step.kind in ("valid", "check", "plot") else step.id
+        words = "table" if isinstance(step.statement, Tabulate) else words
         return Ref(step.number, words, is_name=False)
     return Ref(step.number, step.entry.name)
 

@@ -19,7 +19,8 @@ from loadpath.document.model import (
 from loadpath.formula.names import plain_symbol
 from loadpath.formula.statements import Column, Criterion, Definition, Plot, Table, Tabulate
 from loadpath.formula.tree import Name, Node, Shown
-from loadpath.trace import Curve, Step, texts
+from loadpath.resolve import is_looking
+from loadpath.trace import Curve, Step, Working, texts
 from loadpath.trace.digits import exact_digits, ratio_text
 from loadpath.trace.file import verdict_words_of
 from loadpath.units import Unit
@@ -104,8 +105,16 @@ def _row(writer: StepWriter, step: Step, index: int) -> ColumnRow:
     row, put = step.rows[index], texts.row_substitution(writer.trace, step, index)
     shown = texts.row_shown(step, index)
     assert shown is not None and row.working is not None
-    sides = (put.tree,) if put is not None and not isinstance(put.tree, Shown) else ()
-    return ColumnRow(row.label, sides, shown, put.closes if put else True, writer.calls(row.working))
+    sides: tuple[Node, ...] = (put.tree,) if put is not None and not isinstance(put.tree, Shown) else ()
+    calls = writer.calls(row.working)
+    if _is_one_look(row.working):
+        sides, calls = (*calls[0].sides, calls[0].call)[:1], ()
+    return ColumnRow(row.label, sides, shown, put.closes if put else True, calls)
+
+
+def _is_one_look(working: Working) -> bool:
+    """True where a row is nothing but one call that looks at a whole expression or column."""
+    return bool(working.calls) and working.calls[0].call == working.tree and is_looking(working.calls[0].call)
 
 
 def said_of_rows(writer: StepWriter, step: Step) -> tuple[Line, ...]:
@@ -114,7 +123,8 @@ def said_of_rows(writer: StepWriter, step: Step) -> tuple[Line, ...]:
     for i, row in enumerate(step.rows):
         put = texts.row_substitution(writer.trace, step, i)
         if row.working is not None:
-            for line in dict.fromkeys((*writer.lines(row.working), *writer.further_digits(put))):
+            looked = writer.calls(row.working)[0].conditions if _is_one_look(row.working) else ()
+            for line in dict.fromkeys((*writer.lines(row.working), *writer.further_digits(put), *looked)):
                 said[line].append(i)
     labels = [row.label for row in step.rows]
     return tuple(Line((_rows(labels, of), *line.parts)) for line, of in said.items())

@@ -11,13 +11,27 @@ from typing import Any
 from loadpath import algebra
 from loadpath.algebra import AlgebraFailure
 from loadpath.evaluate.failure import Failure, short
-from loadpath.evaluate.inline import inlined, mapped, too_large
+from loadpath.evaluate.inline import inlined, mapped, rows_written_out, too_large
 from loadpath.evaluate.numbers import Compiler, Values, part_value
 from loadpath.evaluate.special import integrate, whole_bounds
 from loadpath.evaluate.symbolic import is_symbolic
 from loadpath.formula.binding import own_name, put_in
 from loadpath.formula.mistake import Mistake
-from loadpath.formula.tree import Binary, Call, Cases, Name, Negative, Node, Number, Quantity, Relation, walk
+from loadpath.formula.tree import (
+    Binary,
+    Bracket,
+    Branch,
+    Call,
+    Cases,
+    Name,
+    Negative,
+    Node,
+    Number,
+    Quantity,
+    Relation,
+    walk,
+)
+from loadpath.functions import FUNCTIONS
 from loadpath.resolve import Resolved, Type
 from loadpath.trace.model import Aside
 
@@ -97,6 +111,8 @@ class Deriver:
 
     def _worked(self, call: Call, types: dict[str, Type]) -> Node:
         f = inlined(call.arguments[0], self.compiler.function, call.at)
+        if len(call.arguments) > 1 and isinstance(call.arguments[1], Name):
+            f = rows_written_out(f, frozenset([_second(call)]), self.compiler.columns)
         match call.function:
             case "integral" if len(call.arguments) == 4:
                 return self._definite(call, f, types)
@@ -107,7 +123,7 @@ class Deriver:
             case "limit_of":
                 return self._limit(call, f, types)
             case "simplified":
-                return self._fitting(call, algebra.simplified(f), types) or call.arguments[0]
+                return self._simplified(call, f, types)
         return self._sum(call, f)
 
     # --- one kind after the other ---
@@ -142,7 +158,7 @@ class Deriver:
         tree = None if found is None else self._fitting(call, found, types)
         if tree is None or not self._agrees(call, f, tree):
             if not self.known:
-                said = "has no closed form: worked numerically, where it is called"
+                said = "has no closed form that was found: worked numerically, where it is called"
                 self.asides.append(Aside("", call, said))
             return call
         return tree
@@ -186,7 +202,10 @@ class Deriver:
         return tree
 
     def _limit(self, call: Call, f: Node, types: dict[str, Type]) -> Node:
-        found = algebra.limit(f, _second(call), _bare_zero(call.arguments[2]))
+        place = call.arguments[2]
+        if self._is_regular(f, _second(call), place):
+            return put_in(f, {_second(call): place})
+        found = algebra.limit(f, _second(call), _bare_zero(place))
         tree = None if found is None else self._fitting(call, found, types)
         if tree is None and self._grows(call, f):
             raise Failure(
@@ -199,6 +218,23 @@ class Deriver:
                 "check whether it exists, from both sides",
             )  # fmt: skip
         return tree
+
+    def _is_regular(self, f: Node, x: str, place: Node) -> bool:
+        """True where an expression made of continuous functions has a value: that is its limit."""
+        if not all(_is_continuous(node) for node in walk(f)):
+            return False
+        try:
+            at = self.compiler.compile_tree(place)(self.values, _NO_PARAMETERS)
+            value = self.compiler.compile_tree(f, frozenset([x]))(self.values, {x: at})
+        except (ArithmeticError, ValueError, KeyError):
+            return False
+        return math.isfinite(value)
+
+    def _simplified(self, call: Call, f: Node, types: dict[str, Type]) -> Node:
+        found = self._fitting(call, algebra.simplified(f), types) or call.arguments[0]
+        if found != f:
+            self.asides.append(Aside("the same as", call.arguments[0], "wherever that has a value"))
+        return found
 
     def _grows(self, call: Call, f: Node) -> bool:
         """True where the expression is seen to grow ever faster towards the place of its limit."""
@@ -252,6 +288,14 @@ class Deriver:
             checker.warnings.clear()
         fits = wanted.unknown or found.unknown or found.zero or wanted.dimension == found.dimension
         return tree if fits else None
+
+
+def _is_continuous(node: Node | Branch) -> bool:
+    """True for an operation that is continuous wherever it has a value."""
+    if isinstance(node, Call):
+        function = FUNCTIONS.get(node.function)
+        return function is not None and function.rule != "steps" and node.function != "atan2"
+    return not isinstance(node, Cases | Branch) and not (isinstance(node, Bracket) and node.power == 0)
 
 
 def _joined(left: Node, right: Node) -> Node:

@@ -35,7 +35,7 @@ from loadpath.formula.statements import (
     Tabulate,
     Validity,
 )
-from loadpath.formula.tree import Node
+from loadpath.formula.tree import NOWHERE, Node
 from loadpath.resolve import Resolved, expressions, is_relative, relations_in
 from loadpath.sheet import Image, Sheet
 from loadpath.trace.digits import digits_of_verdict, exact_digits
@@ -308,6 +308,8 @@ class _Run:
     def _report(self, failure: Failure, planned: Planned) -> int:
         source = self.plan.resolved.sheet.source
         here = planned.outline.entry.statement.span
+        if failure.span == NOWHERE:  # inside what algebra made
+            failure.span = here
         inside = here.start <= failure.span.start < here.end
         remarks = () if inside else (Remark(f"worked for line {planned.outline.entry.line}", here),)
         new = finding(
@@ -399,11 +401,13 @@ class _Run:
                 keys = ", ".join(f"[{key}]" for key in planned.unread)
                 why = step.why or f"{keys} is no source or assumption that could be read"
                 verdict = Verdict(None, conditional_on=planned.assumed)
-                self.steps[index] = replace(step, verdict=verdict, why=why)
+                rows = tuple(replace(row, verdict=verdict) for row in step.rows)
+                self.steps[index] = replace(step, verdict=verdict, why=why, rows=rows, governing=None)
             elif missed := tuple(sorted(planned.ranged & (outside | set(unknown)))):
                 why = step.why or next((unknown[name] for name in missed if name in unknown), "")
                 verdict = Verdict(None, outside=missed, conditional_on=verdict.conditional_on)
-                self.steps[index] = replace(step, verdict=verdict, why=why)
+                rows = tuple(replace(row, verdict=verdict) for row in step.rows)
+                self.steps[index] = replace(step, verdict=verdict, why=why, rows=rows, governing=None)
             elif verdict.one_sided:
                 self.found.append(self._one_sided(step.statement, step.id, verdict))
 

@@ -26,6 +26,7 @@ from loadpath.formula.tree import (
     walk,
 )
 from loadpath.functions import FUNCTIONS
+from loadpath.resolve import is_looking
 from loadpath.text import Span
 from loadpath.units import parse_unit
 
@@ -100,6 +101,8 @@ class _Explanation:
         return float(self._finite(node, lambda: _OPERATIONS[node.operator](left, right), *known))
 
     def _call(self, node: Call, parameters: Values) -> Any:
+        if is_looking(node):
+            return self._finite(node, lambda: self._leaf(node, parameters))
         arguments = [self.value(argument, parameters) for argument in node.arguments]
         definition = self.compiler.function(node.function)
         if definition is not None:

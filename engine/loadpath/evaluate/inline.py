@@ -3,12 +3,26 @@ whole expressions."""
 
 from __future__ import annotations
 
-from collections.abc import Callable
+from collections.abc import Callable, Mapping
 
 from loadpath.evaluate.failure import Failure
-from loadpath.formula.binding import put_in
+from loadpath.formula.binding import free_names, put_in
 from loadpath.formula.statements import FunctionDefinition
-from loadpath.formula.tree import Call, Node, span_of, walk, with_children
+from loadpath.formula.tree import (
+    At,
+    Binary,
+    Call,
+    Name,
+    Node,
+    Number,
+    Word,
+    rebuilt,
+    span_of,
+    walk,
+    with_children,
+)
+from loadpath.resolve import Rows
+from loadpath.resolve.columns import is_brought_back
 from loadpath.text import Span
 
 MOST_NODES = 20_000
@@ -40,6 +54,33 @@ def inlined(node: Node, function: FunctionOf, place: Span | None = None) -> Node
         return put_in(body, given)
 
     return mapped(node, change)
+
+
+def rows_written_out(node: Node, names: frozenset[str], columns: Mapping[str, Rows]) -> Node:
+    """The tree with each `sum`, `min` or `max` of a column in which one of the names stands written out, a
+    cell a row: what looks over the name must see where it stands."""
+
+    def change(each: Node) -> Node | None:
+        if not (isinstance(each, Call) and is_brought_back(each) and free_names(each) & names):
+            return None
+        column = each.arguments[0]
+        held = sorted(free_names(column) & set(columns))
+        rows = [put_in(column, {name: _cell(name, columns[name], i) for name in held})
+                for i in range(columns[held[0]].count)]  # fmt: skip
+        if each.function == "count":
+            return Number(str(len(rows)))
+        if each.function != "sum":
+            return Call(each.function, tuple(rows), each.span, each.at)
+        total = rows[0]
+        for row in rows[1:]:
+            total = Binary("+", total, row, each.span, each.at)
+        return total
+
+    return rebuilt(node, change)
+
+
+def _cell(column: str, rows: Rows, index: int) -> Node:
+    return At(Name(column), Word(rows.labels[index]) if rows.labels else Number(str(index + 1)))
 
 
 def too_large(place: Span, most: int) -> Failure:

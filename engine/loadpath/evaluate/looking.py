@@ -157,7 +157,7 @@ class Looking:
     def _quadrature(self, call: Call, parameters: Values, value: Operand) -> Aside:
         found = integrate(self.of.compiler, call, self.of.values, parameters)
         error = Shown(plain(value.unit.from_si(found.error), ERROR_DIGITS), value.unit.text)
-        return Aside(f"no closed form: {found.method}, error estimate", error, "")
+        return Aside(f"no closed form found: {found.method}, error estimate", error, "")
 
     def _spots(self, call: Call, parameters: Values, types: dict[str, Type]) -> Iterator[Aside]:
         found = look_over(self.of.compiler, call, self.of.values, parameters)

@@ -146,8 +146,8 @@ class Compiler:
         assert isinstance(node.operand, Name)
         name, row = node.operand.name, node.row
         index = {label: i for i, label in enumerate(self.columns[name].labels)}
-        if isinstance(row, Word):
-            place = index[row.text]
+        if isinstance(row, Word | Number):
+            place = index[row.text] if isinstance(row, Word) else int(row.text) - 1
             return lambda e, p: e[name][place]
         assert isinstance(row, Name)
         choice = row.name

@@ -12,7 +12,7 @@ from loadpath import algebra
 from loadpath.algebra import AlgebraFailure
 from loadpath.evaluate.derive import Deriver
 from loadpath.evaluate.failure import Failure, Show, short
-from loadpath.evaluate.inline import inlined
+from loadpath.evaluate.inline import inlined, rows_written_out
 from loadpath.evaluate.numbers import Compiler, Values
 from loadpath.evaluate.special import bad_interval
 from loadpath.evaluate.symbolic import is_derived
@@ -97,7 +97,11 @@ class _Solver:
         return found
 
     def _inlined(self, equation: Relation) -> Relation:
-        sides = tuple(inlined(side, self.compiler.function) for side in equation.operands)
+        names, columns = frozenset(self.names), self.compiler.columns
+        sides = tuple(
+            rows_written_out(inlined(side, self.compiler.function), names, columns)
+            for side in equation.operands
+        )
         return Relation(sides, equation.signs, equation.span, equation.at)
 
     def _worth(self, node: Node, more: dict[str, float] | None = None) -> float:
@@ -274,7 +278,8 @@ class _Solver:
         )
         low, high = (self._shown(name, bound) for bound in bounds)
         if not found.found:
-            raise self._no_solution(f"no value of `{name}` between {low} and {high} solves the equation")
+            message = f"no value of `{name}` that solves the equation was found between {low} and {high}"
+            raise self._no_solution(message)
         return self._chosen(name, [_Root(value) for value in found.found], f"by {found.method}")
 
     def _chosen(self, name: str, roots: list[_Root], method: str) -> _Found:
@@ -330,23 +335,24 @@ class _Solver:
     def _search(self, bounds: list[tuple[float, float]]) -> list[tuple[float, ...]]:
         from scipy.optimize import least_squares
 
-        works = [self.compiler.compile_tree(_difference(e)) for e in self.equations]
+        works = [tuple(map(self.compiler.compile_tree, e.operands)) for e in self.equations]
         widths = [high - low for low, high in bounds]
 
         def residuals(t: Any) -> list[float]:
+            """Each as a share of its sides, so that no equation drowns another."""
             here = {n: low + s * w for n, (low, _), w, s in zip(self.names, bounds, widths, t, strict=True)}
+            values = {**self.values, **here}
             try:
-                return [float(work({**self.values, **here}, _NO_PARAMETERS)) for work in works]
+                sides = [[float(work(values, _NO_PARAMETERS)) for work in pair] for pair in works]
             except (ArithmeticError, ValueError):
-                return [1e30] * len(works)
+                return [2.0] * len(works)
+            return [(a - b) / ((abs(a) + abs(b)) or 1.0) for a, b in sides]
 
-        middle = residuals([0.5] * len(bounds))
-        scales = [max(abs(r), 1e-30) for r in middle]
         count = _starts(len(bounds))
         found: list[tuple[float, ...]] = []
         for start in product([(i + 0.5) / count for i in range(count)], repeat=len(bounds)):
             fit = least_squares(
-                lambda t: [r / s for r, s in zip(residuals(t), scales, strict=True)], start,
+                residuals, start,
                 bounds=(0, 1), xtol=1e-15, ftol=1e-15, gtol=1e-15,
             )  # fmt: skip
             here = tuple(low + float(s) * w for (low, _), w, s in zip(bounds, widths, fit.x, strict=True))
@@ -414,7 +420,7 @@ class _Solver:
         listed = ", ".join(self._shown(name, root.value) for root in roots[:LISTED])
         more = f" and {len(roots) - LISTED} more" if len(roots) > LISTED else ""
         where = "between the bounds" if self.bounds[name] else "of the equation"
-        message = f"there are {len(roots)} roots {where}: {name} = {listed}{more}"
+        message = f"{len(roots)} roots were found {where}: {name} = {listed}{more}"
         mend = f"say which by bounds: `solve for {name} between ... and ...`"
         return Failure("several-roots", lambda show: message, self._sought(name).span, mend)
 

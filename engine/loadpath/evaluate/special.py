@@ -10,7 +10,7 @@ from time import monotonic
 from typing import TYPE_CHECKING, Any
 
 from loadpath.evaluate.failure import Failure, Show, short
-from loadpath.evaluate.inline import inlined
+from loadpath.evaluate.inline import inlined, rows_written_out
 from loadpath.evaluate.limits import STEP_SECONDS
 from loadpath.evaluate.numbers import ROW, Compiler, Values, Work
 from loadpath.formula.binding import free_names, own_name
@@ -22,6 +22,8 @@ if TYPE_CHECKING:
 
 MOST_TERMS = 100_000
 """Of a `sum(f, k, m, n)`."""
+ROUNDING = 1e-15
+"""A sum below this share of its terms is nothing but their rounding."""
 WHOLE = 1e-9
 """A bound within this much of a whole number is that number."""
 
@@ -71,10 +73,16 @@ def cells(
     return lambda e, p: [work(e, {**p, ROW: i}) for i in range(count)]
 
 
+def total(values: list[float]) -> float:
+    """The sum; 0 where it is below the rounding of its terms."""
+    found = math.fsum(values)
+    return 0.0 if abs(found) <= ROUNDING * math.fsum(map(abs, values)) else found
+
+
 def _brought_back(compiler: Compiler, node: Call, parameters: frozenset[str]) -> Work:
     each = cells(compiler, node.arguments[0], parameters)
     together: dict[str, Callable[[list[float]], float]] = {
-        "sum": math.fsum, "min": min, "max": max, "count": lambda values: float(len(values)),
+        "sum": total, "min": min, "max": max, "count": lambda values: float(len(values)),
     }  # fmt: skip
     bring = together[node.function]
     return lambda e, p: bring(each(e, p))
@@ -128,45 +136,58 @@ def _mixed(values: list[float], rows: tuple[int, ...], share: float) -> float:
 
 
 def _row_not_above(node: Call, x: float, xs: list[float]) -> int:
+    twice = next((each for i, each in enumerate(xs) if each in xs[:i]), None)
+    if twice is not None:
+        raise Failure(
+            "not-rising",
+            lambda show: f"`{short(node.arguments[1])}` holds {show(node.arguments[0], twice)} twice",
+            span_of(node.arguments[1]), "keep one row for each value",
+        )  # fmt: skip
     below = [i for i, each in enumerate(xs) if each <= x + abs(x) * 1e-12]
     if not below:
-        raise _outside(node, node.arguments[0], x, min(xs), max(xs), "below its first row")
+        raise _outside(node, node.arguments[0], x, min(xs), max(xs), "below the first row")
     return max(below, key=lambda i: xs[i])
 
 
-def _between(node: Call, x: float, xs: list[float], asked: Node) -> tuple[tuple[int, ...], float]:
+DOWN, ACROSS = "the first column", "the header"
+
+
+def _between(
+    node: Call, x: float, xs: list[float], asked: Node, along: str = ""
+) -> tuple[tuple[int, ...], float]:
     """The rows that x lies on or between, and how far from the first to the second."""
-    _refuse_unordered(node, xs)
+    _refuse_unordered(node, xs, along)
     order = range(len(xs)) if xs[0] <= xs[-1] else range(len(xs) - 1, -1, -1)
     rows = list(order)
     for row in rows:
         if abs(x - xs[row]) <= 1e-12 * max(abs(x), abs(xs[row])):
             return (row,), 0.0
     if not xs[rows[0]] < x < xs[rows[-1]]:
-        raise _outside(node, asked, x, xs[rows[0]], xs[rows[-1]], "outside its rows")
+        raise _outside(node, asked, x, xs[rows[0]], xs[rows[-1]], "outside the rows")
     second = next(i for i, row in enumerate(rows) if xs[row] > x)
     a, b = rows[second - 1], rows[second]
     return (a, b), (x - xs[a]) / (xs[b] - xs[a])
 
 
-def _refuse_unordered(node: Call, xs: list[float]) -> None:
+def _refuse_unordered(node: Call, xs: list[float], along: str = "") -> None:
     steps = [b - a for a, b in pairwise(xs)]
     if all(step > 0 for step in steps) or all(step < 0 for step in steps):
         return
+    asked = node.arguments[1 if along == ACROSS else 0]
     up = bool(steps) and sum(step > 0 for step in steps) >= len(steps) / 2
     row = next((i for i, step in enumerate(steps) if (step <= 0) == up), 0)
     raise Failure(
         "not-rising",
-        lambda show: f"`{short(node.arguments[1])}` neither rises nor falls strictly: row {row + 2} is "
-        f"{show(node.arguments[1], xs[row + 1])} behind {show(node.arguments[1], xs[row])}",
-        span_of(node.arguments[1]), "sort the rows of the table, and keep one row for each value",
+        lambda show: f"{along or f'`{short(node.arguments[1])}`'} neither rises nor falls strictly: "
+        f"{show(asked, xs[row + 1])} stands behind {show(asked, xs[row])}",
+        span_of(node.arguments[2 if along else 1]), "sort the table, with one row (or one header cell) for each value",
     )  # fmt: skip
 
 
 def _outside(node: Call, asked: Node, x: float, low: float, high: float, where: str) -> Failure:
     def tell(show: Show) -> str:
         span = f"{show(asked, low)} to {show(asked, high)}"
-        return f"`{short(asked)}` is {show(asked, x)}, {where}, which go from {span}"
+        return f"`{short(asked)}` is {show(asked, x)}, {where}: the table goes from {span}"
 
     return Failure(
         "outside-table", tell, span_of(asked), "a table is never read beyond its rows: add the rows"
@@ -183,8 +204,8 @@ def _two_way(
     body = [[compiler.compile_tree(each) for each in row] for row in table.cells]
 
     def find(e: Values, p: Values) -> Found:
-        rows, s = _between(node, x(e, p), [each(e, {}) for each in down], node.arguments[0])
-        columns, t = _between(node, y(e, p), [each(e, {}) for each in across], node.arguments[1])
+        rows, s = _between(node, x(e, p), [each(e, {}) for each in down], node.arguments[0], DOWN)
+        columns, t = _between(node, y(e, p), [each(e, {}) for each in across], node.arguments[1], ACROSS)
         lines = [_mixed([body[i][j](e, {}) for j in range(len(across))], columns, t) for i in rows]
         value = lines[0] if len(lines) == 1 else lines[0] + s * (lines[1] - lines[0])
         return Found(float(value), rows, columns)
@@ -234,7 +255,7 @@ def expression_over(
     compiler: Compiler, body: Node, x: str, low: float, high: float, e: Values, p: Values
 ) -> Over:
     """An expression of one name over a range, ready for a numerical method."""
-    whole = inlined(body, compiler.function)
+    whole = rows_written_out(inlined(body, compiler.function), frozenset([x]), compiler.columns)
     names = frozenset(p) | {x}
     work = compiler.compile_tree(whole, names)
 
@@ -325,12 +346,12 @@ def _sum(compiler: Compiler, node: Call, parameters: frozenset[str]) -> Work:
     work = compiler.compile_tree(node.arguments[0], parameters | {name})
     bounds = [compiler.compile_tree(a, parameters) for a in node.arguments[2:]]
 
-    def total(e: Values, p: Values) -> float:
+    def added(e: Values, p: Values) -> float:
         check_time(compiler, node)
         low, high = whole_bounds(node, *(bound(e, p) for bound in bounds))
-        return math.fsum(work(e, {**p, name: float(k)}) for k in range(low, high + 1))
+        return total([work(e, {**p, name: float(k)}) for k in range(low, high + 1)])
 
-    return total
+    return added
 
 
 def whole_bounds(node: Call, low: float, high: float) -> tuple[int, int]:
@@ -339,7 +360,7 @@ def whole_bounds(node: Call, low: float, high: float) -> tuple[int, int]:
         if abs(bound - round(bound)) > WHOLE * max(1.0, abs(bound)):
             raise Failure(
                 "bad-interval",
-                lambda show, a=argument, b=bound: f"`sum` runs over whole numbers, but {_said(show, a, b)}",  # type: ignore[misc]
+                lambda show, a=argument, b=bound: f"`sum` runs over whole numbers: {_said(show, a, b)}",  # type: ignore[misc]
                 span_of(argument), "give whole bounds: `sum(f, k, 0, 5)`",
             )  # fmt: skip
     first, last = round(low), round(high)

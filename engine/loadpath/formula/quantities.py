@@ -19,6 +19,9 @@ _NUMBER = re.compile(r"[0-9][0-9_]*(?:\.[0-9][0-9_]*)?(?:[eE][+-]?[0-9]+)?")
 _WHOLE = re.compile(r"[0-9][0-9_]*")
 _FRACTION = re.compile(r"([0-9][0-9_]*)/([0-9][0-9_]*)(?![0-9.])")
 _ONE_OVER = re.compile(r"1/(?=[^\W\d]|\()")
+_VALUE_BEHIND = re.compile(r"[0-9]|[^\W\d][\w']*\(")
+"""Behind the sign of a product or a quotient in a unit: a number, or a call."""
+_IN_BRACKETS = re.compile(r"\(([^()]*)(\))?")
 _MIXED_HYPHEN = re.compile(r"(?<![\w.])([0-9]+)-$")
 
 
@@ -164,7 +167,9 @@ class Quantities(Cursor):
                 if opened == 0:
                     break
                 opened -= 1
-            elif character == "+" or (character == "-" and self.text[self.at - 1] not in "^("):
+            if character in "*/" and opened == 0 and self._runs_into_a_value(self.at + 1):
+                raise self._no_spaces(start, character)
+            if character == "+" or (character == "-" and self.text[self.at - 1] not in "^("):
                 raise self._runs_on(start, character)
             self.at += 1
         text = self.text[start : self.at]
@@ -175,6 +180,20 @@ class Quantities(Cursor):
             message = f"a unit of more than {LONGEST_UNIT} characters"
             raise Mistake("over-limit", self.span(start), message, "write it shorter")
         return text, self.span(start)
+
+    def _runs_into_a_value(self, at: int) -> bool:
+        """True where what stands behind a sign in a unit is no unit: `kN/m*(L - a)`, `kN*2`, `kN*sin(x)`."""
+        rest = self.text[at:]
+        if _VALUE_BEHIND.match(rest):
+            return not rest.startswith("1/")
+        inside = _IN_BRACKETS.match(rest)
+        return inside is not None and (not inside.group(2) or " " in inside.group(1).strip())
+
+    def _no_spaces(self, start: int, sign: str) -> Mistake:
+        unit = self.text[start : self.at]
+        message = f"the unit `{unit}` runs into what is multiplied or divided"
+        mend = f"put spaces round the `{sign}`: `{self.before()} {unit} {sign} ...`"
+        return Mistake("bad-unit", self.span(start, self.at + 1), message, mend)
 
     def _runs_on(self, start: int, sign: str) -> Mistake:
         if self.text.startswith("--", self.at):

@@ -133,7 +133,8 @@ class At(Node):
 
     operand: Node
     row: Node
-    """A `Word`, or the `Name` of a choice that says which row."""
+    """A `Word`, or the `Name` of a choice that says which row; a `Number` counts rows without labels, and is
+    never typed."""
     span: Span = field(default=NOWHERE, compare=False)
 
 

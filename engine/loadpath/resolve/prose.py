@@ -58,7 +58,8 @@ def _unit(
     if entry.rows is not None or isinstance(entry.statement, Table):
         what = "a column" if entry.rows is not None else "a table"
         message = f"`{value.name}` is {what}, and prose prints one value"
-        help = f'give one of them a name first: `{value.name.replace(".", "_")}_1 = {value.name} at "label"`'
+        column = value.name if entry.rows is not None else f"{value.name}.A"
+        help = f'give one of them a name first: `{column.replace(".", "_")}_1 = {column} at "label"`'
         raise Mistake("column-not-number", value.name_span, message, help)
     if not value.unit or entry.type.unknown:
         return entry.unit

@@ -260,7 +260,8 @@ class _Resolver:
         ]
         if isinstance(statement, Solution) and refusals[0] is not None:
             self.mentioned.add(statement.name)
-        refusals.append(self.unknowns.never_solved(statement))
+        if not any(refusals):
+            refusals.append(self.unknowns.never_solved(statement))
         return [mistake for mistake in refusals if mistake is not None]
 
     def _uses(self, statement: Statement, nodes: Nodes) -> tuple[tuple[str, ...], int, list[Mistake]]:

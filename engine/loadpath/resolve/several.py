@@ -72,7 +72,7 @@ class Several:
         above = self.entry_of(sought.name)
         declared = above if above is not None and above.kind == "unknown" else None
         if sought.unit is None:
-            if above is not None and above.kind == "faulty":
+            if above is not None and above.kind != "unknown":  # what is wrong with that is said elsewhere
                 return UNKNOWN, ONE, False
             if declared is None:
                 message = f"in which unit `{sought.name}` will be found is not said"

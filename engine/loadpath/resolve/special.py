@@ -35,7 +35,10 @@ def type_of_special(checker: Checker, node: Call, parameters: Parameters | None)
         checker.number(node.arguments[0], parameters)
         return Type()
     if node.function == "simplified" or (node.function == "sum" and len(node.arguments) == 1):
-        return checker.number(node.arguments[0], parameters)
+        found = checker.number(node.arguments[0], parameters)
+        if found.absolute and node.function == "sum":
+            raise no_multiple(node.at)
+        return found
     if parameter_named(node) is not None or len(node.arguments) == 2:
         return _of_parameter(checker, node, parameters)
     return _with_own_name(checker, node, parameters)
@@ -102,6 +105,8 @@ def _with_own_name(checker: Checker, node: Call, parameters: Parameters | None) 
     found = checker.number(node.arguments[0], inner)
     if node.function == "integral":
         return _joined(checker, node, found, over, 1)
+    if node.function == "sum" and found.absolute:
+        raise no_multiple(node.at)
     return over if node.function.startswith("where_") else found
 
 

@@ -43,7 +43,8 @@ def _name_in_unit(unit: str, bad: BadUnit, span: Span) -> Mistake:
     if name == unit:
         message = f"no operator stands before `{name}`, which is a name of this sheet and no unit"
         return Mistake("implied-multiplication", span, message, f"a product is typed with `*`: `...*{name}`")
-    before, sign = unit[: bad.at].rstrip("*/"), unit[bad.at - 1 : bad.at]
+    before = unit[: bad.at].rstrip("*/(")
+    sign = next((c for c in reversed(unit[: bad.at]) if c in "*/"), "*")
     if not before:
         message = f"no operator stands before `{name}`, which is a name of this sheet and no unit"
         return Mistake("implied-multiplication", span, message, f"a product is typed with `*`: `...*{unit}`")

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from loadpath.formula.mistake import Mistake
-from loadpath.formula.statements import FunctionDefinition, Solution, Statement, Unknown
+from loadpath.formula.statements import Faulty, FunctionDefinition, Solution, Statement, Unknown
 from loadpath.resolve.parts import Use
 
 
@@ -12,6 +12,8 @@ class Unknowns:
 
     def __init__(self, statements: tuple[Statement, ...]) -> None:
         self.ever_solved = {s.name for s in statements if isinstance(s, Solution)}
+        meant = (s for s in statements if isinstance(s, Faulty) and s.text.split()[:1] == ["solve"])
+        self.ever_solved |= {name for statement in meant for name in statement.names}
         self.open: set[str] = set()
         self.closed: set[str] = set()
         self._behind: dict[str, frozenset[str]] = {}

@@ -54,7 +54,8 @@ def _endless_paragraph(source: Source) -> Span | None:
     length = 0
     for number, start in enumerate(source.line_starts, 1):
         line = source.text[start : start + LONGEST_PARAGRAPH + 1].partition("\n")[0]
-        length = 0 if not line.strip() or line.startswith(("    ", "\t")) else length + len(line)
+        apart = not line.strip() or line.startswith(("    ", "\t")) or line.lstrip().startswith("|")
+        length = 0 if apart else length + len(line)
         if length > LONGEST_PARAGRAPH:
             return source.line_span(number)
     return None

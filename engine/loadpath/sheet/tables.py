@@ -268,6 +268,11 @@ class _Reading:
 
     def _two_way(self, head: list[Cell], body: list[list[Cell]]) -> Table:
         unit = self._corner(head[0])
+        for row in body:
+            if row[0].text and not _all_numbers([row[0]]):
+                message = f"`{row[0].text}` is no number: both sides of a two-way table are numbers"
+                mend = "write a number, or head the columns by names and take a row by its label"
+                raise Mistake("table-cell", row[0].span, message, mend)
         across = tuple(self._cell(head, j, None) for j in range(1, len(head)))
         down = tuple(self._cell(row, 0, unit) for row in body)
         cells = tuple(tuple(self._cell(row, j, None) for j in range(1, len(head))) for row in body)
@@ -308,7 +313,8 @@ def _unsigned(value: Node) -> Node:
 
 def _with_unit(value: Node, unit: AskedUnit | None) -> Node:
     """A cell without name and unit takes the unit of the header."""
-    if unit is None or unit.text == "1" or any(isinstance(n, Name | Quantity) for n in walk(value)):
+    named = any(isinstance(n, Name) and n.name != "pi" for n in walk(value))
+    if unit is None or unit.text == "1" or named or any(isinstance(n, Quantity) for n in walk(value)):
         return value
     return _given(value, unit)
 
@@ -318,6 +324,8 @@ def _given(value: Node, unit: AskedUnit) -> Node:
     match value:
         case Number():
             return Quantity((Part(value.text, None, unit.text),), value.span, unit.span)
+        case Negative(operand=Number(text=text)) if unit.text in ("degC", "degF"):
+            return Quantity((Part("-" + text, None, unit.text),), value.span, unit.span)
         case Negative(operand=operand):
             return replace(value, operand=_given(operand, unit))
         case Binary(operator="+" | "-", left=left, right=right):

@@ -10,11 +10,12 @@ from contextlib import suppress
 from dataclasses import dataclass, replace
 from itertools import pairwise
 
-from loadpath.formula.binding import free_names
+from loadpath.formula.binding import free_names, own_name
 from loadpath.formula.canonical import statement_text
 from loadpath.formula.signs import holds
-from loadpath.formula.statements import Check, Criterion, Definition, Validity
+from loadpath.formula.statements import Check, Criterion, Definition, Table, Validity
 from loadpath.formula.tree import Binary, Call, Logic, Name, Node, Number, Relation, Shown, Sign, walk
+from loadpath.resolve import LOOKED_UP
 from loadpath.trace.digits import exact_digits, in_order, order_digits, typed_number
 from loadpath.trace.model import Called, Operand, Step, Trace, Verdict, Working
 from loadpath.trace.substitute import Scope, natural_unit, shown, substitute, with_factors
@@ -202,6 +203,29 @@ def call_substitution(trace: Trace, called: Called) -> Substitution | None:
     if called.working.tree == called.call:
         return None
     return substitution(trace, called.working, called.value)
+
+
+def looked_call(trace: Trace, called: Called, outer: Working) -> tuple[Call, int]:
+    """A call that looks at a whole expression or column, with the values that it looks up, or the range that
+    it goes over; and how many further digits they need to lead to the printed result."""
+    call, scope = called.call, scope_of(trace, outer)
+    first = 2 if own_name(call) is not None else 0
+    last = len(call.arguments) - (2 if call.function == "lookup" or _is_one_way(trace, call) else 1)
+    places = range(first, len(call.arguments)) if first else range(last) if call.function in LOOKED_UP else ()
+    for more in range(MORE + 1):
+        arguments = list(call.arguments)
+        for i in places:
+            arguments[i] = substitute(call.arguments[i], scope, outer.calls, more)
+        put = replace(call, arguments=tuple(arguments))
+        if first or _lands(trace, put, called.value):
+            return put, more
+    return replace(call, arguments=tuple(arguments)), 0
+
+
+def _is_one_way(trace: Trace, call: Call) -> bool:
+    last = call.arguments[-1]
+    step = trace.by_name.get(last.name) if isinstance(last, Name) else None
+    return step is None or not isinstance(step.statement, Table)
 
 
 # --- relations --------------------------------------------------------------------------------------------
