@@ -132,7 +132,7 @@ def significant(number: str) -> int:
     return len(number.partition("e")[0].replace(".", "").lstrip("-0"))
 
 
-def trouble(of: Printed) -> str:
+def trouble(of: Printed, digits: int) -> str:
     """What a pocket calculator has against a printed equation; "" where it lands within the last digit."""
     said = f"{of.where}: {text(of.formula)} = {text(of.value)}"
     try:
@@ -143,18 +143,17 @@ def trouble(of: Printed) -> str:
             return str(error)
         raise
     value = read_plain(of.value.number)
-    whole = "." not in of.value.number and "e" not in of.value.number
-    # 12 000 to four digits is known to 10
-    step = max(
-        last_digit(of.value.number),
-        10.0 ** (math.floor(math.log10(abs(value))) - 3) if whole and value else 0,
-    )
+    step = last_digit(of.value.number)
+    if value and "." not in of.value.number and "e" not in of.value.number:
+        # 12 000 to four digits is known to 10
+        step = max(step, 10.0 ** (math.floor(math.log10(abs(value))) - digits + 1))
     return "" if abs(reached - value) <= 1.5 * step else f"{said}, a calculator says {reached}"
 
 
 @pytest.mark.parametrize("path", SHEETS, ids=lambda p: p.name.removesuffix(".sheet.md"))
 def test_every_printed_equation_of_the_document(path: Path) -> None:
-    assert [said for each in printed(document_of(path)) if (said := trouble(each))] == []
+    digits = trace_of(path).sheet.front.digits
+    assert [said for each in printed(document_of(path)) if (said := trouble(each, digits))] == []
 
 
 # --- solutions put back -------------------------------------------------------------------------------------

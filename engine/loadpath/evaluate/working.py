@@ -63,9 +63,9 @@ class Observer:
 
     def _cells(self, tree: Node, row: int) -> Iterator[tuple[str, Operand]]:
         """The cells that stand for the names of columns in one row."""
-        for node in _seen(tree):
-            if isinstance(node, Name) and node.name in self.compiler.columns:
-                yield node.name, self.cell(node.name, row)
+        for name in sorted(free_names(tree) & set(self.compiler.columns)):
+            if row < self.compiler.columns[name].count:
+                yield name, self.cell(name, row)
 
     def cell(self, column: str, row: int) -> Operand:
         """One cell of a column, as printed."""

@@ -187,7 +187,9 @@ class Quantities(Cursor):
         if _VALUE_BEHIND.match(rest):
             return not rest.startswith("1/")
         inside = _IN_BRACKETS.match(rest)
-        return inside is not None and (not inside.group(2) or " " in inside.group(1).strip())
+        if inside is None or not inside.group(1):
+            return False
+        return not inside.group(2) or " " in inside.group(1).strip()
 
     def _no_spaces(self, start: int, sign: str) -> Mistake:
         unit = self.text[start : self.at]

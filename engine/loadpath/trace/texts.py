@@ -165,7 +165,7 @@ def _lands(trace: Trace, tree: Node, result: Operand) -> bool:
     assert isinstance(result.si, float)
     try:
         reached = result.unit.from_si(trace.work(tree))
-    except (ArithmeticError, ValueError):
+    except (ArithmeticError, ValueError, KeyError):
         return False
     printed = shown(result).number
     return abs(reached - read_plain(printed)) <= 1.0001 * step_of(printed, result.digits)
@@ -209,6 +209,8 @@ def looked_call(trace: Trace, called: Called, outer: Working) -> tuple[Call, int
     """A call that looks at a whole expression or column, with the values that it looks up, or the range that
     it goes over; and how many further digits they need to lead to the printed result."""
     call, scope = called.call, scope_of(trace, outer)
+    if own_name(call) is None and call.function not in LOOKED_UP:
+        return call, 0
     first = 2 if own_name(call) is not None else 0
     last = len(call.arguments) - (2 if call.function == "lookup" or _is_one_way(trace, call) else 1)
     places = range(first, len(call.arguments)) if first else range(last) if call.function in LOOKED_UP else ()
