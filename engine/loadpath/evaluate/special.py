@@ -180,7 +180,8 @@ def _refuse_unordered(node: Call, xs: list[float], along: str = "") -> None:
         "not-rising",
         lambda show: f"{along or f'`{short(node.arguments[1])}`'} neither rises nor falls strictly: "
         f"{show(asked, xs[row + 1])} stands behind {show(asked, xs[row])}",
-        span_of(node.arguments[2 if along else 1]), "sort the table, with one row (or one header cell) for each value",
+        span_of(node.arguments[2 if along else 1]),
+        "sort the table, with one row (or one header cell) for each value",
     )  # fmt: skip
 
 
