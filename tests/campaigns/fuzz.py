@@ -5,8 +5,8 @@ The quick part of it is tests/test_fuzz.py. The long part is a program:
 
     python tests/campaigns/fuzz.py SECONDS [SEED [KIND...]]
 
-Without kinds it takes all of them, and the hostile sheets first. It prints how many sheets of each kind went through, the slowest of each, and for each fault found the
-smallest text that still gives it.
+Without kinds it takes all of them, and the hostile sheets first. It prints how many sheets of each kind went
+through, the slowest of each, and for each fault found the smallest text that still gives it.
 """
 
 from __future__ import annotations

@@ -125,6 +125,8 @@ def _sides(step: Step) -> Iterator[Claim]:
             relations = [n for n in walk(tree) if isinstance(n, Relation)]
             for relation, sides in zip(relations, verdict.sides, strict=False):
                 size = max((abs(s) for s in sides if isinstance(s, float)), default=0.0)
+                if not any(sides) and verdict.within:
+                    size = 1e-3 * verdict.within / 1e-9  # terms that cancel: a thousandth of the tolerance
                 for operand, side in zip(relation.operands, sides, strict=True):
                     if isinstance(side, float):
                         where = f"{step.id} {label}: {text(operand)}"
