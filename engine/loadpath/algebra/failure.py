@@ -10,7 +10,7 @@ from contextvars import ContextVar
 TIME_LIMIT = 10.0
 """Seconds that one call may take; loading SymPy, once a process, comes on top."""
 
-_SPLIT = "split the expression, or give the values first and work it in numbers"
+_SPLIT = "split the expression into parts, or type numbers in place of names"
 
 
 class AlgebraFailure(Exception):

@@ -17,7 +17,7 @@ if TYPE_CHECKING:
 
 RESIDUAL_DIGITS = 2
 NOTHING = 1e-12
-"""A side below this share of the other is zero."""
+"""A side, or what two sides leave over, below this share of their terms is rounding and prints as zero."""
 
 
 def unknown_row(writer: StepWriter, step: Step, statement: Unknown, head: Head) -> UnknownRow:
@@ -86,5 +86,7 @@ def _put_back(of: PutBack, digits: int) -> PutBackLine:
         number = plain(unit.from_si(value), min(digits + 2, MOST_DIGITS))
         return Shown("0" if abs(value) <= NOTHING * size else number, printed)
 
-    residual = Shown(plain((of.left - of.right) / unit.size, RESIDUAL_DIGITS), printed)
-    return PutBackLine(of.equation, put(of.left), put(of.right), residual)
+    left_over = of.left - of.right
+    rounding = abs(left_over) <= NOTHING * size
+    residual = "0" if rounding else plain(left_over / unit.size, RESIDUAL_DIGITS)
+    return PutBackLine(of.equation, put(of.left), put(of.right), Shown(residual, printed))

@@ -173,8 +173,10 @@ class StepWriter:
         lines = (*self.lines(working), *self.further_digits(put))
         alone = next((c for c in working.calls if c.call == working.tree and is_looking(c.call)), None)
         calls = () if alone else self.calls(working)
+        closes = put.closes if put else True
         if alone is not None:
             look = self._look(alone, working)
+            closes = look.closes
             sides += look.sides or ((look.call,) if look.call != working.tree else ())
             lines += look.conditions
         return ResultRow(
@@ -182,7 +184,7 @@ class StepWriter:
             name,
             sides if not working.taken else sides[1:] or sides,
             texts.display(step),
-            put.closes if put else True,
+            closes,
             self.branches(statement, statement.value, working),
             lines,
             calls,
@@ -270,8 +272,9 @@ class StepWriter:
         put = texts.call_substitution(self.trace, called)
         sides = (put.tree,) if put else ()
         call, more = texts.looked_call(self.trace, called, outer)
+        more = max(more, put.more if put else 0)
         lines = (*self.lines(called.working), *((_FURTHER,) if more else ()))
-        return CallLine(call, sides, shown(called.value), True, lines)
+        return CallLine(call, sides, shown(called.value), put.closes if put else True, lines)
 
     def _function(self, step: Step, statement: FunctionDefinition, head: Head) -> FunctionRow:
         name = Call(statement.name, tuple(Name(p.name) for p in statement.parameters))

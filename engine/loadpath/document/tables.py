@@ -38,6 +38,8 @@ FEW = 2
 def table_block(writer: StepWriter, step: Step, statement: Table, head: Head, index: int) -> TableBlock:
     """A table of data with its columns, which are the steps that follow it, within its lines."""
     if statement.two_way is not None:
+        if step.why:
+            return TableBlock(head, statement.name, statement.head, (), ())
         return _two_way(writer, statement, head)
     columns = []
     for place in range(index + 1, len(writer.trace.steps)):

@@ -15,7 +15,8 @@ from loadpath.evaluate.explain import run
 from loadpath.evaluate.failure import Failure, shower
 from loadpath.evaluate.limits import ALGEBRA_IN_ALL, STEP_SECONDS
 from loadpath.evaluate.numbers import ROW
-from loadpath.evaluate.plan import Plan, Planned, defined_by, guarded_by, make_plan, sides_of
+from loadpath.evaluate.plan import Plan, Planned, defined_by, guarded_by, make_plan, sides_of, tables_of
+from loadpath.evaluate.special import check_time
 from loadpath.evaluate.symbolic import is_derived
 from loadpath.evaluate.verdicts import both_sides, judge, worst
 from loadpath.evaluate.working import Observer
@@ -32,6 +33,7 @@ from loadpath.formula.statements import (
     FunctionDefinition,
     Plot,
     Solution,
+    Table,
     Tabulate,
     Validity,
 )
@@ -118,6 +120,7 @@ class _Run:
         if blocked:
             return self._not_computed(planned, blocked)
         self.plan.compiler.deadline = monotonic() + STEP_SECONDS
+        self.plan.compiler.once.clear()
         try:
             return self._worked(planned)
         except Failure as failure:
@@ -157,6 +160,10 @@ class _Run:
                 return self._solution(planned, statement)
             case Column():
                 return self._column(planned, statement)
+            case Table(two_way=two_way) if two_way is not None:
+                compiler = self.plan.compiler
+                for cell in expressions(statement):
+                    run(compiler.compile_tree(cell), cell, self.values, _NO_PARAMETERS, compiler)
             case Plot(curves=curves, low=low, high=high) | Tabulate(curves=curves, low=low, high=high):
                 units = planned.outline.entry.side_units
                 steps = statement.steps if isinstance(statement, Tabulate) else 0
@@ -243,6 +250,7 @@ class _Run:
         assert rows is not None and tree is not None and planned.work is not None
         shown = []
         for i in range(rows.count):
+            check_time(compiler, tree)
             try:
                 si = float(run(planned.work, tree, self.values, {ROW: i}, compiler))
             except Failure as failure:
@@ -261,6 +269,7 @@ class _Run:
         assert rows is not None and tree is not None
         shown = []
         for i in range(rows.count):
+            check_time(self.plan.compiler, tree)
             try:
                 verdict = self._verdict(planned, {ROW: i}, rows.said(i))
             except Failure as failure:
@@ -387,8 +396,9 @@ class _Run:
         """A criterion that hangs on a name outside its range shows nothing."""
         outside: set[str] = set()
         unknown: dict[str, str] = {}
+        tables = tables_of(self.plan.resolved)
         for step in self.steps:
-            guarded = guarded_by(step.statement)
+            guarded = guarded_by(step.statement, tables)
             if guarded and step.why:
                 unknown |= dict.fromkeys(guarded, step.why)
             elif guarded and step.verdict is not None and not step.verdict.satisfied:

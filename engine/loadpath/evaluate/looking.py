@@ -10,7 +10,7 @@ from typing import TYPE_CHECKING, Any
 from loadpath.evaluate.numbers import Values
 from loadpath.evaluate.special import Found, cells, integrate, look_over, look_up
 from loadpath.formula.binding import free_names, own_name, put_in
-from loadpath.formula.tree import Binary, Call, Logic, Name, Node, Relation, Shown
+from loadpath.formula.tree import Binary, Call, Logic, Name, Node, Number, Quantity, Relation, Shown
 from loadpath.resolve import Rows, Type
 from loadpath.resolve.columns import is_brought_back
 from loadpath.trace.digits import exact_digits
@@ -21,6 +21,8 @@ from loadpath.units.printing import plain
 if TYPE_CHECKING:
     from loadpath.evaluate.working import Observer
 
+MOST_MORE = 4
+"""Further digits that the terms of a sum may show, so that they add up to what is printed."""
 MOST_ADDED = 12
 """Cells of a sum that are written out."""
 MOST_SPOTS = 24
@@ -73,63 +75,69 @@ class Looking:
 
     def _seen(
         self, call: Call, parameters: Values, value: Operand, types: dict[str, Type]
-    ) -> tuple[Node | None, tuple[Aside, ...]]:
+    ) -> tuple[tuple[Node, ...], tuple[Aside, ...]]:
         if is_brought_back(call):
             return self._column(call, parameters, value)
         match call.function:
             case "interp" | "lookup":
                 found = look_up(self.of.compiler, call, frozenset(parameters))(self.of.values, parameters)
-                return None, tuple(self._rows(call, found, value, types))
+                return (), tuple(self._rows(call, found, parameters, value, types))
             case "integral":
-                return None, (self._quadrature(call, parameters, value),)
+                return (), (self._quadrature(call, parameters, value),)
             case "largest" | "smallest" | "where_largest" | "where_smallest":
-                return None, tuple(self._spots(call, parameters, types))
-        return None, ()
+                return (), tuple(self._spots(call, parameters, types))
+        return (), ()
 
     # --- columns ---
 
     def _column(
         self, call: Call, parameters: Values, value: Operand
-    ) -> tuple[Node | None, tuple[Aside, ...]]:
+    ) -> tuple[tuple[Node, ...], tuple[Aside, ...]]:
         column = call.arguments[0]
         values = cells(self.of.compiler, column, frozenset(parameters))(self.of.values, parameters)
         rows = self._rows_of(column)
         if call.function == "count":
-            return None, ()
+            return (), ()
         if call.function == "sum":
-            return self._added(column, values, value), ()
+            return tuple(self._added(column, values, value)), ()
         pick = min if call.function == "min" else max
         index = values.index(pick(values))
-        return None, (Aside(f"{call.function}: {rows.said(index)} of", column, ""),)
+        return (), (Aside(f"{call.function}: {rows.said(index)} of", column, ""),)
 
     def _rows_of(self, column: Node) -> Rows:
         names = sorted(free_names(column) & set(self.of.compiler.columns))
         return self.of.compiler.columns[names[0]]
 
-    def _added(self, column: Node, values: list[float], value: Operand) -> Node | None:
-        """The cells that a sum adds up, one after the other."""
+    def _added(self, column: Node, values: list[float], value: Operand) -> Iterator[Node]:
+        """The cells that a sum adds up, one after the other, with more digits each time."""
         if not 2 <= len(values) <= MOST_ADDED:
-            return None
-        shown = [self._cell(column, i, si, value) for i, si in enumerate(values)]
-        total: Node = shown[0]
-        for each in shown[1:]:
-            total = Binary("+", total, each)
-        return total
+            return
+        for more in range(MOST_MORE + 1):
+            shown = [self._cell(column, i, si, value, more) for i, si in enumerate(values)]
+            total: Node = shown[0]
+            for each in shown[1:]:
+                total = Binary("+", total, each)
+            yield total
 
-    def _cell(self, column: Node, row: int, si: float, like: Operand) -> Shown:
+    def _cell(self, column: Node, row: int, si: float, like: Operand, more: int) -> Shown:
+        digits = like.digits + more
         if isinstance(column, Name):
             operand = self.of.cell(column.name, row)
             if operand.typed and operand.unit.text == like.unit.text:
                 return Shown(operand.typed, operand.unit.text)
-            digits = operand.digits
-        else:
-            digits = like.digits
+            digits = operand.digits + (0 if operand.exact else more)
         return Shown(plain(like.unit.from_si(si), digits), like.unit.text)
 
     # --- look-ups ---
 
-    def _rows(self, call: Call, found: Found, value: Operand, types: dict[str, Type]) -> Iterator[Aside]:
-        _, xs, ys = call.arguments
+    def _rows(
+        self, call: Call, found: Found, parameters: Values, value: Operand, types: dict[str, Type]
+    ) -> Iterator[Aside]:
+        x, xs, ys = call.arguments
+        if not isinstance(x, Name | Number | Quantity):
+            at = float(self.of.compiler.compile_tree(x, frozenset(parameters))(self.of.values, parameters))
+            sought = _shown(self._column_unit(x, types), at, value.digits)
+            yield Aside("looked up:", Relation((x, sought), ("=",)), "")
         if isinstance(ys, Name) and ys.name in self.of.compiler.two_way:
             rows, columns = (" and ".join(str(i + 1) for i in each) for each in (found.rows, found.across))
             plural = "s" if len(found.rows) > 1 else ""
@@ -142,7 +150,7 @@ class Looking:
             a = _shown(unit_x, found.xs[i], value.digits)
             b = _shown(unit_y, found.ys[i], value.digits)
             pair = Logic("and", (Relation((xs, a), ("=",)), Relation((ys, b), ("=",))))
-            yield Aside(f"{labels.said(i)}:", pair, "")
+            yield Aside(f"read in {labels.said(i)}:", pair, "")
 
     def _column_unit(self, column: Node, types: dict[str, Type]) -> Unit:
         resolved = self.of.resolved
@@ -155,9 +163,12 @@ class Looking:
     # --- expressions over a range ---
 
     def _quadrature(self, call: Call, parameters: Values, value: Operand) -> Aside:
+        from loadpath.numeric.roots import STEPS
+
         found = integrate(self.of.compiler, call, self.of.values, parameters)
         error = Shown(plain(value.unit.from_si(found.error), ERROR_DIGITS), value.unit.text)
-        return Aside(f"no closed form found: {found.method}, error estimate", error, "")
+        missed = f"; a peak narrower than 1/{STEPS} of the range can be missed"
+        return Aside(f"no closed form found: {found.method}, error estimate", error, missed)
 
     def _spots(self, call: Call, parameters: Values, types: dict[str, Type]) -> Iterator[Aside]:
         found = look_over(self.of.compiler, call, self.of.values, parameters)

@@ -73,6 +73,8 @@ class Compiler:
         self._bodies: dict[str, Work] = {}
         self.deadline = math.inf
         """Until when the step at hand may take (`time.monotonic`)."""
+        self.once: dict[Node, list[float]] = {}
+        """Values of whole columns, worked once a step."""
         self._derived: set[str] = set()
         """Functions whose bodies are derived while the sheet is worked."""
 

@@ -147,11 +147,26 @@ def fed_by(entry: Entry) -> tuple[str, ...]:
     return tuple(name for name in entry.uses if name in inside)
 
 
-def guarded_by(statement: Statement) -> tuple[str, ...]:
-    """The names that a statement states a range for, also where it could not be read."""
+def guarded_by(statement: Statement, tables: Tables) -> tuple[str, ...]:
+    """The names that a statement states a range for, also where it could not be read; a table's columns too."""
     if isinstance(statement, Validity):
-        return tuple(name for name, _ in statement.names)
-    return statement.guards if isinstance(statement, Faulty) else ()
+        names = tuple(name for name, _ in statement.names)
+    else:
+        names = statement.guards if isinstance(statement, Faulty) else ()
+    return tuple(each for name in names for each in (name, *tables.get(name, ())))
+
+
+Tables = dict[str, list[str]]
+"""The columns of each table."""
+
+
+def tables_of(resolved: Resolved) -> Tables:
+    """The columns of each table of a sheet."""
+    tables: Tables = defaultdict(list)
+    for entry in resolved.entries:
+        if isinstance(entry.statement, Column):
+            tables[entry.statement.table].append(entry.name)
+    return dict(tables)
 
 
 def defined_by(entry: Entry) -> tuple[str, ...]:
@@ -175,7 +190,10 @@ class _Reach:
         closed = {s.key for s in front.sources} | {a.key for a in front.assumptions if not a.confirm}
         self.closed = frozenset(closed)
         """Keys whose citation leaves nothing open; any other may be an assumption to be confirmed."""
-        self.ranged = {name for entry in resolved.entries for name in guarded_by(entry.statement)}
+        self.tables = tables_of(resolved)
+        self.ranged = {
+            name for entry in resolved.entries for name in guarded_by(entry.statement, self.tables)
+        }
         self.known: dict[str, tuple[frozenset[str], frozenset[str]]] = {}
         self.by_id: dict[str, tuple[frozenset[str], frozenset[str]]] = {}
         self.ranges: list[tuple[str, frozenset[str]]] = []
@@ -194,7 +212,7 @@ class _Reach:
             if isinstance(entry.statement, Solution):
                 self.known[name] = (assumed, ranged)
             self.known.setdefault(name, (assumed, ranged))
-        if guarded := guarded_by(entry.statement):
+        if guarded := guarded_by(entry.statement, self.tables):
             self.ranges.append((entry.id, frozenset(guarded)))
             for name in guarded:
                 self.behind[name] |= assumed

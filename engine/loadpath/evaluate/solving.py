@@ -16,6 +16,7 @@ from loadpath.evaluate.inline import inlined, rows_written_out
 from loadpath.evaluate.numbers import Compiler, Values
 from loadpath.evaluate.special import bad_interval
 from loadpath.evaluate.symbolic import is_derived
+from loadpath.evaluate.valueless import why_no_value
 from loadpath.formula.mistake import Mistake
 from loadpath.formula.statements import Equations, Sought
 from loadpath.formula.tree import Binary, Negative, Node, Relation, span_of, walk
@@ -31,6 +32,8 @@ SYMBOL_SECONDS = 5.0
 """For a solution in symbols beside one in numbers."""
 CLOSE = 1e-9
 """A root is believed where the sides of its equation agree within this much of their terms."""
+ONE_ROOT = 1e-5
+"""Roots nearer than this, with nothing but rounding between them, are one."""
 LISTED = 8
 """Roots that a message lists."""
 
@@ -50,8 +53,11 @@ def solve(
     together: Equations, entries: dict[str, Entry], resolved: Resolved, compiler: Compiler, values: Values
 ) -> Solutions:
     """The unknowns of one `solve for`. Raises `Failure` where there is not exactly one solution."""
-    with algebra.time_limit(algebra.TIME_LIMIT):
-        return _Solver(together, entries, resolved, compiler, values).solutions()
+    try:
+        with algebra.time_limit(algebra.TIME_LIMIT):
+            return _Solver(together, entries, resolved, compiler, values).solutions()
+    except (ArithmeticError, ValueError):
+        raise why_no_value(together, compiler, values) from None
 
 
 @dataclass(frozen=True, slots=True)
@@ -202,11 +208,14 @@ class _Solver:
     # --- one equation ---
 
     def _one(self) -> _Found:
+        from loadpath.numeric.polynomial import MOST_DEGREE
         from loadpath.numeric.roots import degree_in
 
         name, equation = self.names[0], self.equations[0]
         difference = _difference(equation)
         degree = degree_in(difference, frozenset([name]))
+        if degree is not None and degree > MOST_DEGREE and self.bounds[name] is not None:
+            return self._between(difference)
         if degree is not None and degree >= 1:
             roots, method = self._of_polynomial(difference, degree)
         elif degree == 0:
@@ -221,21 +230,46 @@ class _Solver:
         from loadpath.numeric.roots import coefficients
 
         name = self.names[0]
-        if degree == 2:
-            try:
-                trees = algebra.roots(self.equations[0], name) or ()
-            except AlgebraFailure:
-                trees = ()
-            found = [r for r in map(self._root, trees) if r is not None]
-            if found:
-                return found, "as a quadratic equation"
         numbers = coefficients(difference, name, self._worth)
-        assert numbers is not None
+        if numbers is None:
+            raise self._no_form(f"a polynomial of degree {degree} is solved between bounds only")
         if not any(numbers[1:]):
             raise self._no_solution(f"`{name}` drops out of the equation")
-        real = algebra.real_roots(tuple(Fraction(c) for c in numbers))
+        real = self._real_roots(tuple(Fraction(c) for c in numbers))
+        if degree == 2:
+            return self._with_symbols(real), "as a quadratic equation"
         method = f"as a polynomial of degree {degree}, of which all real roots were looked at"
         return [_Root(value) for value in real], method
+
+    def _real_roots(self, numbers: tuple[Fraction, ...]) -> list[float]:
+        """The real roots; one that touches, which rounding may part or lose, counts once."""
+        slope = tuple(i * c for i, c in enumerate(numbers))[1:]
+        touching = [r for r in algebra.real_roots(slope) if self._is_root(r)] if any(slope[1:]) else []
+        crossing = list(algebra.real_roots(numbers))
+        apart = [r for r in crossing if not any(self._is_one(r, t) for t in touching)]
+        return sorted({*apart, *touching})
+
+    def _is_root(self, value: float) -> bool:
+        return self._put_back(0, {self.names[0]: value}).close
+
+    def _is_one(self, a: float, b: float) -> bool:
+        """True for two roots between which nothing can be told from zero."""
+        near = math.isclose(a, b, rel_tol=ONE_ROOT, abs_tol=1e-300)
+        return near and all(self._is_root(a + (b - a) * share) for share in (0.25, 0.5, 0.75))
+
+    def _with_symbols(self, real: list[float]) -> list[_Root]:
+        """Roots with their formula, where that gives the same number: it may cancel."""
+        try:
+            trees = algebra.roots(self.equations[0], self.names[0]) or ()
+        except AlgebraFailure:
+            trees = ()
+        found = [root for root in map(self._root, trees) if root is not None]
+
+        def formula(value: float) -> Node | None:
+            same = (r.symbols for r in found if math.isclose(r.value, value, rel_tol=CLOSE, abs_tol=1e-300))
+            return next(same, None)
+
+        return [_Root(value, formula(value)) for value in real]
 
     def _closed_form(self) -> tuple[list[_Root], str]:
         name, equation = self.names[0], self.together.equations[0]
@@ -246,13 +280,14 @@ class _Solver:
             message = f"{trouble.message}; `{short(equation)}`"
             raise Failure(trouble.slug, lambda show: message, self.place, mend) from None
         if not trees:
-            raise Failure(
-                "no-closed-form",
-                lambda show: f"`{short(equation)}` has no solution in closed form for `{name}`",
-                self.place, mend,
-            )  # fmt: skip
+            raise self._no_form(f"`{short(equation)}` has no solution in closed form for `{name}`")
         found = [r for r in map(self._root, trees) if r is not None]
         return found, "in closed form"
+
+    def _no_form(self, message: str) -> Failure:
+        name = self.names[0]
+        mend = f"give bounds, so that it is solved numerically: `solve for {name} between a and b`"
+        return Failure("no-closed-form", lambda show: message, self.place, mend)
 
     def _root(self, tree: Node) -> _Root | None:
         """A candidate as a number; None where it has no real value or other units."""
@@ -277,6 +312,12 @@ class _Solver:
             lambda x: float(work({**self.values, name: x}, _NO_PARAMETERS)), *bounds, places
         )
         low, high = (self._shown(name, bound) for bound in bounds)
+        if found.over:
+            a, b = (self._shown(name, end) for end in found.over[0])
+            raise Failure(
+                "many-solutions", lambda show: f"every `{name}` from {a} to {b} solves the equation",
+                self.place, "write an equation that fixes one value, or narrow the bounds",
+            )  # fmt: skip
         if not found.found:
             message = f"no value of `{name}` that solves the equation was found between {low} and {high}"
             raise self._no_solution(message)

@@ -70,7 +70,15 @@ def cells(
 ) -> Callable[[Values, Values], list[float]]:
     """A closure that gives the value of a column expression in each of its rows."""
     count, work = _rows_of(compiler, column), compiler.compile_tree(column, parameters | {ROW})
-    return lambda e, p: [work(e, {**p, ROW: i}) for i in range(count)]
+    if parameters - {ROW}:
+        return lambda e, p: [work(e, {**p, ROW: i}) for i in range(count)]
+
+    def once(e: Values, p: Values) -> list[float]:
+        if column not in compiler.once:
+            compiler.once[column] = [work(e, {ROW: i}) for i in range(count)]
+        return compiler.once[column]
+
+    return once
 
 
 def total(values: list[float]) -> float:
@@ -231,13 +239,14 @@ class Over:
     value: Callable[[Node], float]
 
 
-def check_time(compiler: Compiler, node: Call) -> None:
+def check_time(compiler: Compiler, node: Node) -> None:
     """Raises `Failure` where the step at hand has taken too long."""
     if monotonic() > compiler.deadline:
         raise Failure(
             "algebra-time-out",
             lambda show: f"`{short(node)}` was stopped: the step took more than {STEP_SECONDS:.0f} s",
-            node.at, "work it once, give it a name, and use that; or take fewer places",
+            getattr(node, "at", span_of(node)),
+            "work it once, give it a name, and use that; or take fewer places",
         )  # fmt: skip
 
 

@@ -16,6 +16,8 @@ ASKED = 1e-11
 GOOD = 1e-8
 """Where rounding stands in the way of that, an error within this share of it is taken."""
 STRETCHES = 200
+RISES = 10.0
+"""So many times larger near an end than a step away from it, a function is looked at ever nearer to the end."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -35,11 +37,22 @@ def quadrature(f: Curve, low: float, high: float, places: tuple[float, ...] = ()
     that is looked at, ValueError for bounds that are none.
     """
     low, high = check_bounds(low, high)
-    cuts = [low, *sorted({p for p in places if low < p < high}), high]
+    cuts = [low, *sorted({p for p in (*places, *_near_ends(f, low, high)) if low < p < high}), high]
     _refuse_poles(f, low, high)
     size = sum(_size(f, a, b) for a, b in pairwise(cuts))
     parts = [_stretch(f, a, b, size) for a, b in pairwise(cuts)]
     return Quadrature(math.fsum(v for v, _ in parts), math.fsum(e for _, e in parts), METHOD)
+
+
+def _near_ends(f: Curve, low: float, high: float) -> list[float]:
+    """Cuts ever nearer to an end at which the function rises far above what it is a step away."""
+    width, cuts = high - low, []
+    for end, way in ((low, width), (high, -width)):
+        away = abs(tried(f, end + way / STEPS))
+        places = [end + way * 10.0**-k for k in range(3, 11)]
+        if any(abs(tried(f, place)) > RISES * away for place in places):
+            cuts += places
+    return cuts
 
 
 def _refuse_poles(f: Curve, low: float, high: float) -> None:

@@ -83,8 +83,8 @@ class Working:
     """What governed a `min`, what was rounded, which unit `as` assumed: each a line beneath the step."""
     typed: Node | None = None
     """The formula as typed, where what was worked was derived from it: integrated, differentiated."""
-    written: Node | None = None
-    """In place of a substitution: the cells that a `sum` adds up, the rows that `interp` reads."""
+    written: tuple[Node, ...] = ()
+    """In place of a substitution: the cells that a `sum` adds up, with more digits each time."""
 
 
 @dataclass(frozen=True, slots=True)

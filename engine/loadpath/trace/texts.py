@@ -198,8 +198,11 @@ def row_substitution(trace: Trace, step: Step, index: int) -> Substitution | Non
 def call_substitution(trace: Trace, called: Called) -> Substitution | None:
     """The substitution of a call's body, with the parameters' values in place; of what looks at a whole
     expression or column, what it adds up."""
-    if called.working.written is not None:
-        return Substitution(called.working.written, True)
+    for more, written in enumerate(called.working.written):
+        if _lands(trace, written, called.value):
+            return Substitution(written, True, more)
+    if called.working.written:
+        return Substitution(called.working.written[0], False)
     if called.working.tree == called.call:
         return None
     return substitution(trace, called.working, called.value)
