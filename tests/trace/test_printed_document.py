@@ -69,11 +69,11 @@ def printed(document: Document) -> Iterator[Printed]:
                     yield from _equation(where, row.sides, row.value, row.closes)
                     yield from _of_calls(where, row.calls)
             case CriterionBox() | JudgedRow():
-                yield from _judged(block.head.number, block.lines)
+                yield from _judged(block.head.number, block.lines if block.closes else ())
                 yield from _of_calls(block.head.number, block.calls)
                 for judged in block.rows:
                     where = f"{block.head.number}, {judged.label}"
-                    yield from _judged(where, judged.lines)
+                    yield from _judged(where, judged.lines if judged.closes else ())
                     yield from _of_calls(where, judged.calls)
 
 

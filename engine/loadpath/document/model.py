@@ -294,6 +294,8 @@ class JudgedLine:
     strong: bool
     """True where it governs or stands against use."""
     calls: tuple[CallLine, ...] = ()
+    closes: bool = True
+    """False where printed values don't lead to the printed sides."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -323,6 +325,8 @@ class CriterionBox:
     """The line as typed, where it could not be read."""
     rows: tuple[JudgedLine, ...] = ()
     """Where it is judged row by row."""
+    closes: bool = True
+    """False where printed values don't lead to the printed sides."""
     derived: Node | None = None
     """What algebra made of the relation."""
 
@@ -341,6 +345,8 @@ class JudgedRow:
     calls: tuple[CallLine, ...] = ()
     rows: tuple[JudgedLine, ...] = ()
     derived: Node | None = None
+    closes: bool = True
+    """False where printed values don't lead to the printed sides."""
 
 
 @dataclass(frozen=True, slots=True)

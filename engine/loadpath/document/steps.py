@@ -316,6 +316,7 @@ class StepWriter:
             self.calls(step.working) if step.working and not step.rows else (),
             rows=judged_lines(self, step),
             derived=_derived(step),
+            closes=self._closes(step),
         )
 
     def _said(self, step: Step) -> tuple[Line, ...]:
@@ -345,6 +346,9 @@ class StepWriter:
     def _compared_lines(self, step: Step) -> tuple[Node, ...]:
         """First with values in place of names, where a side is worked out; then each side as one number."""
         return self.lines_of(step, texts.compared(self.trace, step))
+
+    def _closes(self, step: Step) -> bool:
+        return bool(step.rows) or all(c.closes for c in texts.compared(self.trace, step))
 
     def lines_of(self, step: Step, compared: tuple[texts.Compared, ...]) -> tuple[Node, ...]:
         """The same, of one row where it is judged row by row."""
@@ -399,7 +403,8 @@ class StepWriter:
         lines = () if step.rows else self._compared_lines(step)
         rows = judged_lines(self, step)
         return JudgedRow(
-            head, statement.relation, lines, words, verdict, holds, calls, rows, _derived(step)
+            head, statement.relation, lines, words, verdict, holds, calls, rows, _derived(step),
+            self._closes(step),
         )
 
 

@@ -159,6 +159,7 @@ def judged_lines(writer: StepWriter, step: Step) -> tuple[JudgedLine, ...]:
                 i == worst,
                 i == worst or row.verdict.satisfied is not True or row.verdict.one_sided,
                 writer.calls(row.working) if row.working else (),
+                all(c.closes for c in compared),
             )
         )
     return tuple(out)

@@ -33,6 +33,7 @@ from loadpath.formula.statements import (
     FunctionDefinition,
     Plot,
     Solution,
+    Statement,
     Table,
     Tabulate,
     Validity,
@@ -323,7 +324,7 @@ class _Run:
         remarks = () if inside else (Remark(f"worked for line {planned.outline.entry.line}", here),)
         new = finding(
             failure.slug,
-            failure.tell(shower(self.plan.resolved)),
+            failure.tell(shower(self.plan.resolved, self._around(failure, planned))),
             source,
             failure.span,
             help=failure.help,
@@ -331,6 +332,13 @@ class _Run:
         )
         self.found.append(new)
         return new.line
+
+    def _around(self, failure: Failure, planned: Planned) -> tuple[Statement, ...]:
+        """The statement being worked, and the function in which it failed."""
+        at = failure.span.start
+        statements = (e.statement for e in self.plan.resolved.entries)
+        functions = (s for s in statements if isinstance(s, FunctionDefinition))
+        return (planned.outline.entry.statement, *(s for s in functions if s.span.start <= at < s.span.end))
 
     # --- judging ---
 

@@ -148,7 +148,7 @@ def fed_by(entry: Entry) -> tuple[str, ...]:
 
 
 def guarded_by(statement: Statement, tables: Tables) -> tuple[str, ...]:
-    """The names that a statement states a range for, also where it could not be read; a table's columns too."""
+    """The names that a statement states a range for, read or not; of a table its columns."""
     if isinstance(statement, Validity):
         names = tuple(name for name, _ in statement.names)
     else:

@@ -19,7 +19,7 @@ from loadpath.evaluate.symbolic import is_derived
 from loadpath.evaluate.valueless import why_no_value
 from loadpath.formula.mistake import Mistake
 from loadpath.formula.statements import Equations, Sought
-from loadpath.formula.tree import Binary, Negative, Node, Relation, span_of, walk
+from loadpath.formula.tree import Binary, Negative, Node, Number, Relation, span_of, walk
 from loadpath.resolve import Entry, Resolved
 from loadpath.trace.model import Operand, PutBack, Solved
 from loadpath.units import Unit
@@ -32,6 +32,8 @@ SYMBOL_SECONDS = 5.0
 """For a solution in symbols beside one in numbers."""
 CLOSE = 1e-9
 """A root is believed where the sides of its equation agree within this much of their terms."""
+TOUCHES = 1e-13
+"""A curve that turns within this much of zero, as a share of its terms, touches it."""
 ONE_ROOT = 1e-5
 """Roots nearer than this, with nothing but rounding between them, are one."""
 LISTED = 8
@@ -250,7 +252,9 @@ class _Solver:
         return sorted({*apart, *touching})
 
     def _is_root(self, value: float) -> bool:
-        return self._put_back(0, {self.names[0]: value}).close
+        """True where nothing but rounding is left: a curve that comes near to zero and turns has no root."""
+        back = self._put_back(0, {self.names[0]: value})
+        return abs(back.left - back.right) <= TOUCHES * back.size
 
     def _is_one(self, a: float, b: float) -> bool:
         """True for two roots between which nothing can be told from zero."""
@@ -381,8 +385,8 @@ class _Solver:
 
         def residuals(t: Any) -> list[float]:
             """Each as a share of its sides, so that no equation drowns another."""
-            here = {n: low + s * w for n, (low, _), w, s in zip(self.names, bounds, widths, t, strict=True)}
-            values = {**self.values, **here}
+            shares = zip(self.names, bounds, widths, t, strict=True)
+            values = {**self.values, **{n: low + float(s) * w for n, (low, _), w, s in shares}}
             try:
                 sides = [[float(work(values, _NO_PARAMETERS)) for work in pair] for pair in works]
             except (ArithmeticError, ValueError):
@@ -430,6 +434,8 @@ class _Solver:
                 return self._size(left, values) / abs(self._worth(right, values))
             case Negative(operand=operand):
                 return self._size(operand, values)
+            case Binary(operator="^", left=base, right=Number(text=typed)) if typed.isdigit():
+                return self._size(base, values) ** int(typed)
         return abs(self._worth(node, values))
 
     # --- what is said ---

@@ -194,7 +194,8 @@ class Quantities(Cursor):
     def _no_spaces(self, start: int, sign: str) -> Mistake:
         unit = self.text[start : self.at]
         message = f"the unit `{unit}` runs into what is multiplied or divided"
-        mend = f"put spaces round the `{sign}`: `{self.before()} {unit} {sign} ...`"
+        number = Cursor(self.item, start).before()
+        mend = f"put spaces round the `{sign}`: `{f'{number} {unit} {sign} ...'.lstrip()}`"
         return Mistake("bad-unit", self.span(start, self.at + 1), message, mend)
 
     def _runs_on(self, start: int, sign: str) -> Mistake:

@@ -17,7 +17,7 @@ GOOD = 1e-8
 """Where rounding stands in the way of that, an error within this share of it is taken."""
 STRETCHES = 200
 RISES = 10.0
-"""So many times larger near an end than a step away from it, a function is looked at ever nearer to the end."""
+"""So many times larger near an end than a step away from it, a function is looked at ever nearer to it."""
 
 
 @dataclass(frozen=True, slots=True)

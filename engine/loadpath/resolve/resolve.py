@@ -287,6 +287,8 @@ class _Resolver:
         if any("`integral`" in m.help for m in wrong.values() if m.slug == "unknown-function"):
             wrong = {n: m for n, m in wrong.items() if m.slug != "unknown-name"}  # its `x` lives within it
         hanging = next((line for line in map(self._blocked, used) if line), 0)
+        if not hanging and (spoilt := self.unknowns.spoilt_behind(statement, tuple(used))) is not None:
+            hanging = self._line_of([], spoilt, "faulty")
         if not hanging and (early := self.unknowns.too_early(statement, each_use)) is not None:
             wrong.setdefault("", early)
         used |= dict.fromkeys(self.unknowns.solved_behind(tuple(used)))

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from typing import TypeGuard
+
 from loadpath.formula.mistake import Mistake
 from loadpath.formula.statements import Faulty, FunctionDefinition, Solution, Statement, Unknown
 from loadpath.resolve.parts import Use
@@ -12,10 +14,11 @@ class Unknowns:
 
     def __init__(self, statements: tuple[Statement, ...]) -> None:
         self.ever_solved = {s.name for s in statements if isinstance(s, Solution)}
-        meant = (s for s in statements if isinstance(s, Faulty) and s.text.split()[:1] == ["solve"])
-        self.ever_solved |= {name for statement in meant for name in statement.names}
+        self.ever_solved |= {name for s in statements if _is_meant(s) for name in s.names}
         self.open: set[str] = set()
         self.closed: set[str] = set()
+        self.spoilt: dict[str, Faulty] = {}
+        """Unknowns that a `solve for` which could not be read was meant to find."""
         self._behind: dict[str, frozenset[str]] = {}
         """For each function, the unknowns that stand somewhere in it."""
 
@@ -30,12 +33,21 @@ class Unknowns:
                 for sought in statement.together.sought:
                     self.open.discard(sought.name)
                     self.closed.add(sought.name)
+            case Faulty(names=names) if _is_meant(statement):
+                self.spoilt |= {name: statement for name in names if name in self.open}
 
     def behind(self, uses: tuple[str, ...]) -> frozenset[str]:
         """The unknowns that uses of names come to, open or solved."""
         known = self.open | self.closed
         direct = frozenset(name for name in uses if name in known)
         return direct.union(*(self._behind.get(name, frozenset()) for name in uses))
+
+    def spoilt_behind(self, statement: Statement, uses: tuple[str, ...]) -> Faulty | None:
+        """The faulty `solve for` that spoils what a statement works with."""
+        if isinstance(statement, FunctionDefinition | Unknown):
+            return None
+        missing = sorted(self.behind(uses) & set(self.spoilt) - _sought(statement))
+        return self.spoilt[missing[0]] if missing else None
 
     def solved_behind(self, uses: tuple[str, ...]) -> tuple[str, ...]:
         """Solved unknowns that stand in the functions used: their solutions feed what evaluates these."""
@@ -54,9 +66,7 @@ class Unknowns:
         """What is wrong with a use that needs the value of an unknown before it is solved."""
         if isinstance(statement, FunctionDefinition | Unknown):
             return None
-        sought = frozenset(
-            s.name for s in statement.together.sought
-        ) if isinstance(statement, Solution) else frozenset()  # fmt: skip
+        sought = _sought(statement)
         for use in uses:
             missing = sorted((self.behind((use.name,)) & self.open & self.ever_solved) - sought)
             if missing:
@@ -67,3 +77,15 @@ class Unknowns:
                 mend = f"move this line below the `solve for` that finds `{name}`"
                 return Mistake("unsolved-unknown", use.span, what, mend)
         return None
+
+
+def _sought(statement: Statement) -> frozenset[str]:
+    """The unknowns that a `solve for` finds."""
+    if not isinstance(statement, Solution):
+        return frozenset()
+    return frozenset(sought.name for sought in statement.together.sought)
+
+
+def _is_meant(statement: Statement) -> TypeGuard[Faulty]:
+    """True for what begins as a `solve for` and could not be read."""
+    return isinstance(statement, Faulty) and statement.text.split()[:1] == ["solve"]

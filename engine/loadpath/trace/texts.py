@@ -168,6 +168,8 @@ def _lands(trace: Trace, tree: Node, result: Operand) -> bool:
     except (ArithmeticError, ValueError, KeyError):
         return False
     printed = shown(result).number
+    if read_plain(printed) == 0:
+        return reached == 0
     return abs(reached - read_plain(printed)) <= 1.0001 * step_of(printed, result.digits)
 
 
@@ -246,6 +248,8 @@ class Compared:
     evaluated: Relation
     """Each side as one number, with the signs that hold: `8.746 mm > 8.667 mm` where `<=` was asked and
     does not."""
+    closes: bool = True
+    """False where the printed values of a side don't lead to its printed number."""
     per_length: tuple[int, Name, str] | None = None
     """Operand index, length and number: the demand as `L/499.9`, where the limit is `L/n`."""
 
@@ -295,20 +299,19 @@ def _compared(
         sides,
         tuple(_sign_that_holds(*each) for each in zip(relation.signs, numbers, numbers[1:], strict=False)),
     )
-    substituted = None
+    substituted, closes = None, True
     if any(_is_worked(o, unit, scope) for o in relation.operands):
-        inner = tuple(
-            _worked_side(trace, working, o, unit, s) if isinstance(v, float) else s
-            for o, v, s in zip(relation.operands, values, sides, strict=True)
-        )
-        substituted = Relation(
-            tuple(
-                i if _is_worked(o, unit, scope) else s
-                for o, i, s in zip(relation.operands, inner, sides, strict=True)
-            ),
-            relation.signs,
-        )
-    return Compared(relation, substituted, evaluated, _per_length(relation, numbers, unit, scope))
+        inner: list[Node] = []
+        for operand_, value, side in zip(relation.operands, values, sides, strict=True):
+            if isinstance(value, float) and _is_worked(operand_, unit, scope):
+                tree, lands = _worked_side(trace, working, operand_, unit, side)
+                inner.append(tree)
+                closes = closes and lands
+            else:
+                inner.append(side)
+        substituted = Relation(tuple(inner), relation.signs)
+    per_length = _per_length(relation, numbers, unit, scope)
+    return Compared(relation, substituted, evaluated, closes, per_length)
 
 
 _OPPOSITE: dict[Sign, Sign] = {"<=": ">", "<": ">=", ">=": "<", ">": "<=", "=": "≠"}
@@ -328,14 +331,16 @@ def _is_worked(node: Node, unit: Unit, scope: Scope) -> bool:
     return holds_names(node)
 
 
-def _worked_side(trace: Trace, working: Working, node: Node, unit: Unit, side: Shown) -> Node:
-    """One side with values in place of names, with as many digits as it takes to land on its printed
-    number."""
+def _worked_side(
+    trace: Trace, working: Working, node: Node, unit: Unit, side: Shown
+) -> tuple[Node, bool]:
+    """One side with values in place of names, with as many digits as it takes to land on its printed number;
+    False where none do."""
     scope = scope_of(trace, working)
     trees = [substitute(node, scope, working.calls, more) for more in range(MORE + 1)]
     step = step_of(side.number, len(side.number))
-    landed = (t for t in trees if abs(unit.from_si(trace.work(t)) - read_plain(side.number)) <= 1.0001 * step)
-    return with_factors(next(landed, trees[0]), unit)
+    landed = [t for t in trees if abs(unit.from_si(trace.work(t)) - read_plain(side.number)) <= 1.0001 * step]
+    return with_factors(landed[0] if landed else trees[0], unit), bool(landed)
 
 
 def _sides(
