@@ -10,6 +10,7 @@ from __future__ import annotations
 import json
 import math
 import re
+import warnings
 from typing import Any
 
 import pytest
@@ -366,3 +367,96 @@ def test_e30_a_faulty_solve_is_one_finding(head: str) -> None:
         )
     )
     assert [line for _, line, _ in found] == [FIRST + 2], found
+
+
+# --- F: what campaigns/fuzz.py found ------------------------------------------------------------------------
+
+
+@pytest.mark.parametrize(
+    ("cell", "slug", "line"),
+    [
+        ("round_up(a, 0 %)", "outside-domain", 9),
+        ("1/b", "division-by-zero", 9),
+        ("nowhere", "unknown-name", 9),
+        ("c", "", 7),
+    ],
+)
+def test_f_a_cell_of_a_two_way_table_that_has_no_value(cell: str, slug: str, line: int) -> None:
+    """It is one finding, and what looks up in the table is not computed."""
+    two_way = table("C", "h | 1 | 2", f"1 | {cell} | 2", "2 | 2 | 3")
+    trace = audited(
+        sheet(lines("a = 3 deg -- a", "b = 0 -- b", "c = 1/b"), two_way, lines("y = interp(1, 1, C)"))
+    )
+    found = [(f.slug, f.line) for f in trace.findings if f.severity == "error"]
+    own = [(s, n) for s, n in found if n > FIRST + 2]
+    assert [s for s, _ in own] == ([slug] if slug else [])
+    assert ("division-by-zero", 7) in found
+    assert trace["y"].si is None
+    assert trace["y"].why == f"not computed because of line {line if not slug else own[0][1]}"
+    assert documents(trace)
+
+
+@pytest.mark.parametrize(
+    ("head", "equation", "slug"),
+    [
+        ("x [kN]", "x = P/b", "division-by-zero"),
+        ("x [1]", "2*(x/(0))^2 = 3", "division-by-zero"),
+        ("x [1]", "2*(x/b)^0*x = 3", "division-by-zero"),
+        ("x [1] between 0 and 2/b", "sin(x) = 0.3*x", "division-by-zero"),
+        ("x [1]", "x*exp(exp(exp(9))) = 3", "not-finite"),
+        ("x [1]", "x + sqrt(b - 1) = 3", "root-of-negative"),
+    ],
+)
+def test_f_equations_with_a_part_that_has_no_value(head: str, equation: str, slug: str) -> None:
+    found = errors(lines("P = 3 kN -- P", "b = 0 -- b", f"solve for {head}", f"    {equation}", "y = 2*x"))
+    assert [(s, n - FIRST in (2, 3)) for s, n, _ in found] == [(slug, True)], found
+
+
+def test_f_unknowns_of_several_equations_that_divide_by_zero_between_bounds() -> None:
+    """No warning of numpy's either. source: x*y = 2 and x = 2*y, by hand."""
+    with warnings.catch_warnings():
+        warnings.simplefilter("error")
+        trace = worked(
+            lines("solve for x [1] between 0 and 4, y [1] between 0 and 4", "    y = 2/x", "    x/y = 2")
+        )
+    assert value(trace, "x") == pytest.approx(2)
+    assert value(trace, "y") == pytest.approx(1)
+
+
+@pytest.mark.parametrize(
+    ("formula", "slug", "said"),
+    [
+        ("sum(w.P/b)", "division-by-zero", 'in row "front"'),
+        ("max(w.P/(w.d + b*(1 m)))", "division-by-zero", 'in row "front"'),
+        ("sum(sqrt(w.d - 2 m))", "root-of-negative", 'in row "front"'),
+        ("interp(1 m, w.d, w.P/b)", "division-by-zero", 'in row "front"'),
+        ("sum(1/(k - 200), k, 0, 300)", "division-by-zero", "`k - 200` is 0"),
+        ("sum(10^k, k, 1, 400)", "not-finite", "`k` is 309"),
+    ],
+)
+def test_f_the_row_or_term_that_has_no_value_is_named(formula: str, slug: str, said: str) -> None:
+    """10^308 can be held, 10^309 cannot (IEEE 754)."""
+    ((found, _, message),) = errors(lines("b = 0 -- b"), WHEELS, lines(f"y = {formula}"))
+    assert found == slug
+    assert said in message
+
+
+@pytest.mark.parametrize(
+    "formulas",
+    [
+        ["y = largest(interp(u, s.t, s.f), u, 0 mm, 80 mm)"],
+        ["g(u [m]) [MPa] = interp(u, s.t, s.f)", "y = g(80 mm)"],
+        ["plot interp(u, s.t, s.f) for u from 60 mm to 80 mm"],
+    ],
+)
+def test_f_messages_show_a_name_of_their_own_in_a_unit(formulas: list[str]) -> None:
+    ((slug, _, message),) = errors(STRENGTHS, lines(*formulas))
+    assert slug == "outside-table"
+    assert "0 mm to 40 mm" in message and "SI units" not in message
+
+
+def test_f_more_curves_than_rows_in_a_table_of_values() -> None:
+    """source: x^2 and x^3 at 0 and 2, by hand."""
+    said = documents(worked(lines("tabulate x^2, x^3, x^4 for x from 0 to 2, 1 steps")))["t.html"]
+    listed = said.partition('<table class="data')[2].partition("</table>")[0]
+    assert re.findall(r">(\d[\d.]*)<", listed)[-3:] == ["4.000", "8.000", "16.00"]

@@ -10,7 +10,8 @@ from hypothesis import HealthCheck, given, settings
 from hypothesis import strategies as st
 
 import loadpath
-from campaigns.fuzz import KINDS, audited, hostile, through
+from campaigns.fuzz import KINDS, audited, hostile, through, twice
+from campaigns.random_algebra import algebra
 
 SHEETS = hostile(share=0.04)
 NAMED = {
@@ -53,6 +54,22 @@ def test_the_documents_of_a_hostile_sheet(what: str) -> None:
 @pytest.mark.parametrize("seed", range(8))
 def test_random_sheets_of_each_kind(kind: str, seed: int) -> None:
     audited(KINDS[kind](Random(f"{kind} {seed}")))
+
+
+@pytest.mark.parametrize("kind", ["algebra", "algebra damaged"])
+@pytest.mark.parametrize("seed", range(3))
+def test_the_documents_of_random_sheets_with_algebra(kind: str, seed: int) -> None:
+    """Their trace fits its schema, and a second run gives the same bytes."""
+    twice(KINDS[kind](Random(f"{kind} {seed}")))
+
+
+def test_most_of_what_random_sheets_with_algebra_hold_is_worked() -> None:
+    """A generator whose sheets hold nothing but mistakes would test the reading of lines only."""
+    traces = [audited(algebra(Random(f"algebra {seed}"))) for seed in range(8)]
+    steps = [step for trace in traces for step in trace]
+    worked = [step for step in steps if not step.why]
+    assert len(worked) > 0.6 * len(steps)
+    assert {"table", "function", "solution", "result", "plot"} <= {step.kind for step in worked}
 
 
 quick = settings(deadline=None, max_examples=30, suppress_health_check=list(HealthCheck))

@@ -8,7 +8,9 @@ from collections.abc import Callable, Iterator
 from typing import Any
 
 from loadpath.evaluate.failure import Failure, Show, short
-from loadpath.evaluate.numbers import Compiler, Values, Work
+from loadpath.evaluate.numbers import ROW, Compiler, Values, Work
+from loadpath.evaluate.special import whole_bounds
+from loadpath.formula.binding import free_names, own_name
 from loadpath.formula.signs import holds
 from loadpath.formula.tree import (
     As,
@@ -26,7 +28,8 @@ from loadpath.formula.tree import (
     walk,
 )
 from loadpath.functions import FUNCTIONS
-from loadpath.resolve import is_looking
+from loadpath.resolve import LOOKED_UP, is_looking
+from loadpath.resolve.columns import is_brought_back
 from loadpath.text import Span
 from loadpath.units import parse_unit
 
@@ -102,7 +105,7 @@ class _Explanation:
 
     def _call(self, node: Call, parameters: Values) -> Any:
         if is_looking(node):
-            return self._finite(node, lambda: self._leaf(node, parameters))
+            return self._looked(node, parameters)
         arguments = [self.value(argument, parameters) for argument in node.arguments]
         definition = self.compiler.function(node.function)
         if definition is not None:
@@ -119,6 +122,44 @@ class _Explanation:
         if not math.isfinite(value):
             raise _too_large(node, node.at, known)
         return value
+
+    def _looked(self, node: Call, parameters: Values) -> Any:
+        """A call that looks at a column or a whole expression: the first row or term that has no value raises
+        its `Failure`."""
+        try:
+            value = self._leaf(node, parameters)
+            if math.isfinite(value):
+                return value
+        except (ArithmeticError, ValueError):
+            pass
+        body, own = node.arguments[0], own_name(node)
+        if is_brought_back(node):
+            self._cells(body, parameters)
+        elif node.function in LOOKED_UP:
+            self.value(body, parameters)
+            for column in node.arguments[1:]:
+                self._cells(column, parameters)
+        elif own is not None:
+            bounds = [self.value(bound, parameters) for bound in node.arguments[2:]]
+            if node.function == "sum":
+                first, last = whole_bounds(node, *bounds)
+                for k in range(first, last + 1):
+                    self.value(body, {**parameters, own.name: float(k)})
+        raise _too_large(node, node.at, ())
+
+    def _cells(self, column: Node, parameters: Values) -> None:
+        """Works a column row by row. Raises `Failure`, with the row."""
+        held = sorted(free_names(column) & set(self.compiler.columns))
+        if not held:  # a place along a two-way table, or the table
+            if not (isinstance(column, Name) and column.name in self.compiler.two_way):
+                self.value(column, parameters)
+            return
+        rows = self.compiler.columns[held[0]]
+        for i in range(rows.count):
+            try:
+                self.value(column, {**parameters, ROW: i})
+            except Failure as failure:
+                raise failure.in_row(rows.said(i)) from None
 
     def _cases(self, node: Cases, parameters: Values) -> Any:
         for branch in node.branches:
