@@ -32,6 +32,7 @@ from loadpath.document.model import (
 )
 from loadpath.document.steps import StepWriter, is_listed, ref
 from loadpath.findings import Finding
+from loadpath.formula.binding import free_names
 from loadpath.formula.names import plain_symbol
 from loadpath.formula.statements import Column, Criterion
 from loadpath.formula.tree import Shown
@@ -248,7 +249,7 @@ class _Builder:
             tuple(
                 self._input_entry(b) if isinstance(b, InputRow) else self._table_entry(b)
                 for b in blocks
-                if isinstance(b, InputRow) or (isinstance(b, TableBlock) and b.name)
+                if isinstance(b, InputRow) or (isinstance(b, TableBlock) and _states_values(b))
             ),
             tuple(
                 AssumptionEntry(a.key, a.text, _state(a), a.confirm, tuple(cited[a.key]))
@@ -314,6 +315,13 @@ class _Builder:
             front.date,
             f"loadpath {self.version} · fingerprint {fingerprint}",
         )
+
+
+def _states_values(block: TableBlock) -> bool:
+    """True for a table of data with values of its own, and not only of names."""
+    cells = (cell for column in block.columns for cell in column.cells)
+    own = (c for c in cells if c.typed is None or not free_names(c.typed))
+    return bool(block.name) and (bool(block.across) or any(c.value and c.value.number != "0" for c in own))
 
 
 # --- helpers ----------------------------------------------------------------------------------------------

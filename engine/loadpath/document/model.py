@@ -221,6 +221,8 @@ class SolutionRow:
     """Other roots, and why they were not taken."""
     put_back: tuple[PutBackLine, ...] = ()
     """On the last of the steps that share them."""
+    calls: tuple[CallLine, ...] = ()
+    """Of functions in the equations, with the solution put back; beside `put_back`."""
     equations_at: Ref | None = None
     """The first of the steps that share them, whose trail says what they hang on; None on that one itself."""
 

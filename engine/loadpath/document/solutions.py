@@ -7,7 +7,7 @@ from typing import TYPE_CHECKING
 
 from loadpath.document.model import Head, Line, PutBackLine, Ref, SolutionRow, UnknownRow
 from loadpath.formula.statements import Solution, Unknown
-from loadpath.formula.tree import Name, Node, Relation, Shown
+from loadpath.formula.tree import Name, Node, Number, Relation, Shown
 from loadpath.trace import PutBack, Step, texts
 from loadpath.trace.substitute import shown
 from loadpath.units.printing import MOST_DIGITS, plain, unit_symbol
@@ -42,6 +42,8 @@ def solution_row(writer: StepWriter, step: Step, statement: Solution, head: Head
             Line(("another root, ", Relation((Name(name), shown(value)), ("=",)), f", is not taken: {why}"))
             for name, value, why in solved.others
         )
+        if first and solved.symbols:
+            lines += tuple(Line(("with ", Relation((node, Number("0")), ("=",)))) for node in solved.empty)
     first_step = _first_of(writer, step, statement)
     if first_step is not None and set(step.uses) <= {*first_step.uses, first_step.id}:
         head = replace(head, feeds_from=())
@@ -60,6 +62,7 @@ def solution_row(writer: StepWriter, step: Step, statement: Solution, head: Head
         tuple(_put_back(each, writer.trace.sheet.front.digits) for each in solved.put_back)
         if solved and last
         else (),
+        tuple(call for each in solved.workings for call in writer.calls(each)) if solved else (),
         Ref(first_step.number) if first_step is not None else None,
     )
 

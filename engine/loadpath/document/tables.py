@@ -100,7 +100,9 @@ def column_block(writer: StepWriter, step: Step, statement: Definition, head: He
     if working is not None and working.typed is not None:
         sides, lines = (working.typed, working.tree), writer.lines(working)
     rows = tuple(_row(writer, step, i) for i in range(len(step.rows)))
-    return ColumnBlock(head, Name(statement.name), sides, rows, (*lines, *said_of_rows(writer, step)))
+    already = {line.parts for line in lines}
+    said = tuple(line for line in said_of_rows(writer, step) if line.parts[1:] not in already)
+    return ColumnBlock(head, Name(statement.name), sides, rows, (*lines, *said))
 
 
 def _row(writer: StepWriter, step: Step, index: int) -> ColumnRow:

@@ -225,7 +225,11 @@ class _Run:
         self.values[statement.name] = si
         symbols = found.solved.symbols.get(statement.name)
         working = None if symbols is None else self._observer().working(symbols)
-        return Step(planned.outline, si, self.base, working, None, "", solved=found.solved)
+        solved = found.solved
+        if statement.is_last:  # every unknown has its value
+            equations = solved.derived if solved.derived else together.equations
+            solved = replace(solved, workings=tuple(map(self._observer().working, equations)))
+        return Step(planned.outline, si, self.base, working, None, "", solved=solved)
 
     # --- columns ---
 

@@ -143,6 +143,7 @@ class Looking:
             plural = "s" if len(found.rows) > 1 else ""
             across = "s" if len(found.across) > 1 else ""
             yield Aside(f"read in row{plural} {rows} and column{across} {columns} of", Name(ys.name), "")
+            yield from self._corners(x, xs, ys.name, found, types)
             return
         unit_x, unit_y = self._column_unit(xs, types), self._column_unit(ys, types)
         labels = self._rows_of(xs)
@@ -151,6 +152,28 @@ class Looking:
             b = _shown(unit_y, found.ys[i], value.digits)
             pair = Logic("and", (Relation((xs, a), ("=",)), Relation((ys, b), ("=",))))
             yield Aside(f"read in {labels.said(i)}:", pair, "")
+
+    def _corners(
+        self, x: Node, y: Node, table: str, found: Found, types: dict[str, Type]
+    ) -> Iterator[Aside]:
+        """The cells that were read, each with its place on both sides."""
+        of, work = self.of.compiler.two_way[table], self.of.compiler.compile_tree
+        digits = self.of.resolved.sheet.front.digits
+        kinds = self.of.resolved.checker.two_way(table)
+        assert kinds is not None
+        units = [self._unit_of(t) for t in (kinds.down, kinds.across, kinds.cells)]
+        for i in found.rows:
+            for j in found.across:
+                nodes = (of.down[i], of.across[j], of.cells[i][j])
+                a, b, z = (
+                    _shown(unit, float(work(node)(self.of.values, {})), digits)
+                    for unit, node in zip(units, nodes, strict=True)
+                )
+                pairs = ((x, a), (y, b), (Name(table), z))
+                yield Aside("cell:", Logic("and", tuple(Relation(pair, ("=",)) for pair in pairs)), "")
+
+    def _unit_of(self, found: Type) -> Unit:
+        return self.of.resolved.system.unit_for(found.dimension, found.absolute, found.flavour == "bar")
 
     def _column_unit(self, column: Node, types: dict[str, Type]) -> Unit:
         resolved = self.of.resolved

@@ -17,9 +17,10 @@ from loadpath.evaluate.numbers import Compiler, Values
 from loadpath.evaluate.special import bad_interval
 from loadpath.evaluate.symbolic import is_derived
 from loadpath.evaluate.valueless import why_no_value
+from loadpath.formula.binding import free_names
 from loadpath.formula.mistake import Mistake
 from loadpath.formula.statements import Equations, Sought
-from loadpath.formula.tree import Binary, Negative, Node, Number, Relation, span_of, walk
+from loadpath.formula.tree import Binary, Bracket, Negative, Node, Number, Relation, rebuilt, span_of, walk
 from loadpath.resolve import Entry, Resolved
 from loadpath.trace.model import Operand, PutBack, Solved
 from loadpath.units import Unit
@@ -82,6 +83,7 @@ class _Solver:
         self.names = tuple(sought.name for sought in together.sought)
         self.derived = tuple(self._derived(equation) for equation in together.equations)
         self.equations = tuple(self._inlined(equation) for equation in self.derived)
+        self.empty: tuple[Node, ...] = ()
         self.bounds = {sought.name: self._bounds(sought) for sought in together.sought}
 
     def solutions(self) -> Solutions:
@@ -92,7 +94,7 @@ class _Solver:
         back = tuple(self._put_back(i, values) for i in range(len(self.equations)))
         if not all(each.close for each in back):
             raise self._not_close(back)
-        return Solutions(values, Solved(method, symbols, back, others, self.derived))
+        return Solutions(values, Solved(method, symbols, back, others, self.derived, self.empty))
 
     # --- the equations ---
 
@@ -148,24 +150,46 @@ class _Solver:
         values = dict(zip(self.names, solution.values, strict=True))
         for name, value in values.items():
             self._refuse_outside(name, value)
-        symbols = self._in_symbols(values)
+        symbols, self.empty = self._in_symbols(values)
         one = len(self.names) == 1
         method = "as a linear equation" if one else f"as a linear system of {len(self.names)} equations"
         return values, method + ("" if symbols else ", in numbers"), symbols, ()
 
-    def _in_symbols(self, values: dict[str, float]) -> dict[str, Node]:
-        """The solution of a small system in symbols, where it gives the same numbers and units."""
+    def _in_symbols(self, values: dict[str, float]) -> tuple[dict[str, Node], tuple[Node, ...]]:
+        """The solution of a small system in symbols, where it gives the same numbers and units; and the
+        brackets that are 0 and left out of it."""
         operations = sum(isinstance(n, Binary) for e in self.equations for n in walk(e))
         if len(self.names) > MOST_SYMBOLS or operations > MOST_OPERATIONS:
-            return {}
+            return {}, ()
+        empty: dict[Node, None] = {}
+        equations = tuple(self._without_empty(equation, empty) for equation in self.equations)
         try:
-            found = algebra.solve_linear(self.equations, self.names, seconds=SYMBOL_SECONDS)
+            found = algebra.solve_linear(equations, self.names, seconds=SYMBOL_SECONDS)
         except AlgebraFailure:
-            return {}
-        if found is None:
-            return {}
+            return {}, ()
+        if found is None or set(found) != set(self.names):
+            return {}, ()
         same = all(self._gives(found[name], values[name]) and self._fits(name, found[name]) for name in found)
-        return dict(found) if same and set(found) == set(self.names) else {}
+        return (dict(found), tuple(empty)) if same else ({}, ())
+
+    def _without_empty(self, equation: Relation, empty: dict[Node, None]) -> Relation:
+        """The equation with brackets that are 0 by their values as 0."""
+
+        def change(node: Node) -> Node | None:
+            if not isinstance(node, Bracket) or free_names(node) & set(self.names):
+                return None
+            try:
+                is_empty = self._worth(node) == 0
+            except (ArithmeticError, ValueError, KeyError, Failure):
+                return None
+            if not is_empty:
+                return None
+            empty[node] = None
+            return Number("0")
+
+        changed = rebuilt(equation, change)
+        assert isinstance(changed, Relation)
+        return changed
 
     def _gives(self, tree: Node, value: float) -> bool:
         try:

@@ -115,6 +115,10 @@ class Solved:
     """Roots that were found and not taken: name, value, why not."""
     derived: tuple[Relation, ...] = ()
     """The equations with their integrals and derivatives worked by algebra."""
+    empty: tuple[Node, ...] = ()
+    """Brackets that are 0 by their values, and left out of the solution in symbols."""
+    workings: tuple[Working, ...] = ()
+    """How the sides of each equation come about with the solution put back."""
 
 
 @dataclass(frozen=True, slots=True)
