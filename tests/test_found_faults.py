@@ -405,6 +405,8 @@ def test_f_a_cell_of_a_two_way_table_that_has_no_value(cell: str, slug: str, lin
         ("x [1] between 0 and 2/b", "sin(x) = 0.3*x", "division-by-zero"),
         ("x [1]", "x*exp(exp(exp(9))) = 3", "not-finite"),
         ("x [1]", "x + sqrt(b - 1) = 3", "root-of-negative"),
+        ("x [1] between 1 and 2", "1/sqrt(x) = log10(P/((-2)*b*(1 kN))/sqrt(x))", "division-by-zero"),
+        ("x [1] between 1 and 2", "sqrt(x - 10) = sin(x)", "outside-domain"),
     ],
 )
 def test_f_equations_with_a_part_that_has_no_value(head: str, equation: str, slug: str) -> None:
@@ -453,6 +455,35 @@ def test_f_messages_show_a_name_of_their_own_in_a_unit(formulas: list[str]) -> N
     ((slug, _, message),) = errors(STRENGTHS, lines(*formulas))
     assert slug == "outside-table"
     assert "0 mm to 40 mm" in message and "SI units" not in message
+
+
+def test_f_a_function_that_fails_alike_for_two_steps_is_one_finding() -> None:
+    found = errors(lines("f(x [1]) [1] = 3*x/0", "a = f(2)", "b = f(2)", "c = a + b"))
+    assert [(s, n) for s, n, _ in found] == [("division-by-zero", FIRST)]
+    alike = errors(lines("f(x [1]) [1] = 3/x", "a = f(0)", "b = f(0) + 1", "c = f(1 - 1)"))
+    assert [(s, n) for s, n, _ in alike] == [("division-by-zero", FIRST)]
+
+
+def test_f_what_hangs_on_equations_with_a_mistake_is_not_worked() -> None:
+    """Two unknowns at once, of which the second was worked although the first was not."""
+    found = errors(
+        lines(
+            "unknown C [kN]",
+            "f(x [m]) [kN] = C + x*(1 kN/m)",
+            "solve for C",
+            "    f(0 m) = b_1",
+            "solve for s [m], t [m]",
+            "    f(s) = 12 kN",
+            "    t = s",
+            "y = f(2 m) + t*(1 kN/m)",
+        )
+    )
+    assert [(s, n - FIRST) for s, n, _ in found] == [("unknown-name", 3)]
+
+
+def test_f_bounds_that_are_equal_in_one_term_of_a_sum() -> None:
+    found = errors(lines("y = sum(smallest(u, u, 0, k), k, 0, 1)"))
+    assert [(s, n) for s, n, _ in found] == [("bad-interval", FIRST)]
 
 
 def test_f_more_curves_than_rows_in_a_table_of_values() -> None:

@@ -276,3 +276,25 @@ def test_hostile_trees_end_in_time(what: str, work: str) -> None:
 
 def test_after_all_that_the_worker_still_answers() -> None:
     assert algebra.limit(tree("sin(x)/x"), "x", Number("0")) == Number("1")
+
+
+def test_an_interrupted_question_leaves_no_answer_for_the_next(monkeypatch: pytest.MonkeyPatch) -> None:
+    """Ctrl-C while the worker works: its late answer belongs to nobody."""
+    from loadpath.algebra import door
+
+    close()
+    ask = door.Worker.ask
+
+    def interrupted(self: door.Worker, request: bytes, seconds: float) -> bytes | None:
+        if b'"ready"' in request:
+            return ask(self, request, seconds)
+        assert self.process.stdin is not None
+        self.process.stdin.write(request)
+        self.process.stdin.flush()
+        raise KeyboardInterrupt
+
+    with monkeypatch.context() as patch:
+        patch.setattr(door.Worker, "ask", interrupted)
+        with pytest.raises(KeyboardInterrupt):
+            door.ask("limit")
+    assert door.worker_id() is None

@@ -132,6 +132,7 @@ def grouped_over(outside: Term, inside: Terms, decimals: bool) -> Terms:
 
 
 def weight(terms: Terms) -> int:
+    """How many nodes they take to write."""
     return sum(1 for _ in walk(write(terms)))
 
 

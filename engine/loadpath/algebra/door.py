@@ -98,7 +98,13 @@ def ask(work: str, **arguments: Any) -> Any:
             if _worker is None or _worker.owner != os.getpid():
                 _worker = _started()
                 fresh = True
-            answer = _worker.ask(_request(work, remaining(), **arguments), remaining())
+            try:
+                answer = _worker.ask(_request(work, remaining(), **arguments), remaining())
+            except BaseException:
+                # an answer that comes late must not be taken for that to the next question
+                _worker.end()
+                _worker = None
+                raise
             if answer or answer is None or fresh:
                 break
             # it had ended since it was last used

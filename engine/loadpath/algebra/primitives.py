@@ -46,6 +46,7 @@ def primitive(inside: Term, x: str) -> Terms:
 
 
 def own_primitive(inside: Term, x: str) -> Terms:
+    """An antiderivative of a term by rules of our own, with a name inside; raises NoForm where none fits."""
     if any(has_bracket(n, x) for n, _ in inside.factors):
         return _of_brackets(inside, x)
     line = _of_line(inside, x)

@@ -34,6 +34,10 @@ class NoForm(Exception):
     """No closed form in functions that a sheet has."""
 
 
+MOST_ROOTS = 4
+"""Degree of a polynomial whose roots can be written down."""
+
+
 class Algebra:
     """SymPy, imported once, and what is asked of it."""
 
@@ -170,10 +174,12 @@ class Algebra:
     def antiderivative(self, f: Any, x: Any, quick: bool) -> Any:
         """An antiderivative that was differentiated and compared.
 
-        `quick`: without the two searches that may take long for nothing.
+        `quick`: without the searches that may take long for nothing, where the integrand is no tame one.
         """
         s = self.s
-        slow = {"heurisch": False, "meijerg": False} if quick else {}
+        if quick and self.is_hopeless(f, x):
+            raise NoForm
+        slow = {"heurisch": self.is_tame(f, x), "meijerg": False} if quick else {}
         for form in dict.fromkeys((f, s.expand(f))):
             found = self.general(s.integrate(form, x, **slow))
             if found is None or found.has(s.Integral):
@@ -182,6 +188,29 @@ class Algebra:
             if self.agree(s.diff(found, x), f):
                 return found
         raise NoForm
+
+    def is_tame(self, f: Any, x: Any) -> bool:
+        """True for polynomials, one exponential or wave of something linear, and their quotients by
+        polynomials: what the general search settles soon."""
+        s, functions = self.s, set()
+        for node in s.preorder_traversal(f):
+            if not node.has(x):
+                continue
+            if node.is_Pow:
+                polynomial = node.base.is_polynomial(x)
+                if not node.exp.is_Integer or (node.exp.is_negative and not polynomial):
+                    return False
+            elif node.is_Function:
+                functions.add(node)
+                if not (node.args[0].is_polynomial(x) and s.degree(node.args[0], x) <= 1):
+                    return False
+        return len(functions) <= 1
+
+    def is_hopeless(self, f: Any, x: Any) -> bool:
+        """True for a quotient by a polynomial whose roots cannot be written down."""
+        s = self.s
+        under = (n.base for n in s.preorder_traversal(f) if n.is_Pow and n.exp.is_negative)
+        return any(b.is_polynomial(x) and s.degree(b, x) > MOST_ROOTS for b in under if b.has(x))
 
     def general(self, e: Any) -> Any | None:
         """The branch that holds in general: for names that differ and aren't 0."""

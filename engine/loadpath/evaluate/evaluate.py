@@ -119,6 +119,8 @@ class _Run:
         if self.broken and not blocked:
             blocked = next((self.broken[n] for n in entry.uses if n in self.broken), 0)
         if blocked:
+            if planned.shared >= 0:  # what blocks one unknown of a `solve for` blocks all
+                self.unsolved[planned.shared] = blocked
             return self._not_computed(planned, blocked)
         self.plan.compiler.deadline = monotonic() + STEP_SECONDS
         self.plan.compiler.once.clear()
@@ -334,7 +336,8 @@ class _Run:
             help=failure.help,
             remarks=remarks,
         )
-        self.found.append(new)
+        if not any((f.slug, f.message, f.span) == (new.slug, new.message, new.span) for f in self.found):
+            self.found.append(new)  # a function that fails in the same way for several steps is one mistake
         return new.line
 
     def _around(self, failure: Failure, planned: Planned) -> tuple[Statement, ...]:

@@ -330,16 +330,24 @@ class _Solver:
     def _between(self, difference: Node) -> _Found:
         from loadpath.numeric.pieces import bracket_places
         from loadpath.numeric.roots import roots_between
+        from loadpath.numeric.trouble import NotDefined
 
         name = self.names[0]
         bounds = self.bounds[name]
         assert bounds is not None
         work = self.compiler.compile_tree(difference)
         places = bracket_places(difference, name, self._worth)
-        found = roots_between(
-            lambda x: float(work({**self.values, name: x}, _NO_PARAMETERS)), *bounds, places
-        )
         low, high = (self._shown(name, bound) for bound in bounds)
+        try:
+            found = roots_between(
+                lambda x: float(work({**self.values, name: x}, _NO_PARAMETERS)), *bounds, places
+            )
+        except NotDefined:
+            message = f"the equation has no value at any `{name}` looked at between {low} and {high}"
+            nowhere = Failure(
+                "outside-domain", lambda show: message, self.place, "check the equation, or the bounds"
+            )
+            raise why_no_value(self.together, self.compiler, self.values, nowhere) from None
         if found.over:
             a, b = (self._shown(name, end) for end in found.over[0])
             raise Failure(

@@ -14,7 +14,7 @@ from loadpath.evaluate.inline import inlined, rows_written_out
 from loadpath.evaluate.limits import STEP_SECONDS
 from loadpath.evaluate.numbers import ROW, Compiler, Values, Work
 from loadpath.formula.binding import free_names, own_name
-from loadpath.formula.tree import Call, Name, Node, span_of
+from loadpath.formula.tree import NOWHERE, Call, Name, Node, span_of
 from loadpath.resolve.columns import is_brought_back
 
 if TYPE_CHECKING:
@@ -288,7 +288,8 @@ def bad_interval(a: Node, b: Node, low: float, high: float) -> Failure:
     def tell(show: Show) -> str:
         return f"the bounds {how}: {_said(show, a, low)} and {_said(show, b, high)}"
 
-    place = span_of(a).join(span_of(b))
+    known = [span for span in (span_of(a), span_of(b)) if span != NOWHERE]
+    place = known[0].join(known[-1]) if known else NOWHERE
     return Failure("bad-interval", tell, place, "the first bound is the smaller one")
 
 

@@ -15,8 +15,11 @@ from loadpath.formula.tree import Binary, Branch, Call, Cases, Logic, Node, chil
 _NO_PARAMETERS: dict[str, Any] = {}
 
 
-def why_no_value(together: Equations, compiler: Compiler, values: Values) -> Failure:
-    """The failure of the first part of the bounds and equations of a `solve for` that has no value."""
+def why_no_value(
+    together: Equations, compiler: Compiler, values: Values, otherwise: Failure | None = None
+) -> Failure:
+    """The failure of the first part of the bounds and equations of a `solve for` that has no value; where
+    each part by itself has one, what is said `otherwise`."""
     unknowns = frozenset(sought.name for sought in together.sought)
     bounds = [bound for sought in together.sought for bound in (sought.low, sought.high) if bound]
     try:
@@ -24,6 +27,8 @@ def why_no_value(together: Equations, compiler: Compiler, values: Values) -> Fai
             _look_through(inlined(tree, compiler.function), unknowns, compiler, values)
     except Failure as failure:
         return failure
+    if otherwise is not None:
+        return otherwise
     said = ", ".join(f"`{name}`" for name in sorted(unknowns))
     return Failure(
         "not-finite", lambda show: f"something in the equations has no value, or too large a one, for {said}",

@@ -242,7 +242,7 @@ def _are_wide(sides: tuple[Node, ...]) -> bool:
 def _alt(block: PlotBlock) -> str:
     from loadpath.figures import describe
 
-    return describe(block.picture) if block.picture else ""
+    return (block.picture.alt or describe(block.picture)) if block.picture else ""
 
 
 def _drawn(block: PlotBlock) -> str:

@@ -144,7 +144,7 @@ def _values(document: Document) -> Callable[[Any], str]:
 def _alt(block: PlotBlock) -> str:
     from loadpath.figures import describe
 
-    return describe(block.picture) if block.picture else ""
+    return (block.picture.alt or describe(block.picture)) if block.picture else ""
 
 
 def _image_name(block: FigureBlock | PlotBlock, stem: str) -> str:

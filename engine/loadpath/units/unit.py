@@ -79,7 +79,8 @@ class Unit:
         if self.absolute:
             return round(float((Fraction(si) - self.offset) / self.factor), READING) if isfinite(si) else si
         over, under = self._parts
-        return si * under / over
+        value = si * under / over
+        return value if isfinite(value) else si / over * under
 
     @property
     def size(self) -> float:
