@@ -280,9 +280,7 @@ def test_after_all_that_the_worker_still_answers() -> None:
 
 def test_an_interrupted_question_leaves_no_answer_for_the_next(monkeypatch: pytest.MonkeyPatch) -> None:
     """Ctrl-C while the worker works: its late answer belongs to nobody."""
-    from loadpath.algebra import door
-
-    close()
+    door.close()
     ask = door.Worker.ask
 
     def interrupted(self: door.Worker, request: bytes, seconds: float) -> bytes | None:
