@@ -15,7 +15,7 @@ from loadpath.evaluate.explain import run
 from loadpath.evaluate.failure import Failure, shower
 from loadpath.evaluate.limits import ALGEBRA_IN_ALL, STEP_SECONDS
 from loadpath.evaluate.numbers import ROW
-from loadpath.evaluate.plan import Plan, Planned, defined_by, guarded_by, make_plan, sides_of, tables_of
+from loadpath.evaluate.plan import Plan, Planned, defined_by, guarded_by, make_plan, sides_of
 from loadpath.evaluate.special import check_time
 from loadpath.evaluate.symbolic import is_derived
 from loadpath.evaluate.verdicts import both_sides, judge, worst
@@ -101,8 +101,7 @@ class _Run:
 
     def _algebra_limit(self) -> AbstractContextManager[None]:
         """All algebra of one sheet together has a limit too."""
-        needs = (p.outline.entry.statement for p in self.plan.steps if not p.outline.entry.blocked_by)
-        if not any(isinstance(s, Solution) or any(map(is_derived, expressions(s))) for s in needs):
+        if not self.plan.needs_algebra:
             return nullcontext()
         from loadpath.algebra import time_limit
 
@@ -115,15 +114,18 @@ class _Run:
 
     def _step(self, planned: Planned) -> Step:
         entry = planned.outline.entry
-        blocked = entry.blocked_by or self.unsolved.get(planned.shared, 0)
+        blocked = entry.blocked_by
+        if self.unsolved and not blocked:
+            blocked = self.unsolved.get(planned.shared, 0)
         if self.broken and not blocked:
             blocked = next((self.broken[n] for n in entry.uses if n in self.broken), 0)
         if blocked:
             if planned.shared >= 0:  # what blocks one unknown of a `solve for` blocks all
                 self.unsolved[planned.shared] = blocked
             return self._not_computed(planned, blocked)
-        self.plan.compiler.deadline = monotonic() + STEP_SECONDS
-        self.plan.compiler.once.clear()
+        if planned.working is None:  # else it is a few operations
+            self.plan.compiler.deadline = monotonic() + STEP_SECONDS
+            self.plan.compiler.once.clear()
         try:
             return self._worked(planned)
         except Failure as failure:
@@ -138,10 +140,14 @@ class _Run:
             case Definition() if entry.rows is not None:
                 return self._column_of(planned, statement)
             case Definition():
-                planned, derived = self._derived(planned)
+                derived = None
+                if planned.work is None:
+                    planned, derived = self._derived(planned)
                 si = self._number(planned)
                 self.values[statement.name] = si
-                working = None if entry.kind == "input" else self._shown(self._working(planned), derived)
+                working = None if entry.kind == "input" else planned.working or self._working(planned)
+                if derived is not None and working is not None:
+                    working = self._shown(working, derived)
                 return Step(planned.outline, si, self.base, working, None, "")
             case Choice(word=word):
                 self.values[statement.name] = word
@@ -411,7 +417,7 @@ class _Run:
         """A criterion that hangs on a name outside its range shows nothing."""
         outside: set[str] = set()
         unknown: dict[str, str] = {}
-        tables = tables_of(self.plan.resolved)
+        tables = self.plan.tables
         for step in self.steps:
             guarded = guarded_by(step.statement, tables)
             if guarded and step.why:

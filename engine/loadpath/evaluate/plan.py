@@ -21,13 +21,20 @@ from loadpath.formula.statements import (
     Table,
     Validity,
 )
-from loadpath.formula.tree import As, At, Call, Cases, Name, Node, Relation, walk
-from loadpath.resolve import Entry, Resolved
+from loadpath.formula.tree import As, At, Branch, Call, Cases, Name, Node, Relation, walk
+from loadpath.functions import FUNCTIONS
+from loadpath.resolve import Entry, Resolved, expressions
 from loadpath.sheet import Formulas, Heading, Sheet
 from loadpath.trace.model import Outline, Working
 
 Sides = tuple[tuple[tuple[Node, Work], ...], ...]
 """For each relation, its operands with their compiled form."""
+
+
+_SAID = ("min", "max", "round_up", "round_down")
+"""Functions of which a line says what governed, or to what was rounded."""
+Tables = dict[str, list[str]]
+"""The columns of each table."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -47,12 +54,8 @@ class Planned:
     """Names with a stated range that it hangs on."""
     unread: tuple[str, ...]
     """Keys cited behind it that are neither a source nor an assumption: one may be an open assumption."""
-
-    @property
-    def shared(self) -> int:
-        """The place of the `solve for` that it shares with other unknowns, -1 for other steps."""
-        statement = self.outline.entry.statement
-        return statement.together.span.start if isinstance(statement, Solution) else -1
+    shared: int = -1
+    """The place of the `solve for` that it shares with other unknowns, -1 for other steps."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -63,6 +66,8 @@ class Plan:
     compiler: Compiler
     steps: tuple[Planned, ...]
     sections: tuple[tuple[int, str], ...]
+    needs_algebra: bool
+    tables: Tables
 
 
 def make_plan(resolved: Resolved) -> Plan:
@@ -82,7 +87,14 @@ def make_plan(resolved: Resolved) -> Plan:
     reach = _Reach(resolved)
     outlines = _outlines(resolved, numbers, reach)
     steps = tuple(_planned(outline, compiler, reach) for outline in outlines)
-    return Plan(resolved, compiler, steps, sections)
+    needs_algebra = any(p.work is None and _needs_algebra(p.outline.entry) for p in steps)
+    return Plan(resolved, compiler, steps, sections, needs_algebra, reach.tables)
+
+
+def _needs_algebra(entry: Entry) -> bool:
+    if entry.blocked_by:
+        return False
+    return isinstance(entry.statement, Solution) or any(map(is_derived, expressions(entry.statement)))
 
 
 def _planned(outline: Outline, compiler: Compiler, reach: _Reach) -> Planned:
@@ -90,11 +102,19 @@ def _planned(outline: Outline, compiler: Compiler, reach: _Reach) -> Planned:
     hangs_on = reach.of(entry)
     tree = tree_of(entry.statement)
     if tree is None or entry.blocked_by or is_derived(tree):
-        return Planned(outline, tree, None, (), None, *hangs_on)
-    observed = entry.rows is not None or any(isinstance(n, Call | Cases | As | At) for n in walk(tree))
+        shared = entry.statement.together.span.start if isinstance(entry.statement, Solution) else -1
+        return Planned(outline, tree, None, (), None, *hangs_on, shared)
+    observed = entry.rows is not None or any(map(_is_observed, walk(tree)))
     seen = None if observed else Working(tree)
     sides = () if isinstance(entry.statement, Definition) else sides_of(tree, compiler)
     return Planned(outline, tree, compiler.compile_tree(tree), sides, seen, *hangs_on)
+
+
+def _is_observed(node: Node | Branch) -> bool:
+    """True for what a substitution alone doesn't show: a branch taken, a call worked, what governed."""
+    if isinstance(node, Call):
+        return node.function not in FUNCTIONS or node.function in _SAID
+    return isinstance(node, Cases | As | At)
 
 
 def tree_of(statement: Statement) -> Node | None:
@@ -154,10 +174,6 @@ def guarded_by(statement: Statement, tables: Tables) -> tuple[str, ...]:
     else:
         names = statement.guards if isinstance(statement, Faulty) else ()
     return tuple(each for name in names for each in (name, *tables.get(name, ())))
-
-
-Tables = dict[str, list[str]]
-"""The columns of each table."""
 
 
 def tables_of(resolved: Resolved) -> Tables:
