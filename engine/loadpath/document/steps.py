@@ -171,7 +171,7 @@ class StepWriter:
         if working.typed is not None:
             sides = (working.typed, *sides)
         lines = (*self.lines(working), *self.further_digits(put))
-        alone = next((c for c in working.calls if c.call == working.tree and is_looking(c.call)), None)
+        alone = working.look
         calls = () if alone else self.calls(working)
         closes = put.closes if put else True
         if alone is not None:

@@ -19,8 +19,7 @@ from loadpath.document.model import (
 from loadpath.formula.names import plain_symbol
 from loadpath.formula.statements import Column, Criterion, Definition, Plot, Table, Tabulate
 from loadpath.formula.tree import Name, Node, Shown
-from loadpath.resolve import is_looking
-from loadpath.trace import Curve, Step, Working, texts
+from loadpath.trace import Curve, Step, texts
 from loadpath.trace.digits import exact_digits, ratio_text
 from loadpath.trace.file import verdict_words_of
 from loadpath.units import Unit
@@ -111,14 +110,9 @@ def _row(writer: StepWriter, step: Step, index: int) -> ColumnRow:
     assert shown is not None and row.working is not None
     sides: tuple[Node, ...] = (put.tree,) if put is not None and not isinstance(put.tree, Shown) else ()
     calls = writer.calls(row.working)
-    if _is_one_look(row.working):
+    if row.working.look is not None:
         sides, calls = (*calls[0].sides, calls[0].call)[:1], ()
     return ColumnRow(row.label, sides, shown, put.closes if put else True, calls)
-
-
-def _is_one_look(working: Working) -> bool:
-    """True where a row is nothing but one call that looks at a whole expression or column."""
-    return bool(working.calls) and working.calls[0].call == working.tree and is_looking(working.calls[0].call)
 
 
 def said_of_rows(writer: StepWriter, step: Step) -> tuple[Line, ...]:
@@ -127,7 +121,7 @@ def said_of_rows(writer: StepWriter, step: Step) -> tuple[Line, ...]:
     for i, row in enumerate(step.rows):
         put = texts.row_substitution(writer.trace, step, i)
         if row.working is not None:
-            looked = writer.calls(row.working)[0].conditions if _is_one_look(row.working) else ()
+            looked = writer.calls(row.working)[0].conditions if row.working.look is not None else ()
             for line in dict.fromkeys((*writer.lines(row.working), *writer.further_digits(put), *looked)):
                 said[line].append(i)
     labels = [row.label for row in step.rows]

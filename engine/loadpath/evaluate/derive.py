@@ -4,7 +4,6 @@ sums, before numbers are worked."""
 from __future__ import annotations
 
 import math
-from collections.abc import Iterator
 from dataclasses import dataclass, field, replace
 from typing import Any
 
@@ -15,7 +14,7 @@ from loadpath.evaluate.inline import inlined, mapped, rows_written_out, too_larg
 from loadpath.evaluate.numbers import Compiler, Values, part_value
 from loadpath.evaluate.special import integrate, whole_bounds
 from loadpath.evaluate.symbolic import is_symbolic
-from loadpath.formula.binding import own_name, put_in
+from loadpath.formula.binding import put_in
 from loadpath.formula.mistake import Mistake
 from loadpath.formula.tree import (
     Binary,
@@ -330,8 +329,3 @@ def _unfit(call: Call) -> Failure:
         lambda show: f"what algebra makes of `{short(call)}` cannot be checked for its units",
         call.at, "write it out by hand",
     )  # fmt: skip
-
-
-def numeric_calls(tree: Node) -> Iterator[Call]:
-    """Definite integrals left in a derived tree: they are worked numerically."""
-    return (n for n in walk(tree) if isinstance(n, Call) and n.function == "integral" and own_name(n))

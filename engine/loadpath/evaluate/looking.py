@@ -9,7 +9,7 @@ from typing import TYPE_CHECKING, Any
 
 from loadpath.evaluate.numbers import Values
 from loadpath.evaluate.special import Found, cells, integrate, look_over, look_up
-from loadpath.formula.binding import free_names, own_name, put_in
+from loadpath.formula.binding import own_name, put_in
 from loadpath.formula.tree import Binary, Call, Logic, Name, Node, Number, Quantity, Relation, Shown
 from loadpath.resolve import Rows, Type
 from loadpath.resolve.columns import is_brought_back
@@ -105,8 +105,7 @@ class Looking:
         return (), (Aside(f"{call.function}: {rows.said(index)} of", column, ""),)
 
     def _rows_of(self, column: Node) -> Rows:
-        names = sorted(free_names(column) & set(self.of.compiler.columns))
-        return self.of.compiler.columns[names[0]]
+        return self.of.compiler.columns[self.of.compiler.columns_in(column)[0]]
 
     def _added(self, column: Node, values: list[float], value: Operand) -> Iterator[Node]:
         """The cells that a sum adds up, one after the other, with more digits each time."""

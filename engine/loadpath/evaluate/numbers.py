@@ -10,6 +10,7 @@ import math
 from collections.abc import Callable, Mapping
 from typing import Any
 
+from loadpath.formula.binding import free_names
 from loadpath.formula.signs import holds
 from loadpath.formula.statements import FunctionDefinition, TwoWay
 from loadpath.formula.tree import (
@@ -116,6 +117,10 @@ class Compiler:
             case At():
                 return self._cell(node)
         raise TypeError(type(node).__name__)
+
+    def columns_in(self, node: Node) -> list[str]:
+        """The names of columns that a tree takes from outside itself, in order."""
+        return sorted(free_names(node) & self.columns.keys())
 
     def function(self, name: str) -> FunctionDefinition | None:
         """The sheet's own function of a name, None for a built-in one."""

@@ -62,7 +62,7 @@ def _unworked(node: Call) -> Work:
 
 
 def _rows_of(compiler: Compiler, node: Node) -> int:
-    return next((compiler.columns[n].count for n in sorted(free_names(node)) if n in compiler.columns), 0)
+    return next((compiler.columns[name].count for name in compiler.columns_in(node)), 0)
 
 
 def cells(

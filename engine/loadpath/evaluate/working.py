@@ -63,7 +63,7 @@ class Observer:
 
     def _cells(self, tree: Node, row: int) -> Iterator[tuple[str, Operand]]:
         """The cells that stand for the names of columns in one row."""
-        for name in sorted(free_names(tree) & set(self.compiler.columns)):
+        for name in self.compiler.columns_in(tree):
             if row < self.compiler.columns[name].count:
                 yield name, self.cell(name, row)
 

@@ -14,7 +14,7 @@ from loadpath.findings import Finding, ordered
 from loadpath.formula.canonical import text as formula_text
 from loadpath.formula.statements import Criterion, Faulty, Statement
 from loadpath.formula.tree import Branch, Call, Cases, Node, Relation
-from loadpath.resolve import Entry, Kind, Resolved
+from loadpath.resolve import Entry, Kind, Resolved, is_looking
 from loadpath.sheet.model import Sheet
 from loadpath.units import Unit
 
@@ -85,6 +85,12 @@ class Working:
     """The formula as typed, where what was worked was derived from it: integrated, differentiated."""
     written: tuple[Node, ...] = ()
     """In place of a substitution: the cells that a `sum` adds up, with more digits each time."""
+
+    @property
+    def look(self) -> Called | None:
+        """The call that looks at a whole expression or column, where the tree is nothing else."""
+        alone = (called for called in self.calls if called.call == self.tree)
+        return next((called for called in alone if is_looking(called.call)), None)
 
 
 @dataclass(frozen=True, slots=True)

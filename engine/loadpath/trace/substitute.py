@@ -20,13 +20,12 @@ from loadpath.formula.tree import (
     Bracket,
     Call,
     Factor,
-    Logic,
     Name,
     Negative,
     Node,
     Quantity,
-    Relation,
     Shown,
+    with_children,
 )
 from loadpath.functions import FUNCTIONS
 from loadpath.resolve.dimensions import typed_exponent
@@ -71,23 +70,11 @@ def substitute(tree: Node, scope: Scope, calls: tuple[Called, ...], more: int = 
                 return node if operand is None else shown(operand, more)
             case Call() if node in values:
                 return shown(values[node], more)
-            case Call():
-                return replace(node, arguments=tuple(put(a) for a in node.arguments))
-            case Negative(operand=operand):
-                return replace(node, operand=put(operand))
-            case Binary(left=left, right=right):
-                return replace(node, left=put(left), right=put(right))
-            case Bracket(inner=inner):
-                return replace(node, inner=put(inner))
             case As(operand=Name(name=name), unit=unit) if (value := scope(name)) is not None and isinstance(
                 value.si, float
             ):
                 return _number_of(value, parse_unit(unit), more)
-            case As(operand=operand):
-                return replace(node, operand=put(operand))
-            case Relation(operands=operands) | Logic(operands=operands):
-                return replace(node, operands=tuple(put(o) for o in operands))
-        return node
+        return with_children(node, put)
 
     return put(tree)
 
