@@ -491,3 +491,11 @@ def test_f_more_curves_than_rows_in_a_table_of_values() -> None:
     said = documents(worked(lines("tabulate x^2, x^3, x^4 for x from 0 to 2, 1 steps")))["t.html"]
     listed = said.partition('<table class="data')[2].partition("</table>")[0]
     assert re.findall(r">(\d[\d.]*)<", listed)[-3:] == ["4.000", "8.000", "16.00"]
+
+
+def test_columns_bear_the_number_of_their_table_beside_one_that_cannot_be_read() -> None:
+    table = "| n | a [mm] | b [mm] |\n|---|---|---|\n| p | 1,5 | 2 |"
+    text = f"---\ntitle: T\n---\n\nTable t: x\n\n{table}\n\n    y = t.b*2\n"
+    trace = loadpath.evaluate(loadpath.read_text(text))
+    assert trace["table t"].number == "0.1"
+    assert trace["t.b"].number == "0.1b"

@@ -258,6 +258,7 @@ def _numbering(sheet: Sheet) -> tuple[tuple[tuple[int, str], ...], Iterator[str]
     sections: list[tuple[int, str]] = []
     numbers: list[str] = []
     section = step = 0
+    table = ""
     for block in sheet.blocks:
         if isinstance(block, Heading):
             counts = block.level == top and not is_title(block, sheet)
@@ -267,10 +268,12 @@ def _numbering(sheet: Sheet) -> tuple[tuple[tuple[int, str], ...], Iterator[str]
         elif isinstance(block, Formulas):
             for statement in block.statements:
                 if isinstance(statement, Column):
-                    numbers.append(f"{section}.{step}{ascii_lowercase[statement.place]}")
+                    numbers.append(f"{table}{ascii_lowercase[statement.place]}")
                     continue
                 step += 1
                 numbers.append(f"{section}.{step}")
+                if isinstance(statement, Table):  # a column that can't be read takes a step of its own
+                    table = numbers[-1]
     return tuple(sections), iter(numbers)
 
 
